@@ -1,0 +1,49 @@
+// SPDX-License-Identifier: GPL-2.0-or-later
+// CATALOGUE -> counts
+#pragma once
+
+#include <cstdint>
+#include <filesystem>
+#include <memory>
+#include <optional>
+#include <string>
+#include <vector>
+
+namespace deviascope {
+
+/// A piece of a table: some columns of neighbouring rows. Missing values are NaN.
+struct TableChunk {
+    std::int64_t first_row = 0;               ///< of this piece in its file, counted from 0
+    std::vector<std::vector<double>> column;  ///< in the order asked for; each n_rows long
+    std::int64_t n_rows() const { return column.empty() ? 0 : std::ssize(column.front()); }
+};
+
+/// A catalogue file read in chunks, so that memory does not grow with the file.
+class TableReader {
+  public:
+    virtual ~TableReader() = default;
+    /// Fills `chunk` with the next rows; false at the end. Errors: InputError with path, row
+    /// (as a person counts in that format: CSV line numbers, FITS rows from 1), column and
+    /// value.
+    virtual bool next(TableChunk& chunk) = 0;
+    /// Rows in the file where known beforehand, for progress.
+    virtual std::optional<std::int64_t> n_rows() const = 0;
+    /// How a person names row `row` (counted from 0) of this file: `row 12` or `line 14`.
+    virtual std::string place_of_row(std::int64_t row) const = 0;
+};
+
+/// Opens a catalogue for reading the named columns.
+///
+/// FITS binary tables (by content: the file begins with `SIMPLE  =`): any numeric column type,
+/// scaling and null values; CSV (RFC 4180: header line with names, quoted fields, doubled
+/// quotes; blank = missing; a number that cannot be read is an error). Names are matched
+/// exactly, else, if that is unambiguous, ignoring case.
+/// @param table    HDU name or number (FITS); an error for CSV
+/// @param columns  names in the order wanted; a name may be asked for once only
+/// Errors: InputError (cannot open, no such table or column with the nearest name, vector or
+/// text column, truncated file).
+std::unique_ptr<TableReader> open_table(const std::filesystem::path& path,
+                                        const std::optional<std::string>& table,
+                                        const std::vector<std::string>& columns);
+
+}  // namespace deviascope

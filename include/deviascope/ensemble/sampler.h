@@ -1,0 +1,33 @@
+// SPDX-License-Identifier: GPL-2.0-or-later
+// model -> ENSEMBLE -> chain
+#pragma once
+
+#include "deviascope/core/target.h"
+#include "deviascope/ensemble/draws.h"
+#include "deviascope/ensemble/options.h"
+
+namespace deviascope {
+
+/// How a run ended. Starts pessimistic.
+struct Outcome {
+    enum class End { not_run, converged, max_steps, interrupted };
+    End end = End::not_run;
+    std::int64_t steps = 0;      ///< per walker, warm-up included
+    std::int64_t discarded = 0;  ///< per walker
+    std::int64_t store_every = 0;
+    std::int64_t n_rows = 0;
+    bool warm_up_settled = false;
+    KernelTally tally;
+};
+
+/// Samples a target: warm-up, looks and stopping rule of design section 5.
+///
+/// Two halves, each moved using the other (Goodman & Weare 2010, CAMCoS 5, 65, parallel
+/// variant), kernels drawn per walker and step: stretch (same source), differential-evolution
+/// (ter Braak 2006, Stat. Comput. 16, 239). Random numbers keyed (seed, moves; replicate,
+/// walker, step). Errors: UsageError (options), NumericalError (no finite starting point for a
+/// walker after 10,000 attempts; log density NaN: names the coordinates). Threads: main thread;
+/// works on `options.threads`. Same bits for any number.
+Outcome sample(const Target& target, const EnsembleOptions& options, DrawSink& sink);
+
+}  // namespace deviascope

@@ -1,0 +1,61 @@
+// SPDX-License-Identifier: GPL-2.0-or-later
+// JOB: TOML to the options of the stages
+#pragma once
+
+#include <filesystem>
+#include <functional>
+#include <optional>
+#include <string>
+#include <vector>
+
+#include "deviascope/chain/chain.h"
+#include "deviascope/counts/survey_input.h"
+#include "deviascope/ensemble/options.h"
+#include "deviascope/model/model_options.h"
+
+namespace deviascope {
+
+/// A job file, understood: the options of every stage.
+struct Job {
+    std::string name;   ///< file name
+    std::string title;  ///< job.title, else the file name
+    std::string text;   ///< the file's bytes
+    std::uint64_t seed = 0;
+    int nside = 64;
+    Frame frame = Frame::galactic;
+    std::vector<SurveyInput> surveys;
+    ModelOptions model;
+    EnsembleOptions ensemble;  ///< threads, stop and progress are the command's to fill
+    std::vector<Companion> companions;  ///< priors and weights files that were read
+    std::vector<std::string> warnings;  ///< for instance bins that share one alpha
+};
+
+/// Finds the text of a prior (by name) or weights file (by path as written); empty where there
+/// is none. The default searches the disk (design section 4); a chain answers from what it
+/// keeps.
+using CompanionFinder = std::function<std::optional<Companion>(const std::string& name)>;
+
+/// Reads a job file and checks every rule of the schema, and that every input file exists.
+/// Errors: UsageError with *all* faults, each `path:line:column: key: found; allowed; remedy`.
+Job read_job(const std::filesystem::path& path);
+
+/// The same from a text, without looking for input files: for chains that are read back.
+Job parse_job(const std::string& text,
+              const std::string& name,
+              const CompanionFinder& companions);
+
+/// The priors of the published library, by name, from where `read_job` would find them.
+std::optional<Companion> find_prior(const std::string& name,
+                                    const std::filesystem::path& job_folder);
+
+/// A prior file's text as a prior in the job's frame. Errors: UsageError.
+VectorPrior parse_prior(const Companion& companion, Frame job_frame);
+
+/// SHA-256 over the input files' digests and everything that decides the counts (nside, frame,
+/// surveys without weights and priors), for counts.h5.
+std::string digest_of_inputs(const Job& job, const std::vector<InputDigest>& inputs);
+
+/// Digests of all input files of a job, in job order.
+std::vector<InputDigest> digests_of_inputs(const Job& job);
+
+}  // namespace deviascope

@@ -1,0 +1,50 @@
+// SPDX-License-Identifier: GPL-2.0-or-later
+// counts -> MODEL -> ensemble
+#pragma once
+
+#include <Eigen/Core>
+#include <string>
+#include <vector>
+
+#include "deviascope/model/vector_prior.h"
+
+namespace deviascope {
+
+/// Kinematic weights of a survey's bins: a joint Gaussian prior. A zero on the diagonal of the
+/// covariance (its row and column zero too) is a weight that is not sampled.
+struct WeightPrior {
+    Eigen::VectorXd mean;        ///< n_bins
+    Eigen::MatrixXd covariance;  ///< n_bins x n_bins, symmetric positive semi-definite
+};
+
+/// Monopoles, sources per steradian: Gamma(shape, rate) for each; (0, 0) is log-uniform (1/M),
+/// (1, 0) uniform.
+struct MonopolePrior {
+    double shape = 0.0;
+    double rate = 0.0;
+    bool sampled = false;  ///< sample ln M instead of integrating it out
+    bool is_improper() const { return shape <= 0.0 || rate <= 0.0; }
+};
+
+/// What the model needs to know of one bin besides its counts.
+struct BinModel {
+    double bias_ratio = 1.0;  ///< r: the bin feels r times the survey's intrinsic dipole
+    double dispersion = 1.0;  ///< phi: ln L of the bin is divided by it
+};
+
+struct SurveyModel {
+    WeightPrior weights;
+    std::vector<BinModel> bins;  ///< in the order of the counts
+    VectorPrior intrinsic{"no-intrinsic",
+                          FixedPrior{}};  ///< idle where the intrinsic vector is shared
+};
+
+struct ModelOptions {
+    VectorPrior velocity{"no-motion", FixedPrior{}};
+    bool intrinsic_shared = false;
+    VectorPrior intrinsic{"no-intrinsic", FixedPrior{}};  ///< where shared
+    std::vector<SurveyModel> surveys;                     ///< in the order of the counts
+    MonopolePrior monopole;
+};
+
+}  // namespace deviascope

@@ -1,0 +1,111 @@
+// SPDX-License-Identifier: GPL-2.0-or-later
+// counts -> MODEL -> ensemble
+#pragma once
+
+#include <Eigen/Core>
+#include <cstdint>
+#include <string>
+#include <variant>
+
+#include "deviascope/core/random.h"
+#include "deviascope/sky/direction.h"
+#include "deviascope/sky/frame.h"
+
+namespace deviascope {
+
+/// Constant density inside the ball |v| < max.
+struct UniformVectorPrior {
+    double max = 0.0;
+};
+/// Uniform in amplitude 0 … max, isotropic in direction: density 1 / (4 pi max |v|^2).
+struct UniformAmplitudePrior {
+    double max = 0.0;
+};
+/// Gaussian in the vector. Covariance symmetric positive definite.
+struct GaussianPrior {
+    Eigen::Vector3d mean = Eigen::Vector3d::Zero();
+    Eigen::Matrix3d covariance = Eigen::Matrix3d::Identity();
+};
+/// Along a fixed direction (in the job's frame), amplitude uniform in 0 … max.
+struct AxisPrior {
+    Direction axis = Direction::UnitZ();
+    double max = 0.0;
+};
+/// Not sampled.
+struct FixedPrior {
+    Eigen::Vector3d value = Eigen::Vector3d::Zero();
+};
+
+/// A measured speed and direction, as published.
+struct MeasuredVelocity {
+    double speed_km_s = 0.0, speed_sd_km_s = 0.0;
+    double lon_deg = 0.0,
+           lon_sd_deg = 0.0;  ///< lon_sd_deg is a coordinate error: times cos lat on the sky
+    double lat_deg = 0.0, lat_sd_deg = 0.0;
+    Frame frame = Frame::galactic;
+};
+
+/// The Gaussian in the vector, units of c, in `job_frame`: mean along the direction with length
+/// speed / c, standard deviations speed_sd / c radially, (speed / c) cos(lat) lon_sd along lon
+/// and (speed / c) lat_sd along lat, rotated. Source: linear propagation of the published
+/// errors (derived in DEVELOPERS.md).
+GaussianPrior gaussian_of(const MeasuredVelocity& measured, Frame job_frame);
+
+/// The prior of one vector (velocity or intrinsic dipole), in the job's frame, in the vector's
+/// unit.
+///
+/// Every density has |v| < 1 as a hard wall (log density -inf outside).
+/// The sampler moves *coordinates* (design section 4): the vector itself, except
+///   uniform-amplitude: u with v = u |u|^2 / max^2, flat in the ball |u| < max;
+///   axis: one coordinate, the amplitude;   fixed: none.
+class VectorPrior {
+  public:
+    using Kind = std::variant<UniformVectorPrior,
+                              UniformAmplitudePrior,
+                              GaussianPrior,
+                              AxisPrior,
+                              FixedPrior>;
+
+    VectorPrior(std::string name, Kind kind);
+
+    const std::string& name() const {
+        return name_;
+    }  ///< file name, or the kind of an inline table
+    const Kind& kind() const { return kind_; }
+    std::string kind_name() const;       ///< `uniform-vector`, …
+    Eigen::Index n_coordinates() const;  ///< 3, 1 or 0
+
+    /// The vector at given coordinates (n_coordinates).
+    Eigen::Vector3d vector_at(const Eigen::Ref<const Eigen::VectorXd>& coordinates) const;
+    /// Coordinates of a vector; for `axis` its component along the axis.
+    Eigen::VectorXd coordinates_of(const Eigen::Vector3d& vector) const;
+    /// d vector / d coordinates, 3 x n_coordinates.
+    Eigen::MatrixXd jacobian_at(const Eigen::Ref<const Eigen::VectorXd>& coordinates) const;
+
+    /// Normalised log density **in the coordinates**; -inf outside the support or the wall.
+    /// (The cut of a Gaussian by the wall |v| < 1 is not renormalised.)
+    double log_density(const Eigen::Ref<const Eigen::VectorXd>& coordinates) const;
+
+    /// One draw of the vector.
+    Eigen::Vector3d draw(Stream& stream) const;
+
+    /// Median of |v| under the prior: exact where closed (max / cbrt 2, max / 2, fixed,
+    /// isotropic Gaussian of mean 0), else the median of 100,000 keyed draws of (seed,
+    /// prior_draw).
+    double median_amplitude(std::uint64_t seed) const;
+
+    /// Covariance of the vector as design section 6 counts it for the separation:
+    /// uniform-vector max^2/5, uniform-amplitude max^2/9 a component, gaussian its own, axis
+    /// max^2/12 along the axis, fixed 0.
+    Eigen::Matrix3d covariance() const;
+
+  private:
+    std::string name_;
+    Kind kind_;
+    Eigen::Matrix3d precision_factor_ =
+        Eigen::Matrix3d::Zero();  ///< inverse Cholesky factor (gaussian)
+    Eigen::Matrix3d factor_ = Eigen::Matrix3d::Zero();
+    double log_normalisation_ = 0.0;
+};
+
+}  // namespace deviascope

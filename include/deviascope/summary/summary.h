@@ -1,0 +1,100 @@
+// SPDX-License-Identifier: GPL-2.0-or-later
+// chain -> SUMMARY -> figures
+#pragma once
+
+#include <map>
+#include <optional>
+#include <string>
+#include <vector>
+
+#include "deviascope/chain/chain.h"
+#include "deviascope/ensemble/diagnostics.h"
+#include "deviascope/model/parameter_space.h"
+#include "deviascope/summary/direction_density.h"
+#include "deviascope/summary/interval.h"
+#include "deviascope/summary/separation.h"
+
+namespace deviascope {
+
+/// A region of sky: smallest area that holds the probability, and the quantile of the angular
+/// distance from the mean direction (empty where there is no mean direction).
+struct SkyRegion {
+    double area_deg2 = 0.0;
+    std::optional<double> radius_deg;
+};
+
+/// What is reported of one vector.
+struct VectorSummary {
+    std::string name;  ///< `velocity`, or the survey of an intrinsic dipole, or `all`
+    std::string prior;
+    double prior_median_amplitude = 0.0;
+    ScalarEstimate amplitude;  ///< in c (velocity) or dimensionless
+    Eigen::Vector3d mean;
+    Eigen::Matrix3d covariance;
+    std::optional<LonLat> galactic, icrs;         ///< of the mean direction
+    std::optional<SkyRegion> region68, region95;  ///< empty where the vector is fixed at zero
+};
+
+/// Offset of the velocity from the `cmb-velocity` prior.
+struct CmbOffset {
+    double angle_median_deg;
+    Interval angle68_deg;
+    double speed_ratio_median;
+    Interval speed_ratio68;
+};
+
+struct BinSummary {
+    std::string survey, bin;
+    std::int64_t sources = 0, pixels = 0;
+    double sky_fraction = 0.0;
+    ScalarEstimate monopole, weight;
+    double weight_prior_mean = 0.0, weight_prior_sd = 0.0;
+};
+
+struct SamplingSummary {
+    bool converged = false;
+    Outcome outcome;
+    Eigen::Index replicates = 0, walkers = 0;
+    double walker_rhat_max = 0.0, replicate_rhat_max = 0.0;
+    double effective_draws_min = 0.0, autocorrelation_steps_max = 0.0;
+    std::int64_t moment_evaluations = 0, pixel_evaluations = 0;
+    std::vector<ScalarDiagnostics> scalars;
+};
+
+struct Summary {
+    std::string job;  ///< title
+    Frame frame = Frame::galactic;
+    VectorSummary velocity;
+    std::optional<CmbOffset> offset_from_cmb;  ///< empty where the velocity is zero
+    std::vector<VectorSummary> intrinsic;
+    std::vector<BinSummary> bins;
+    Separation separation;
+    SamplingSummary sampling;
+    std::vector<CutReport> cuts;  ///< per survey, job order
+    std::vector<std::string> survey_names;
+    std::vector<std::string> warnings;  ///< plain words
+};
+
+struct SummaryOptions {
+    std::string title;
+    std::uint64_t seed = 0;
+    Eigen::Vector3d cmb_velocity;  ///< mean of the cmb-velocity prior, job's frame, units of c
+    std::vector<std::string> job_warnings;  ///< warnings of earlier stages to carry
+    int threads = 1;
+};
+
+/// Numbers from draws; definitions in design section 6.
+Summary summarise(const Chain& chain,
+                  const ParameterSpace& space,
+                  const SummaryOptions& options);
+
+/// summary.json, schema 1: keys and nesting of design section 6; undefined or constant: null.
+std::string to_json(const Summary& summary);
+
+/// summary.txt: what a referee reads; at most 100 columns, plain text, our own wording.
+std::string to_text(const Summary& summary);
+
+/// The table of cuts of one survey, plain text.
+std::string cut_table(const std::string& survey, const CutReport& cuts);
+
+}  // namespace deviascope
