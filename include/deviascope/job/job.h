@@ -19,6 +19,7 @@ namespace deviascope {
 struct Job {
     std::string name;   ///< file name
     std::string title;  ///< job.title, else the file name
+    std::filesystem::path folder;  ///< where relative paths start; empty for a text
     std::string text;   ///< the file's bytes
     std::uint64_t seed = 0;
     int nside = 64;
