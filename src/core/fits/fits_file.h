@@ -4,7 +4,7 @@
 
 #include <cstdint>
 #include <filesystem>
-#include <limits>
+#include <memory>
 #include <optional>
 #include <span>
 #include <string>
@@ -12,27 +12,34 @@
 
 namespace deviascope::fits {
 
+/// Closes a file of the library; errors are dropped, for they were reported where they matter.
+struct Closer {
+    void operator()(void* file) const noexcept;
+};
+/// A `fitsfile*` of the library, kept out of this header.
+using Handle = std::unique_ptr<void, Closer>;
+
 /// What a binary-table column holds.
 struct Column {
-    std::string name;         ///< TTYPE
-    int number = 0;           ///< 1-based, as CFITSIO counts
-    bool is_numeric = false;  ///< any integer, real or logical type; not text, complex, bits
+    std::string name;  ///< TTYPE
+    int number = 0;    ///< 1-based, as CFITSIO counts
+    /// Any integer, real or logical type; not text, complex, bits, variable-length arrays.
+    bool is_numeric = false;
     std::int64_t repeat = 1;  ///< values a row; 0 for variable-length arrays
     std::string unit;         ///< TUNIT, may be empty
     std::string form;         ///< TFORM, for messages
 };
 
-/// A FITS file open for reading, positioned at one binary table.
+/// A FITS file open for reading, positioned at one binary table. File names are taken
+/// literally (no extended syntax); gzip-compressed files are read too.
 /// Errors of all members: InputError with path and the library's own words.
 class Table {
   public:
-    /// Opens `path` at the HDU named or numbered `hdu` (0 = primary, as the standard counts);
-    /// where empty, at the first binary table.
+    /// Opens `path` at the HDU named (EXTNAME, in any case) or numbered `hdu` (only digits;
+    /// 0 = primary, as the standard counts); where empty, at the first binary table. A file
+    /// that ends before the last row is refused here.
     explicit Table(const std::filesystem::path& path,
                    const std::optional<std::string>& hdu = {});
-    ~Table();
-    Table(const Table&) = delete;
-    Table& operator=(const Table&) = delete;
 
     const std::vector<Column>& columns() const { return columns_; }
     std::int64_t n_rows() const { return n_rows_; }
@@ -40,27 +47,41 @@ class Table {
     std::int64_t rows_at_a_time() const;
 
     /// Reads rows [first, first + values.size()/repeat) of a numeric column as doubles, scaling
-    /// and null values obeyed: nulls become NaN. Rows are counted from 0.
+    /// (TSCAL, TZERO, so unsigned integers too) and null values obeyed: nulls become NaN;
+    /// infinities stay; logical T, F become 1, 0. Integers beyond 2^53 are rounded. Rows are
+    /// counted from 0.
     void read(const Column& column, std::int64_t first, std::span<double> values) const;
 
-    /// Header cards of the table; empty where absent. Errors: InputError if of another type.
+    /// Header cards of the table; empty where absent or without a value. An integer card may be
+    /// written as a whole real number. Errors: InputError if of another type.
     std::optional<std::string> text_card(const std::string& keyword) const;
     std::optional<std::int64_t> integer_card(const std::string& keyword) const;
 
   private:
+    void open();
+    void go_to_number(int hdu);
+    void go_to_name(const std::string& name);
+    void go_to_first_table();
+    void list_columns();
+    void refuse_if_cut_short() const;
+    std::optional<std::string> raw_card(const std::string& keyword) const;
+
     std::filesystem::path path_;
-    void* file_ = nullptr;  // fitsfile*, kept out of the header
+    Handle file_;
     std::vector<Column> columns_;
+    std::vector<int> type_;  // the library's type code of each column
     std::int64_t n_rows_ = 0;
 };
 
-/// A FITS file with one binary table that is being written: to a temporary name, put in place
-/// by `close`. Left unclosed, the temporary file is removed. Errors: OutputError.
+/// A FITS file with one binary table that is being written: to a temporary name (`.partial`
+/// added), put in place by `close`. Left unclosed, the temporary file is removed. File names
+/// are taken literally. Errors: OutputError.
 class TableWriter {
   public:
     struct NewColumn {
-        std::string name, form,
-            unit;  ///< form: `D`, `E`, `J`, `K`, with a repeat count allowed
+        std::string name;
+        std::string form;  ///< `D`, `E`, `J`, `K`, with a repeat count allowed
+        std::string unit;
     };
     TableWriter(const std::filesystem::path& path,
                 const std::string& extension_name,
@@ -80,8 +101,10 @@ class TableWriter {
     void close();
 
   private:
+    void check(int status) const;
+
     std::filesystem::path path_, temporary_;
-    void* file_ = nullptr;
+    Handle file_;
 };
 
 }  // namespace deviascope::fits

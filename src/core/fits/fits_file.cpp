@@ -1,0 +1,456 @@
+// SPDX-License-Identifier: GPL-2.0-or-later
+#include "core/fits/fits_file.h"
+
+#include <fitsio.h>
+#include <fmt/format.h>
+
+#include <algorithm>
+#include <array>
+#include <charconv>
+#include <cmath>
+#include <cstdlib>
+#include <limits>
+#include <system_error>
+
+#include "deviascope/core/error.h"
+
+namespace deviascope::fits {
+
+namespace {
+
+fitsfile* raw(const Handle& handle) {
+    return static_cast<fitsfile*>(handle.get());
+}
+
+/// The library's words for a failed call: status text and the first message of its stack.
+std::string library_words(int status) {
+    std::array<char, FLEN_STATUS> text{};
+    std::array<char, FLEN_ERRMSG> detail{};
+    fits_get_errstatus(status, text.data());
+    fits_read_errmsg(detail.data());
+    fits_clear_errmsg();
+    std::string words = fmt::format("CFITSIO says \"{}\"", text.data());
+    if (detail[0] != '\0') words += fmt::format(" ({})", detail.data());
+    return words;
+}
+
+/// The library skips leading blanks and expands `~` even in literal names; `./` stops both.
+std::string literal_name(const std::filesystem::path& path) {
+    return path.is_absolute() ? path.string() : "./" + path.string();
+}
+
+void check_read(int status,
+                const std::filesystem::path& path,
+                const std::string& place,
+                const std::string& remedy = "check the file with a FITS verifier") {
+    if (status == 0) return;
+    throw InputError({path.string() + place, library_words(status), "", remedy});
+}
+
+/// Does the file open, list and read at all? Answered before the library, in plain words.
+void refuse_unless_regular_file(const std::filesystem::path& path) {
+    std::error_code failure;
+    const auto status = std::filesystem::status(path, failure);
+    if (!std::filesystem::exists(status))
+        throw InputError({path.string(), "there is no such file", "", "check the path"});
+    if (!std::filesystem::is_regular_file(status))
+        throw InputError({path.string(), "this is not a regular file", "a FITS file", ""});
+}
+
+std::string extension_name(fitsfile* file) {
+    int status = 0;
+    std::array<char, FLEN_VALUE> name{};
+    fits_read_key(file, TSTRING, "EXTNAME", name.data(), nullptr, &status);
+    fits_clear_errmsg();
+    return status == 0 ? name.data() : "";
+}
+
+bool is_binary_table(fitsfile* file) {
+    int status = 0;
+    int kind = 0;
+    fits_get_hdu_type(file, &kind, &status);
+    return status == 0 && kind == BINARY_TBL;
+}
+
+bool same_in_any_case(std::string_view a, std::string_view b) {
+    const auto lower = [](char c) { return c >= 'A' && c <= 'Z' ? char(c - 'A' + 'a') : c; };
+    return std::equal(a.begin(), a.end(), b.begin(), b.end(), [&](char p, char q) {
+        return lower(p) == lower(q);
+    });
+}
+
+std::optional<int> as_number(const std::string& text) {
+    int number = 0;
+    const char* end = text.data() + text.size();
+    const auto result = std::from_chars(text.data(), end, number);
+    const bool whole = result.ec == std::errc{} && result.ptr == end && text[0] != '-';
+    return whole ? std::optional<int>(number) : std::nullopt;
+}
+
+bool is_integer_type(int type) {
+    return type == TBYTE || type == TSBYTE || type == TSHORT || type == TUSHORT ||
+           type == TINT || type == TUINT || type == TLONG || type == TULONG ||
+           type == TINT32BIT || type == TLONGLONG || type == TULONGLONG;
+}
+
+bool is_real_type(int type) {
+    return type == TFLOAT || type == TDOUBLE;
+}
+
+/// The value of a card without quotes, doubled quotes or trailing blanks.
+std::string unquoted(const std::string& value) {
+    std::string text;
+    for (std::size_t at = 1; at + 1 < value.size(); ++at) {
+        text += value[at];
+        if (value[at] == '\'') ++at;
+    }
+    text.erase(text.find_last_not_of(' ') + 1);
+    return text;
+}
+
+}  // namespace
+
+void Closer::operator()(void* file) const noexcept {
+    int status = 0;
+    fits_close_file(static_cast<fitsfile*>(file), &status);
+    fits_clear_errmsg();
+}
+
+// ---- reading ----
+
+Table::Table(const std::filesystem::path& path, const std::optional<std::string>& hdu)
+    : path_(path) {
+    open();
+    if (!hdu) {
+        go_to_first_table();
+    } else if (const auto number = as_number(*hdu)) {
+        go_to_number(*number);
+    } else {
+        go_to_name(*hdu);
+    }
+    if (!is_binary_table(raw(file_))) {
+        throw InputError({fmt::format("{}: HDU {}", path_.string(), hdu.value_or("")),
+                          "it is not a binary table",
+                          "a binary-table extension",
+                          "name another HDU"});
+    }
+    list_columns();
+    refuse_if_cut_short();
+}
+
+void Table::open() {
+    refuse_unless_regular_file(path_);
+    int status = 0;
+    fitsfile* file = nullptr;
+    fits_open_diskfile(&file, literal_name(path_).c_str(), READONLY, &status);
+    file_.reset(file);
+    check_read(status, path_, "", "check that it is a FITS file that you may read");
+}
+
+void Table::go_to_number(int hdu) {
+    int status = 0;
+    int n_hdus = 0;
+    fits_get_num_hdus(raw(file_), &n_hdus, &status);
+    check_read(status, path_, "");
+    if (hdu >= n_hdus) {
+        throw InputError({path_.string(),
+                          fmt::format("there is no HDU {}", hdu),
+                          fmt::format("0 (the primary HDU) to {}", n_hdus - 1),
+                          "name an HDU of the file"});
+    }
+    fits_movabs_hdu(raw(file_), hdu + 1, nullptr, &status);
+    check_read(status, path_, fmt::format(": HDU {}", hdu));
+}
+
+void Table::go_to_name(const std::string& name) {
+    int status = 0;
+    int n_hdus = 0;
+    fits_get_num_hdus(raw(file_), &n_hdus, &status);
+    std::string present;
+    for (int hdu = 1; hdu <= n_hdus && status == 0; ++hdu) {
+        fits_movabs_hdu(raw(file_), hdu, nullptr, &status);
+        const std::string here = extension_name(raw(file_));
+        if (same_in_any_case(here, name)) return;
+        if (!here.empty()) present += (present.empty() ? "" : ", ") + here;
+    }
+    check_read(status, path_, "");
+    throw InputError({path_.string(),
+                      fmt::format("there is no HDU named {}", name),
+                      present.empty() ? "its HDUs have no names" : "its HDUs are " + present,
+                      "name an HDU of the file, or give its number (0 is the primary HDU)"});
+}
+
+void Table::go_to_first_table() {
+    int status = 0;
+    int n_hdus = 0;
+    fits_get_num_hdus(raw(file_), &n_hdus, &status);
+    for (int hdu = 2; hdu <= n_hdus && status == 0; ++hdu) {
+        fits_movabs_hdu(raw(file_), hdu, nullptr, &status);
+        if (status == 0 && is_binary_table(raw(file_))) return;
+    }
+    check_read(status, path_, "");
+    throw InputError({path_.string(),
+                      "it holds no binary table",
+                      "a FITS file with a binary-table extension",
+                      "check that this is the right file"});
+}
+
+void Table::list_columns() {
+    int status = 0;
+    int n_columns = 0;
+    LONGLONG n_rows = 0;
+    fits_get_num_cols(raw(file_), &n_columns, &status);
+    fits_get_num_rowsll(raw(file_), &n_rows, &status);
+    check_read(status, path_, "");
+    n_rows_ = n_rows;
+    for (int number = 1; number <= n_columns; ++number) {
+        int type = 0;
+        LONGLONG repeat = 0;
+        fits_get_coltypell(raw(file_), number, &type, &repeat, nullptr, &status);
+        check_read(status, path_, fmt::format(": column {}", number));
+        const auto card = [&](const char* stem) {
+            return text_card(stem + std::to_string(number)).value_or("");
+        };
+        Column column{card("TTYPE"), number, false, 0, card("TUNIT"), card("TFORM")};
+        column.is_numeric = is_integer_type(type) || is_real_type(type) || type == TLOGICAL;
+        column.repeat = type < 0 ? 0 : repeat;
+        columns_.push_back(std::move(column));
+        type_.push_back(type);
+    }
+}
+
+void Table::refuse_if_cut_short() const {
+    int status = 0;
+    LONGLONG width = 0;
+    fits_read_key(raw(file_), TLONGLONG, "NAXIS1", &width, nullptr, &status);
+    unsigned char last = 0;
+    if (status == 0 && n_rows_ > 0 && width > 0)
+        fits_read_tblbytes(raw(file_), n_rows_, width, 1, &last, &status);
+    if (status == 0) return;
+    throw InputError({path_.string(),
+                      fmt::format("the file ends before the last of its {} rows: {}",
+                                  n_rows_,
+                                  library_words(status)),
+                      "",
+                      "fetch or write the file again"});
+}
+
+std::int64_t Table::rows_at_a_time() const {
+    int status = 0;
+    long rows = 0;
+    fits_get_rowsize(raw(file_), &rows, &status);
+    check_read(status, path_, "");
+    return std::max(1L, rows);
+}
+
+void Table::read(const Column& column, std::int64_t first, std::span<double> values) const {
+    const std::string place = fmt::format(": column {}", column.name);
+    if (!column.is_numeric) {
+        throw InputError({path_.string() + place,
+                          fmt::format("its form is {}", column.form),
+                          "a numeric or logical column of fixed length",
+                          "name another column"});
+    }
+    if (values.empty()) return;
+    ensure(column.repeat > 0 && first >= 0 &&
+               first + std::int64_t(values.size()) / column.repeat <= n_rows_,
+           "rows asked of a FITS table lie inside it");
+    int status = 0;
+    int any_null = 0;  // the library writes to it whenever it meets a null
+    const int type = type_.at(std::size_t(column.number - 1));
+    const auto n = LONGLONG(values.size());
+    if (type == TLOGICAL) {
+        constexpr char null = 2;
+        std::vector<char> truth(values.size());
+        char null_value = null;
+        fits_read_col(raw(file_),
+                      TLOGICAL,
+                      column.number,
+                      first + 1,
+                      1,
+                      n,
+                      &null_value,
+                      truth.data(),
+                      &any_null,
+                      &status);
+        std::transform(truth.begin(), truth.end(), values.begin(), [](char t) {
+            return t == null ? std::numeric_limits<double>::quiet_NaN() : double(t);
+        });
+    } else {
+        // With a null value the library also turns infinities into it, so reals go without:
+        // their NaN is null already.
+        double null_value = std::numeric_limits<double>::quiet_NaN();
+        double* null = is_real_type(type) ? nullptr : &null_value;
+        fits_read_col(raw(file_),
+                      TDOUBLE,
+                      column.number,
+                      first + 1,
+                      1,
+                      n,
+                      null,
+                      values.data(),
+                      &any_null,
+                      &status);
+    }
+    check_read(status, path_, place);
+}
+
+/// The value as written in the header; empty where there is no card or no value.
+std::optional<std::string> Table::raw_card(const std::string& keyword) const {
+    int status = 0;
+    std::array<char, FLEN_VALUE> value{};
+    fits_read_keyword(raw(file_), keyword.c_str(), value.data(), nullptr, &status);
+    if (status == KEY_NO_EXIST) {
+        fits_clear_errmsg();
+        return {};
+    }
+    check_read(status, path_, ": " + keyword);
+    if (value[0] == '\0') return {};
+    return std::string(value.data());
+}
+
+std::optional<std::string> Table::text_card(const std::string& keyword) const {
+    const auto value = raw_card(keyword);
+    if (!value) return {};
+    if (value->front() != '\'')
+        throw InputError({path_.string() + ": " + keyword,
+                          fmt::format("its value is {}", *value),
+                          "text in quotes",
+                          "correct the header"});
+    return unquoted(*value);
+}
+
+std::optional<std::int64_t> Table::integer_card(const std::string& keyword) const {
+    const auto value = raw_card(keyword);
+    if (!value) return {};
+    char* end = nullptr;
+    const double number = std::strtod(value->c_str(), &end);
+    const bool whole =
+        *end == '\0' && std::abs(number) < 0x1p53 && std::floor(number) == number;
+    if (!whole)
+        throw InputError({path_.string() + ": " + keyword,
+                          fmt::format("its value is {}", *value),
+                          "a whole number",
+                          "correct the header"});
+    return std::int64_t(number);
+}
+
+// ---- writing ----
+
+TableWriter::TableWriter(const std::filesystem::path& path,
+                         const std::string& extension_name,
+                         const std::vector<NewColumn>& columns)
+    : path_(path), temporary_(path.string() + ".partial") {
+    std::error_code ignored;
+    std::filesystem::remove(temporary_, ignored);  // left by a run that was killed
+    int status = 0;
+    fitsfile* file = nullptr;
+    fits_create_diskfile(&file, literal_name(temporary_).c_str(), &status);
+    file_.reset(file);
+    check(status);
+    std::vector<char*> names, forms, units;
+    for (const NewColumn& column : columns) {  // the library reads them, through char*
+        names.push_back(const_cast<char*>(column.name.c_str()));
+        forms.push_back(const_cast<char*>(column.form.c_str()));
+        units.push_back(const_cast<char*>(column.unit.c_str()));
+    }
+    fits_create_tbl(file,
+                    BINARY_TBL,
+                    0,
+                    int(columns.size()),
+                    names.data(),
+                    forms.data(),
+                    units.data(),
+                    extension_name.c_str(),
+                    &status);
+    if (status != 0) {
+        file_.reset();
+        std::filesystem::remove(temporary_, ignored);
+    }
+    check(status);
+}
+
+TableWriter::~TableWriter() {
+    if (!file_) return;
+    file_.reset();
+    std::error_code ignored;
+    std::filesystem::remove(temporary_, ignored);
+}
+
+void TableWriter::check(int status) const {
+    if (status == 0) return;
+    throw OutputError({path_.string(),
+                       library_words(status),
+                       "",
+                       "check that the folder exists, may be written to and has space"});
+}
+
+void TableWriter::card(const std::string& keyword,
+                       const std::string& value,
+                       const std::string& comment) {
+    int status = 0;
+    fits_update_key_longstr(
+        raw(file_), keyword.c_str(), value.c_str(), comment.c_str(), &status);
+    check(status);
+}
+
+void TableWriter::card(const std::string& keyword,
+                       std::int64_t value,
+                       const std::string& comment) {
+    int status = 0;
+    fits_update_key_lng(raw(file_), keyword.c_str(), value, comment.c_str(), &status);
+    check(status);
+}
+
+void TableWriter::card(const std::string& keyword, double value, const std::string& comment) {
+    int status = 0;
+    fits_update_key_dbl(raw(file_), keyword.c_str(), value, -15, comment.c_str(), &status);
+    check(status);
+}
+
+void TableWriter::write(std::size_t column,
+                        std::int64_t first,
+                        std::span<const double> values) {
+    int status = 0;
+    fits_write_col_dbl(raw(file_),
+                       int(column) + 1,
+                       first + 1,
+                       1,
+                       LONGLONG(values.size()),
+                       const_cast<double*>(values.data()),
+                       &status);
+    check(status);
+}
+
+void TableWriter::write(std::size_t column,
+                        std::int64_t first,
+                        std::span<const std::int64_t> values) {
+    static_assert(sizeof(LONGLONG) == sizeof(std::int64_t));
+    int status = 0;
+    fits_write_col(raw(file_),
+                   TLONGLONG,
+                   int(column) + 1,
+                   first + 1,
+                   1,
+                   LONGLONG(values.size()),
+                   const_cast<std::int64_t*>(values.data()),
+                   &status);
+    check(status);
+}
+
+void TableWriter::close() {
+    ensure(file_ != nullptr, "a FITS table is closed once");
+    int status = 0;
+    fits_close_file(static_cast<fitsfile*>(file_.release()), &status);
+    std::error_code failure;
+    if (status == 0) {
+        std::filesystem::rename(temporary_, path_, failure);
+        if (!failure) return;
+    }
+    std::error_code ignored;
+    std::filesystem::remove(temporary_, ignored);
+    check(status);
+    throw OutputError({path_.string(), failure.message(), "", "check what is at this path"});
+}
+
+}  // namespace deviascope::fits
