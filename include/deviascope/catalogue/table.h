@@ -19,6 +19,7 @@ struct TableChunk {
 };
 
 /// A catalogue file read in chunks, so that memory does not grow with the file.
+/// Threads: main thread only.
 class TableReader {
   public:
     virtual ~TableReader() = default;
@@ -30,18 +31,24 @@ class TableReader {
     virtual std::optional<std::int64_t> n_rows() const = 0;
     /// How a person names row `row` (counted from 0) of this file: `row 12` or `line 14`.
     virtual std::string place_of_row(std::int64_t row) const = 0;
+    /// Unit of a column, as the file states it (FITS: TUNIT); empty where it states none.
+    /// @param column  index in the order asked for
+    virtual std::string unit_of(std::size_t column) const = 0;
 };
 
-/// Opens a catalogue for reading the named columns.
+/// Opens a catalogue for reading the named columns. The kind of file is told from its content.
 ///
-/// FITS binary tables (by content: the file begins with `SIMPLE  =`): any numeric column type,
-/// scaling and null values; CSV (RFC 4180: header line with names, quoted fields, doubled
-/// quotes; blank = missing; a number that cannot be read is an error). Names are matched
-/// exactly, else, if that is unambiguous, ignoring case.
+/// FITS binary tables (the file begins with `SIMPLE  =`): any numeric column type, scaling and
+/// null values obeyed. CSV (RFC 4180): a header line with names; quoted fields, doubled quotes
+/// and line breaks inside quotes; lines end in LF or CRLF; a byte-order mark is skipped. A
+/// field that is blank or `nan` is missing; blanks around a number and a leading plus sign are
+/// allowed; a number that cannot be read is an error, as are a record with more or fewer fields
+/// than the header and a double quote inside an unquoted field. Empty lines are allowed at the
+/// end only. Names are matched exactly, else, if that is unambiguous, ignoring case.
 /// @param table    HDU name or number (FITS); an error for CSV
 /// @param columns  names in the order wanted; a name may be asked for once only
 /// Errors: InputError (cannot open, no such table or column with the nearest name, vector or
-/// text column, truncated file).
+/// text column, truncated file; gzip and HDF5, which are not yet available).
 std::unique_ptr<TableReader> open_table(const std::filesystem::path& path,
                                         const std::optional<std::string>& table,
                                         const std::vector<std::string>& columns);
