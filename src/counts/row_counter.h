@@ -1,0 +1,61 @@
+// SPDX-License-Identifier: GPL-2.0-or-later
+// COUNTS (private): rows of a catalogue to counts
+#pragma once
+
+#include <Eigen/Core>
+#include <filesystem>
+#include <vector>
+
+#include "counts/bin_tally.h"
+#include "counts/cut_table.h"
+#include "counts/offending_rows.h"
+
+namespace deviascope {
+
+/// What rows are judged by.
+struct Selection {
+    const SurveyInput& input;
+    const RowSelection& rows;
+    const SkyCuts& sky;
+    const Pixelisation& grid;
+    Frame frame;
+};
+
+/// Judges rows, chunk after chunk, and counts those that are kept in the bin they fall in.
+class RowCounter {
+  public:
+    /// @param cuts, tallies  are added to; tallies: n_bins
+    RowCounter(const Selection& selection, CutTable& cuts, std::vector<BinTally>& tallies);
+
+    /// @param path, reader  the chunk came from, for messages
+    void add(const TableChunk& chunk,
+             const std::filesystem::path& path,
+             const TableReader& reader);
+
+    /// Errors: InputError: rows with bad positions (unless they are to be skipped), or in two
+    /// bins; count and first five.
+    void refuse_offending_rows() const;
+
+  private:
+    void locate(const TableChunk& chunk);
+    std::size_t cut_of(const TableChunk& chunk, std::size_t row);
+    std::size_t cut_by_bins(const TableChunk& chunk, std::size_t row);
+    std::string place(std::size_t row) const;
+
+    const Selection selection_;
+    const Eigen::Matrix3d to_job_;
+    CutTable& cuts_;
+    std::vector<BinTally>& tallies_;
+    OffendingRows bad_positions_;
+    OffendingRows in_two_bins_;
+
+    // of the chunk at hand
+    std::vector<Direction> direction_;  // in the job's frame; of bad positions arbitrary
+    std::vector<std::int64_t> pixel_;
+    std::vector<char> is_bad_;
+    std::int64_t first_row_ = 0;
+    const std::filesystem::path* path_ = nullptr;
+    const TableReader* reader_ = nullptr;
+};
+
+}  // namespace deviascope
