@@ -57,6 +57,24 @@ void refuse_unless_regular_file(const std::filesystem::path& path) {
         throw InputError({path.string(), "this is not a regular file", "a FITS file", ""});
 }
 
+Handle open_for_reading(const std::filesystem::path& path) {
+    refuse_unless_regular_file(path);
+    int status = 0;
+    fitsfile* file = nullptr;
+    fits_open_diskfile(&file, literal_name(path).c_str(), READONLY, &status);
+    Handle handle(file);
+    check_read(status, path, "", "check that it is a FITS file that you may read");
+    return handle;
+}
+
+int number_of_hdus(const Handle& file, const std::filesystem::path& path) {
+    int status = 0;
+    int n_hdus = 0;
+    fits_get_num_hdus(raw(file), &n_hdus, &status);
+    check_read(status, path, "");
+    return n_hdus;
+}
+
 std::string extension_name(fitsfile* file) {
     int status = 0;
     std::array<char, FLEN_VALUE> name{};
@@ -70,6 +88,18 @@ bool is_binary_table(fitsfile* file) {
     int kind = 0;
     fits_get_hdu_type(file, &kind, &status);
     return status == 0 && kind == BINARY_TBL;
+}
+
+std::vector<int> table_numbers(const Handle& file, const std::filesystem::path& path) {
+    const int n_hdus = number_of_hdus(file, path);
+    std::vector<int> tables;
+    for (int hdu = 1; hdu < n_hdus; ++hdu) {
+        int status = 0;
+        fits_movabs_hdu(raw(file), hdu + 1, nullptr, &status);
+        check_read(status, path, fmt::format(": HDU {}", hdu));
+        if (is_binary_table(raw(file))) tables.push_back(hdu);
+    }
+    return tables;
 }
 
 bool same_in_any_case(std::string_view a, std::string_view b) {
@@ -118,9 +148,12 @@ void Closer::operator()(void* file) const noexcept {
 
 // ---- reading ----
 
+std::vector<int> binary_tables(const std::filesystem::path& path) {
+    return table_numbers(open_for_reading(path), path);
+}
+
 Table::Table(const std::filesystem::path& path, const std::optional<std::string>& hdu)
-    : path_(path) {
-    open();
+    : path_(path), file_(open_for_reading(path)) {
     if (!hdu) {
         go_to_first_table();
     } else if (const auto number = as_number(*hdu)) {
@@ -138,20 +171,9 @@ Table::Table(const std::filesystem::path& path, const std::optional<std::string>
     refuse_if_cut_short();
 }
 
-void Table::open() {
-    refuse_unless_regular_file(path_);
-    int status = 0;
-    fitsfile* file = nullptr;
-    fits_open_diskfile(&file, literal_name(path_).c_str(), READONLY, &status);
-    file_.reset(file);
-    check_read(status, path_, "", "check that it is a FITS file that you may read");
-}
-
 void Table::go_to_number(int hdu) {
     int status = 0;
-    int n_hdus = 0;
-    fits_get_num_hdus(raw(file_), &n_hdus, &status);
-    check_read(status, path_, "");
+    const int n_hdus = number_of_hdus(file_, path_);
     if (hdu >= n_hdus) {
         throw InputError({path_.string(),
                           fmt::format("there is no HDU {}", hdu),
@@ -164,8 +186,7 @@ void Table::go_to_number(int hdu) {
 
 void Table::go_to_name(const std::string& name) {
     int status = 0;
-    int n_hdus = 0;
-    fits_get_num_hdus(raw(file_), &n_hdus, &status);
+    const int n_hdus = number_of_hdus(file_, path_);
     std::string present;
     for (int hdu = 1; hdu <= n_hdus && status == 0; ++hdu) {
         fits_movabs_hdu(raw(file_), hdu, nullptr, &status);
@@ -181,18 +202,14 @@ void Table::go_to_name(const std::string& name) {
 }
 
 void Table::go_to_first_table() {
-    int status = 0;
-    int n_hdus = 0;
-    fits_get_num_hdus(raw(file_), &n_hdus, &status);
-    for (int hdu = 2; hdu <= n_hdus && status == 0; ++hdu) {
-        fits_movabs_hdu(raw(file_), hdu, nullptr, &status);
-        if (status == 0 && is_binary_table(raw(file_))) return;
+    const std::vector<int> tables = table_numbers(file_, path_);
+    if (tables.empty()) {
+        throw InputError({path_.string(),
+                          "it holds no binary table",
+                          "a FITS file with a binary-table extension",
+                          "check that this is the right file"});
     }
-    check_read(status, path_, "");
-    throw InputError({path_.string(),
-                      "it holds no binary table",
-                      "a FITS file with a binary-table extension",
-                      "check that this is the right file"});
+    go_to_number(tables.front());
 }
 
 void Table::list_columns() {

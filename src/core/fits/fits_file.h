@@ -30,6 +30,10 @@ struct Column {
     std::string form;         ///< TFORM, for messages
 };
 
+/// Numbers of the binary tables of a file (0 = primary HDU), ascending; maybe none.
+/// Errors: InputError.
+std::vector<int> binary_tables(const std::filesystem::path& path);
+
 /// A FITS file open for reading, positioned at one binary table. File names are taken
 /// literally (no extended syntax); gzip-compressed files are read too.
 /// Errors of all members: InputError with path and the library's own words.
@@ -58,7 +62,6 @@ class Table {
     std::optional<std::int64_t> integer_card(const std::string& keyword) const;
 
   private:
-    void open();
     void go_to_number(int hdu);
     void go_to_name(const std::string& name);
     void go_to_first_table();
