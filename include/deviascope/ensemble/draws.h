@@ -38,10 +38,10 @@ struct Draws {
     }
 };
 
-/// Where the sampler stands after a step: enough to go on from.
+/// Where the sampler stands after a step: with the stored rows, enough to go on from.
 struct EnsembleState {
     std::int64_t step = 0;               ///< steps made by each walker, warm-up included
-    std::int64_t look = 0;               ///< looks passed since the end of the warm-up
+    std::int64_t look = 0;               ///< looks done since the end of the warm-up
     KernelTally tally;                   ///< since the beginning
     std::vector<double> coordinates;     ///< replicates x walkers x coordinates
     std::vector<double> log_posterior;   ///< replicates x walkers
@@ -62,7 +62,8 @@ class DrawSink {
   public:
     virtual ~DrawSink() = default;
     virtual void warm_up(const WarmUp& warm_up) = 0;
-    /// Rows since the last block, and the state after the last of them.
+    /// Rows since the last block (at least one), and the state at or after the last of them but
+    /// before the next row. Where blocks end depends on the clock; rows do not.
     virtual void block(const Draws& rows, const EnsembleState& state) = 0;
 };
 

@@ -17,12 +17,14 @@ struct MonitoredScalar {
     std::string name;  ///< `velocity.x`, `velocity.amplitude`, `velocity.direction.x`
     Kind kind = Kind::parameter;
     Eigen::Index first = 0;  ///< parameter, or x component of the vector
-    int component = 0;       ///< of the direction
+    int component = 0;       ///< of the direction: 0, 1, 2
 
-    /// Its value in one row of parameters.
+    /// Its value in one row of parameters, in the unit of the parameter (direction: 1).
+    /// A vector of length zero has no direction: each component is then 0.
     double value(const double* parameters) const;
 };
 
+/// In the order: sampled parameters, then for each vector its amplitude and its direction.
 std::vector<MonitoredScalar> monitored_scalars(const std::vector<Parameter>& parameters,
                                                const std::vector<VectorParameter>& vectors);
 

@@ -24,25 +24,30 @@ struct KernelFractions {
     double stretch = 0.4;
     double differential_evolution = 0.6;
     double independence = 0.0;
+
+    double of(Kernel kernel) const;
 };
 
 struct EnsembleOptions {
     std::uint64_t seed = 0;
     int replicates = 4;  ///< independent ensembles; 4 lets replicate R-hat mean something
     int walkers = 0;     ///< per replicate, even, >= 2n+2; 0: max(32, 4n)
-    double effective_draws =
-        10000;  ///< wanted of the worst scalar: 1 % precision of an interval end
-    std::int64_t max_steps = 200000;  ///< per walker, warm-up included
-    std::int64_t store_every =
-        0;  ///< 0: half an autocorrelation time, chosen at the end of warm-up
+    /// Wanted of the worst scalar; 10,000: the end of an interval good to 1 %.
+    double effective_draws = 10000;
+    std::int64_t max_steps = 200000;  ///< per walker, warm-up included; at least 2
+    /// 0: half an autocorrelation time, chosen at the end of the warm-up.
+    std::int64_t store_every = 0;
     KernelFractions kernels;
-    int threads = 1;                       ///< never changes a bit of the result
-    std::function<bool()> stop_requested;  ///< asked between steps; empty: never
+    int threads = 1;  ///< never changes a bit of the result
+    /// Asked on the main thread between steps, several times a second where a step is short;
+    /// empty: never.
+    std::function<bool()> stop_requested;
     Progress progress;
 
-    /// Walkers for a target of n coordinates.
+    /// Walkers per replicate for a target of n coordinates.
     int walkers_for(Eigen::Index n_coordinates) const;
-    /// Every violated rule, with value and what is allowed; empty where all is well.
+    /// Every violated rule, with value and what is allowed; empty where all is well. Each is
+    /// one line in the grammar of `Message`, its place the key of the job file's `[ensemble]`.
     std::vector<std::string> problems(Eigen::Index n_coordinates) const;
 };
 
