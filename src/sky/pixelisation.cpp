@@ -3,11 +3,13 @@
 
 #include <healpix_base.h>
 
+#include <algorithm>
 #include <bit>
 #include <cmath>
 #include <numbers>
 
 #include "deviascope/core/error.h"
+#include "sky/pixel_search.h"
 
 namespace deviascope {
 
@@ -23,6 +25,21 @@ Direction to_direction(const vec3& v) {
 
 bool is_unit(const Direction& direction) {
     return std::abs(direction.squaredNorm() - 1.0) < 1e-6;  // false for NaN
+}
+
+std::int64_t pixel_of(const Cells& cells, const Direction& direction) {
+    ensure(is_unit(direction), "a direction is a unit vector");
+    return cells.vec2pix({direction.x(), direction.y(), direction.z()});
+}
+
+SearchBlock& fill(SearchBlock& block, std::span<const Direction> directions) {
+    block.n = directions.size();
+    for (std::size_t lane = 0; lane < block.n; ++lane) {
+        block.x[lane] = directions[lane].x();
+        block.y[lane] = directions[lane].y();
+        block.z[lane] = directions[lane].z();
+    }
+    return block;
 }
 
 std::int64_t ratio_of(const Pixelisation& fine, const Pixelisation& coarse) {
@@ -47,18 +64,22 @@ double Pixelisation::solid_angle() const {
 }
 
 std::int64_t Pixelisation::pixel_at(const Direction& direction) const {
-    ensure(is_unit(direction), "a direction is a unit vector");
-    return Cells(order_, RING).vec2pix({direction.x(), direction.y(), direction.z()});
+    return pixel_of(Cells(order_, RING), direction);
 }
 
 void Pixelisation::pixels_at(std::span<const Direction> directions,
                              std::span<std::int64_t> pixels) const {
     ensure(directions.size() == pixels.size(), "one pixel is wanted for each direction");
     const Cells cells(order_, RING);
-    for (std::size_t at = 0; at < directions.size(); ++at) {
-        const Direction& d = directions[at];
-        if (!is_unit(d)) ensure(false, "a direction is a unit vector");
-        pixels[at] = cells.vec2pix({d.x(), d.y(), d.z()});
+    SearchBlock block;
+    for (std::size_t first = 0; first < directions.size(); first += SearchBlock::capacity) {
+        const std::size_t n = std::min(SearchBlock::capacity, directions.size() - first);
+        search(fill(block, directions.subspan(first, n)), nside_);
+        for (std::size_t lane = 0; lane < n; ++lane) {
+            pixels[first + lane] = block.edge[lane] < search_limit(nside_)
+                                       ? std::int64_t(block.pixel[lane])
+                                       : pixel_of(cells, directions[first + lane]);
+        }
     }
 }
 
