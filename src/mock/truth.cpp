@@ -78,16 +78,17 @@ std::string keep_text(const MockSurvey& survey) {
 std::string excluded_text(const MockSurvey& survey, const MockTally& tally) {
     std::string text;
     for (std::size_t number = 0; number < survey.exclude.size(); ++number)
-        text += fmt::format("excluded.{} = {}\n",
+        text += fmt::format("    {{ region = {}, sources = {} }},\n",
                             quoted(survey.exclude[number].label()),
                             tally.excluded[number]);
-    return text;
+    return text.empty() ? "[]" : "[\n" + text + "]";
 }
 
 std::string tally_text(const MockSurvey& survey, const MockTally& tally) {
     return fmt::format(
         "\n[survey.sources]  # drawn = outside_keep + excluded + thinned + kept\n"
-        "mean = {}\ndrawn = {}\noutside_keep = {}\n{}thinned = {}\nkept = {}\nrows = {}\n",
+        "mean = {}\ndrawn = {}\noutside_keep = {}\nexcluded = {}\nthinned = {}\nkept = "
+        "{}\nrows = {}\n",
         number(survey.sources),
         tally.drawn,
         tally.outside_kept_range,
