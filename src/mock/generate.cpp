@@ -3,12 +3,12 @@
 
 #include <fmt/format.h>
 
+#include <Eigen/Geometry>
 #include <algorithm>
 #include <boost/random/poisson_distribution.hpp>
 #include <cmath>
 #include <memory>
 #include <numbers>
-#include <numeric>
 
 #include "deviascope/core/error.h"
 #include "deviascope/core/parallel.h"

@@ -1,6 +1,7 @@
 // SPDX-License-Identifier: GPL-2.0-or-later
 // What mock skies must show whatever they are made of: the distributions they name, and the
 // dipoles that special relativity gives them.
+#include <Eigen/Geometry>
 #include <algorithm>
 #include <catch2/catch.hpp>
 #include <cmath>
