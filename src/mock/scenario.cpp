@@ -117,7 +117,7 @@ std::string MockSurvey::lat_column() const {
 }
 
 std::vector<PropertyColumn> MockSurvey::property_columns() const {
-    if (!output.columns.empty()) return output.columns;
+    if (output.columns) return *output.columns;
     std::vector<PropertyColumn> columns;
     for (std::size_t number = 0; number < n_properties; ++number) {
         const auto property = static_cast<Property>(number);

@@ -75,11 +75,11 @@ struct PropertyColumn {
 struct CatalogueOutput {
     std::string file;  ///< name ending in .fits or .csv; empty: `<survey>.fits`
     Frame frame = Frame::icrs;
-    std::string lon_column;               ///< empty: RA, GLON or ELON after the frame
-    std::string lat_column;               ///< empty: DEC, GLAT or ELAT
-    std::vector<PropertyColumn> columns;  ///< empty: every property that is drawn
-    bool single_precision = false;        ///< of the properties; positions are double
-    std::string extension = "SOURCES";    ///< EXTNAME of the FITS table
+    std::string lon_column;  ///< empty: RA, GLON or ELON after the frame
+    std::string lat_column;  ///< empty: DEC, GLAT or ELAT
+    std::optional<std::vector<PropertyColumn>> columns;  ///< absent: every property drawn
+    bool single_precision = false;      ///< of the properties; positions are double
+    std::string extension = "SOURCES";  ///< EXTNAME of the FITS table
 };
 
 /// A survey of an invented sky, in the frame of its sources until the boost. Properties are

@@ -92,7 +92,8 @@ TEST_CASE("all faults of a scenario are listed at once", "[mock]") {
     survey.extra_components = inf;
     survey.keep = {{Property::flux, 3.0, 3.0}, {Property::size, 1.0, 2.0}};
     survey.output.file = "../dunlin.fits";
-    survey.output.columns = {{Property::flux, "ra"}, {Property::magnitude, ""}};
+    survey.output.columns =
+        std::vector<PropertyColumn>{{Property::flux, "ra"}, {Property::magnitude, ""}};
     survey.exposure = ExposureGradient{"", 12, 1.2, 0.0, 0.0, Frame::icrs};
     const std::string text = all_problems(scenario);
     for (const char* part : {"seed",
