@@ -3,25 +3,46 @@
 #pragma once
 
 #include <Eigen/Core>
+#include <vector>
 
 #include "deviascope/counts/count_map.h"
 #include "deviascope/model/parameter_space.h"
 
 namespace deviascope {
 
-/// Expected (Fisher) information of the counts, divided by the dispersion, on all parameters of
-/// a row (n_parameters x n_parameters, in ParameterSpace order; monopoles as ln M), at given
-/// parameters: sum_p lambda_p (d ln lambda_p / d theta)(d ln lambda_p / d theta)^T.
-/// @param parameters  a full row; a monopole that is NaN is taken as N_b / E_b at the rest
+/// First derivatives of the log-likelihood of the counts, and what is expected of the second,
+/// at given parameters, in all parameters of a row (ParameterSpace order; monopoles as ln M),
+/// constants and redrawn ones included:
+///
+///   score       = sum_p (n_p - lambda_p) g_p / phi,   information = sum_p lambda_p g_p g_p^T /
+///   phi g = d ln lambda / d theta:  velocity B n / (1 - beta.n) - B gamma^2 beta,
+///       intrinsic r n / (1 + r D.n),  weight -ln gamma - ln(1 - beta.n),  ln M 1
+struct Derivatives {
+    Eigen::VectorXd score;        ///< n_parameters
+    Eigen::MatrixXd information;  ///< n_parameters x n_parameters
+};
+
+/// @param parameters   a full row, inside the walls; a monopole that is NaN is taken as
+///                     N_b / E_b at the rest (its maximum)
 /// @param only_survey  terms of that survey alone; all where negative
 /// Source: design section 6; McCullagh & Nelder 1989 for the dispersion.
+Derivatives derivatives(const Counts& counts,
+                        const ParameterSpace& space,
+                        const Eigen::Ref<const Eigen::VectorXd>& parameters,
+                        int only_survey = -1);
+
+/// Expected (Fisher) information of the counts, divided by the dispersion: `derivatives` at the
+/// same arguments.
 Eigen::MatrixXd expected_information(const Counts& counts,
                                      const ParameterSpace& space,
                                      const Eigen::Ref<const Eigen::VectorXd>& parameters,
                                      int only_survey = -1);
 
 /// Schur complement: information on the rows and columns `keep` with those of `eliminate`
-/// marginalised (pseudo-inverse where they are not determined).
+/// marginalised. Directions of the eliminated block that the counts do not determine
+/// (eigenvalue of its correlation form below 1e-12 of the largest) are left out: the
+/// information matrix is positive semi-definite, so that they do not touch the rest.
+/// @return  keep.size() x keep.size(), symmetric, in the order of `keep`
 Eigen::MatrixXd eliminate(const Eigen::MatrixXd& information,
                           const std::vector<Eigen::Index>& keep,
                           const std::vector<Eigen::Index>& eliminate);

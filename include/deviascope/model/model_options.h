@@ -6,19 +6,27 @@
 #include <string>
 #include <vector>
 
+#include "deviascope/core/error.h"
 #include "deviascope/model/vector_prior.h"
 
 namespace deviascope {
 
+struct Counts;
+
 /// Kinematic weights of a survey's bins: a joint Gaussian prior. A zero on the diagonal of the
-/// covariance (its row and column zero too) is a weight that is not sampled.
+/// covariance (its row and column zero too) is a weight that is not sampled; over the others it
+/// must be positive definite (the weights themselves are the sampler's coordinates, so that no
+/// combination of them may be without width).
 struct WeightPrior {
     Eigen::VectorXd mean;        ///< n_bins
-    Eigen::MatrixXd covariance;  ///< n_bins x n_bins, symmetric positive semi-definite
+    Eigen::MatrixXd covariance;  ///< n_bins x n_bins, symmetric
+
+    /// Indices of the bins whose weight is sampled.
+    std::vector<Eigen::Index> sampled() const;
 };
 
 /// Monopoles, sources per steradian: Gamma(shape, rate) for each; (0, 0) is log-uniform (1/M),
-/// (1, 0) uniform.
+/// (1, 0) uniform. Shape and rate are 0 or more.
 struct MonopolePrior {
     double shape = 0.0;
     double rate = 0.0;
@@ -29,7 +37,7 @@ struct MonopolePrior {
 /// What the model needs to know of one bin besides its counts.
 struct BinModel {
     double bias_ratio = 1.0;  ///< r: the bin feels r times the survey's intrinsic dipole
-    double dispersion = 1.0;  ///< phi: ln L of the bin is divided by it
+    double dispersion = 1.0;  ///< phi > 0: ln L of the bin is divided by it
 };
 
 struct SurveyModel {
@@ -46,5 +54,9 @@ struct ModelOptions {
     std::vector<SurveyModel> surveys;                     ///< in the order of the counts
     MonopolePrior monopole;
 };
+
+/// Every reason why these options cannot go with these counts: numbers of surveys and bins,
+/// sizes of weight priors, ranges of the numbers.
+std::vector<Message> problems_of(const ModelOptions& options, const Counts& counts);
 
 }  // namespace deviascope

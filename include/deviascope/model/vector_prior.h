@@ -13,25 +13,26 @@
 
 namespace deviascope {
 
-/// Constant density inside the ball |v| < max.
+/// Constant density inside the ball |v| < max, 0 < max <= 1.
 struct UniformVectorPrior {
     double max = 0.0;
 };
-/// Uniform in amplitude 0 … max, isotropic in direction: density 1 / (4 pi max |v|^2).
+/// Uniform in amplitude 0 … max, isotropic in direction: density 1 / (4 pi max |v|^2);
+/// 0 < max <= 1.
 struct UniformAmplitudePrior {
     double max = 0.0;
 };
-/// Gaussian in the vector. Covariance symmetric positive definite.
+/// Gaussian in the vector. Covariance symmetric positive definite; |mean| < 1.
 struct GaussianPrior {
     Eigen::Vector3d mean = Eigen::Vector3d::Zero();
     Eigen::Matrix3d covariance = Eigen::Matrix3d::Identity();
 };
-/// Along a fixed direction (in the job's frame), amplitude uniform in 0 … max.
+/// Along a fixed direction (in the job's frame), amplitude uniform in 0 … max, 0 < max <= 1.
 struct AxisPrior {
     Direction axis = Direction::UnitZ();
     double max = 0.0;
 };
-/// Not sampled.
+/// Not sampled; |value| < 1.
 struct FixedPrior {
     Eigen::Vector3d value = Eigen::Vector3d::Zero();
 };
@@ -39,8 +40,8 @@ struct FixedPrior {
 /// A measured speed and direction, as published.
 struct MeasuredVelocity {
     double speed_km_s = 0.0, speed_sd_km_s = 0.0;
-    double lon_deg = 0.0,
-           lon_sd_deg = 0.0;  ///< lon_sd_deg is a coordinate error: times cos lat on the sky
+    double lon_deg = 0.0;
+    double lon_sd_deg = 0.0;  ///< a coordinate error: times cos lat on the sky
     double lat_deg = 0.0, lat_sd_deg = 0.0;
     Frame frame = Frame::galactic;
 };
@@ -66,11 +67,11 @@ class VectorPrior {
                               AxisPrior,
                               FixedPrior>;
 
+    /// @param name  file name, or the kind of an inline table
+    /// Errors: UsageError (all faults) where a number of the kind is outside its range above.
     VectorPrior(std::string name, Kind kind);
 
-    const std::string& name() const {
-        return name_;
-    }  ///< file name, or the kind of an inline table
+    const std::string& name() const { return name_; }
     const Kind& kind() const { return kind_; }
     std::string kind_name() const;       ///< `uniform-vector`, …
     Eigen::Index n_coordinates() const;  ///< 3, 1 or 0
@@ -79,19 +80,24 @@ class VectorPrior {
     Eigen::Vector3d vector_at(const Eigen::Ref<const Eigen::VectorXd>& coordinates) const;
     /// Coordinates of a vector; for `axis` its component along the axis.
     Eigen::VectorXd coordinates_of(const Eigen::Vector3d& vector) const;
-    /// d vector / d coordinates, 3 x n_coordinates.
+    /// d vector / d coordinates, 3 x n_coordinates. Uniform-amplitude:
+    /// (|u|^2 I + 2 u u^T) / max^2, determinant 3 |u|^6 / max^6.
     Eigen::MatrixXd jacobian_at(const Eigen::Ref<const Eigen::VectorXd>& coordinates) const;
 
     /// Normalised log density **in the coordinates**; -inf outside the support or the wall.
     /// (The cut of a Gaussian by the wall |v| < 1 is not renormalised.)
     double log_density(const Eigen::Ref<const Eigen::VectorXd>& coordinates) const;
 
-    /// One draw of the vector.
+    /// One draw of the vector; a Gaussian is drawn again where it lies outside the wall.
+    /// Errors: NumericalError where 10^6 draws of a Gaussian all lie outside.
     Eigen::Vector3d draw(Stream& stream) const;
 
+    /// Radius of the support about 0: max, and 1 for a Gaussian; the length of a fixed vector.
+    double furthest() const;
+
     /// Median of |v| under the prior: exact where closed (max / cbrt 2, max / 2, fixed,
-    /// isotropic Gaussian of mean 0), else the median of 100,000 keyed draws of (seed,
-    /// prior_draw).
+    /// isotropic Gaussian of mean 0: Maxwell's distribution cut at the wall), else the median
+    /// of 100,000 keyed draws of (seed, prior_draw; 0, draw, 0).
     double median_amplitude(std::uint64_t seed) const;
 
     /// Covariance of the vector as design section 6 counts it for the separation:
@@ -102,9 +108,8 @@ class VectorPrior {
   private:
     std::string name_;
     Kind kind_;
-    Eigen::Matrix3d precision_factor_ =
-        Eigen::Matrix3d::Zero();  ///< inverse Cholesky factor (gaussian)
-    Eigen::Matrix3d factor_ = Eigen::Matrix3d::Zero();
+    Eigen::Matrix3d factor_ = Eigen::Matrix3d::Zero();  ///< Cholesky, lower (gaussian)
+    Eigen::Matrix3d precision_factor_ = Eigen::Matrix3d::Zero();  ///< its inverse
     double log_normalisation_ = 0.0;
 };
 
