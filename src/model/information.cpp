@@ -137,7 +137,7 @@ Eigen::MatrixXd eliminate(const Eigen::MatrixXd& information,
                           const std::vector<Eigen::Index>& keep,
                           const std::vector<Eigen::Index>& eliminate) {
     const Eigen::MatrixXd kept = information(keep, keep);
-    if (eliminate.empty()) return kept;
+    if (eliminate.empty() || keep.empty()) return kept;
     const Eigen::MatrixXd block = information(eliminate, eliminate);
     // In units of each parameter's own error, so that unlike sizes do not look singular.
     const Eigen::VectorXd scale =

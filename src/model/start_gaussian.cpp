@@ -53,6 +53,7 @@ Eigen::MatrixXd information_on_free(const ParameterSpace& space,
 /// F with F F^T = the inverse of a positive definite matrix. Eigenvalues of its correlation
 /// form below 1e-13 of the largest are rounding errors and are raised to that.
 Eigen::MatrixXd inverse_factor(const Eigen::MatrixXd& information) {
+    if (information.size() == 0) return information;  // nothing is sampled
     const Eigen::VectorXd scale = information.diagonal().cwiseSqrt().cwiseInverse();
     const Eigen::SelfAdjointEigenSolver<Eigen::MatrixXd> solver(
         Eigen::MatrixXd(scale.asDiagonal() * information * scale.asDiagonal()));

@@ -62,9 +62,15 @@ inline std::vector<double> relative_expectation(const deviascope::Footprint& foo
     for (std::size_t p = 0; p < expected.size(); ++p) {
         const deviascope::Direction n = grid.centre(footprint.pixel[p]);
         expected[p] = footprint.exposure[p] *
-                      std::pow(gamma * (1.0 - velocity.dot(n)), -weight) * (1.0 + dipole.dot(n));
+                      std::pow(gamma * (1.0 - velocity.dot(n)), -weight) *
+                      (1.0 + dipole.dot(n));
     }
     return expected;
+}
+
+inline std::uint32_t draw_poisson(deviascope::Stream& stream, double mean) {
+    boost::random::poisson_distribution<std::int64_t, double> poisson(mean);
+    return static_cast<std::uint32_t>(poisson(stream));
 }
 
 /// Poisson counts; pixel p of bin b of survey s uses the stream (seed, test; s, b, p).
@@ -90,10 +96,9 @@ inline deviascope::Counts make_counts(int nside,
             for (const double value : expected) sum += value;
             deviascope::BinCounts made{bin.name, 0, {}};
             for (std::size_t p = 0; p < expected.size(); ++p) {
+                const double mean = bin.sources * expected[p] / sum;
                 deviascope::Stream stream(seed, deviascope::Purpose::test, s, b, p);
-                boost::random::poisson_distribution<std::int64_t, double> poisson(
-                    bin.sources * expected[p] / sum);
-                made.count.push_back(static_cast<std::uint32_t>(poisson(stream)));
+                made.count.push_back(mean > 0.0 ? draw_poisson(stream, mean) : 0);
             }
             survey.bins.push_back(std::move(made));
         }

@@ -26,11 +26,16 @@ double hard_argument(Stream& stream, int kind, double furthest) {
     const double sign = uniform(stream) < 0.5 ? -1.0 : 1.0;
     const double u = uniform(stream);
     switch (kind) {
-        case 0: return sign * u * furthest;
-        case 1: return sign * std::pow(10.0, -18.0 * u) * furthest;
-        case 2: return sign * (1.0 - std::exp2(-53.0 * u)) * furthest;
-        case 3: return sign * std::min(0.4 * u, furthest);
-        default: return sign * std::min(0.2 + 0.6 * u, furthest);
+        case 0:
+            return sign * u * furthest;
+        case 1:
+            return sign * std::pow(10.0, -18.0 * u) * furthest;
+        case 2:
+            return sign * (1.0 - std::exp2(-53.0 * u)) * furthest;
+        case 3:
+            return sign * std::min(0.4 * u, furthest);
+        default:
+            return sign * std::min(0.2 + 0.6 * u, furthest);
     }
 }
 
@@ -123,8 +128,9 @@ TEST_CASE("the widest loop of this processor gives the bits of a plain loop", "[
             };
             const double intrinsic = log1p(dipole.vector[0] * x[p] + dipole.vector[1] * y[p] +
                                            dipole.vector[2] * z[p]);
-            const double kinematic = log1p(walker.receding[0] * x[p] +
-                                           walker.receding[1] * y[p] + walker.receding[2] * z[p]);
+            const double kinematic =
+                log1p(walker.receding[0] * x[p] + walker.receding[1] * y[p] +
+                      walker.receding[2] * z[p]);
             const double ratio = intrinsic - 3.75 * kinematic;
             counted[p] = count[p] * ratio;
             exposed[p] = exposure[p] * (furthest < elementary::expm1_small_reach

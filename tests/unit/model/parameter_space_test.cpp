@@ -20,9 +20,8 @@ std::vector<synthetic::Survey> two_surveys() {
 struct Case {
     std::vector<synthetic::Survey> surveys = two_surveys();
     Counts counts = synthetic::make_counts(1, {0, 0, 0}, surveys, 51);
-    ModelOptions options = synthetic::make_model(surveys,
-                                                 {"free", UniformAmplitudePrior{0.1}},
-                                                 {"modest", UniformVectorPrior{0.2}});
+    ModelOptions options = synthetic::make_model(
+        surveys, {"free", UniformAmplitudePrior{0.1}}, {"modest", UniformVectorPrior{0.2}});
 };
 
 std::vector<std::string> names_of(const ParameterSpace& space) {
@@ -37,14 +36,21 @@ TEST_CASE("parameters stand in the order of the chain, with names, units, roles"
     Case job;
     job.options.surveys[1].intrinsic = VectorPrior("axis", AxisPrior{Direction::UnitY(), 0.1});
     const ParameterSpace space(job.counts, job.options);
-    CHECK(names_of(space) ==
-          std::vector<std::string>{"velocity.x", "velocity.y", "velocity.z",
-                                   "intrinsic.dunlin.x", "intrinsic.dunlin.y",
-                                   "intrinsic.dunlin.z", "intrinsic.lantern.x",
-                                   "intrinsic.lantern.y", "intrinsic.lantern.z",
-                                   "weight.dunlin.faint", "weight.dunlin.bright",
-                                   "weight.lantern.all-sky", "monopole.dunlin.faint",
-                                   "monopole.dunlin.bright", "monopole.lantern.all-sky"});
+    CHECK(names_of(space) == std::vector<std::string>{"velocity.x",
+                                                      "velocity.y",
+                                                      "velocity.z",
+                                                      "intrinsic.dunlin.x",
+                                                      "intrinsic.dunlin.y",
+                                                      "intrinsic.dunlin.z",
+                                                      "intrinsic.lantern.x",
+                                                      "intrinsic.lantern.y",
+                                                      "intrinsic.lantern.z",
+                                                      "weight.dunlin.faint",
+                                                      "weight.dunlin.bright",
+                                                      "weight.lantern.all-sky",
+                                                      "monopole.dunlin.faint",
+                                                      "monopole.dunlin.bright",
+                                                      "monopole.lantern.all-sky"});
     const std::vector<Parameter>& p = space.parameters();
     CHECK(p[0].unit == "c");
     CHECK(p[3].unit == "1");
@@ -88,7 +94,8 @@ TEST_CASE("coordinates and parameters turn into each other", "[model]") {
     job.options.monopole.sampled = true;
     const ParameterSpace space(job.counts, job.options);
     Eigen::VectorXd coordinates(space.n_coordinates());
-    coordinates << 0.05, -0.02, 0.03, 0.01, 0.02, -0.1, 0.05, 0.06, 0.07, 3.4, 2.6, 5.0, 4.0, 3.0;
+    coordinates << 0.05, -0.02, 0.03, 0.01, 0.02, -0.1, 0.05, 0.06, 0.07, 3.4, 2.6, 5.0, 4.0,
+        3.0;
     Eigen::VectorXd row(space.n_parameters());
     space.to_parameters(coordinates, row);
     CHECK(row.head<3>().norm() ==

@@ -75,14 +75,16 @@ TEST_CASE("a prior outside its range is refused with every fault", "[model]") {
     CHECK_THROWS_AS(VectorPrior("a", FixedPrior{{0.6, 0.8, 0.0}}), UsageError);
     CHECK_THROWS_WITH(VectorPrior("a", AxisPrior{{0.0, 0.0, 2.0}, -1.0}),
                       Catch::Contains("max = -1") && Catch::Contains("length 2"));
-    CHECK_THROWS_AS(VectorPrior("a", GaussianPrior{{2.0, 0.0, 0.0}, Eigen::Matrix3d::Identity()}),
-                    UsageError);
+    CHECK_THROWS_AS(
+        VectorPrior("a", GaussianPrior{{2.0, 0.0, 0.0}, Eigen::Matrix3d::Identity()}),
+        UsageError);
     CHECK_THROWS_AS(VectorPrior("a", GaussianPrior{{0.0, 0.0, 0.0}, Eigen::Matrix3d::Zero()}),
                     UsageError);
     CHECK_NOTHROW(VectorPrior("a", UniformVectorPrior{1.0}));
 }
 
-TEST_CASE("vectors under uniform-amplitude are moved as u with v = u |u|^2 / max^2", "[model]") {
+TEST_CASE("vectors under uniform-amplitude are moved as u with v = u |u|^2 / max^2",
+          "[model]") {
     const double max = 0.05;
     const VectorPrior prior("free", UniformAmplitudePrior{max});
     for (const double length : {1e-9, 1e-4, 0.01, 0.0499}) {
@@ -164,7 +166,8 @@ TEST_CASE("draws of the bounded priors follow their densities", "[model]") {
     const auto axis = draws_of(VectorPrior("c", AxisPrior{Direction::UnitX(), max}), 43);
     CHECK(distance_of(ball, radius, [max](double r) { return std::pow(r / max, 3); }) <
           kolmogorov_bound);
-    CHECK(distance_of(amplitude, radius, [max](double r) { return r / max; }) < kolmogorov_bound);
+    CHECK(distance_of(amplitude, radius, [max](double r) { return r / max; }) <
+          kolmogorov_bound);
     CHECK(distance_of(axis, radius, [max](double r) { return r / max; }) < kolmogorov_bound);
     for (const auto& draws : {ball, amplitude}) {
         CHECK(distance_of(draws, height, uniform_height) < kolmogorov_bound);
@@ -172,7 +175,8 @@ TEST_CASE("draws of the bounded priors follow their densities", "[model]") {
     }
 }
 
-TEST_CASE("draws of a Gaussian have chi-squared distances and stay inside the wall", "[model]") {
+TEST_CASE("draws of a Gaussian have chi-squared distances and stay inside the wall",
+          "[model]") {
     const GaussianPrior gaussian = slanted_gaussian();
     const boost::math::chi_squared_distribution<double> chi_squared(3.0);
     const Eigen::Matrix3d precision = gaussian.covariance.inverse();
