@@ -2,6 +2,7 @@
 // ensemble -> CHAIN -> summary
 #pragma once
 
+#include <cstdint>
 #include <string>
 #include <vector>
 
@@ -34,19 +35,29 @@ struct Provenance {
     std::vector<Companion> companions;
     std::vector<InputDigest> inputs;
     std::string version;  ///< of the program
-    std::uint64_t seed = 0;
+    /// Names and versions of the libraries and compiler the bits depend on; where empty, the
+    /// writer stores library_versions().
+    std::string libraries;
+    std::uint64_t seed = 0;      ///< 0 … 2^63-1
     std::string started, ended;  ///< UTC, ISO 8601; ended empty while running
 };
 
-/// What chains.h5 holds.
+/// Names and versions of HDF5, Boost, Eigen and the compiler, on one line.
+std::string library_versions();
+
+/// What chains.h5 holds. A file that is still being written, or whose run was cut off, reads as
+/// far as it was stored: `outcome.end` is then `not_run` and `provenance.ended` empty.
 struct Chain {
     Provenance provenance;
+    /// As the run was started. Threads, progress and stop request are not stored: they change
+    /// no bit. The seed is the provenance's.
+    EnsembleOptions options;
     std::vector<Parameter> parameters;
     std::vector<VectorParameter> vectors;
-    Counts counts;  ///< what was fitted, embedded so that one file is enough
-    WarmUp warm_up;
-    Draws draws;
-    EnsembleState state;  ///< after the last stored row
+    Counts counts;        ///< what was fitted, embedded so that one file is enough
+    WarmUp warm_up;       ///< store_every and discarded are needed to go on
+    Draws draws;          ///< no rows before the first block
+    EnsembleState state;  ///< after the last stored row; without coordinates before it
     Outcome outcome;
 };
 

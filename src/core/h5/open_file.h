@@ -1,0 +1,17 @@
+// SPDX-License-Identifier: GPL-2.0-or-later
+// CORE (private to this folder): what a Reader holds
+#pragma once
+
+#include <cstdint>
+
+#include "core/h5/reader.h"
+#include "core/h5/session.h"
+
+namespace deviascope::h5 {
+
+struct Reader::Parts {
+    H5::H5File file;
+    std::uint64_t n_bytes = 0;  ///< of the whole file
+};
+
+}  // namespace deviascope::h5

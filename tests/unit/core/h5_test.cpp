@@ -1,0 +1,288 @@
+// SPDX-License-Identifier: GPL-2.0-or-later
+#include <hdf5.h>
+
+#include <catch2/catch.hpp>
+#include <limits>
+#include <numeric>
+
+#include "core/h5/identity.h"
+#include "core/h5/reader.h"
+#include "core/h5/replaced_file.h"
+#include "core/h5/writer.h"
+#include "file_bytes.h"
+#include "full_disk.h"
+#include "temporary_folder.h"
+
+using namespace deviascope;
+using h5::Reader;
+using h5::Shape;
+using h5::Writer;
+using test::bytes_of;
+using test::FullDisk;
+using test::same_bits;
+using test::TemporaryFolder;
+
+namespace {
+
+namespace fs = std::filesystem;
+
+constexpr double infinite = std::numeric_limits<double>::infinity();
+
+/// Values that a conversion would change: signed zero, subnormal, infinities, not a number.
+const std::vector<double> odd{0.0,
+                              -0.0,
+                              5e-324,
+                              -infinite,
+                              std::numeric_limits<double>::quiet_NaN(),
+                              1.0 / 3.0,
+                              1e308,
+                              -1e-300};
+
+template <class Value>
+std::span<const Value> all_of(const std::vector<Value>& values) {
+    return values;
+}
+
+void fill(Writer& writer) {
+    writer.group("/group", "a group");
+    writer.dataset("/group/reals", {"lengths", "m", "row x column"}, {4, 2}, all_of(odd));
+    const std::vector<std::int64_t> integers{std::numeric_limits<std::int64_t>::min(), -1, 0};
+    writer.dataset("/group/integers", {"numbers", "1", "row"}, {3}, all_of(integers));
+    const std::vector<std::uint32_t> naturals{0, 4294967295U};
+    writer.dataset("/group/naturals", {"counts", "1", "row"}, {2}, all_of(naturals));
+    writer.dataset("/group/texts", {"words", "", "row"}, {"", "dunlin", "Grün é\n", "tail"});
+}
+
+fs::path written(const TemporaryFolder& folder, const h5::Edit& edit) {
+    h5::write_file(folder / "file.h5", edit);
+    return folder / "file.h5";
+}
+
+std::vector<double> ramp(std::size_t n_values) {
+    std::vector<double> values(n_values);
+    std::iota(values.begin(), values.end(), 0.5);
+    return values;
+}
+
+}  // namespace
+
+TEST_CASE("HDF5 datasets come back bit for bit", "[core]") {
+    const TemporaryFolder folder;
+    const Reader reader(written(folder, fill));
+    CHECK(same_bits(reader.reals("/group/reals", {4, 2}), odd));
+    CHECK(reader.integers("/group/integers", {3}) ==
+          std::vector<std::int64_t>{std::numeric_limits<std::int64_t>::min(), -1, 0});
+    CHECK(reader.naturals("/group/naturals", {2}) ==
+          std::vector<std::uint32_t>{0, 4294967295U});
+    CHECK(reader.texts("/group/texts", {4}) ==
+          std::vector<std::string>{"", "dunlin", "Grün é\n", "tail"});
+    CHECK(reader.names("/group") ==
+          std::vector<std::string>{"integers", "naturals", "reals", "texts"});
+    CHECK(reader.text("/group/reals", "unit") == "m");
+    CHECK(reader.text("/group", "meaning") == "a group");
+    CHECK(reader.find("/group/reals").kind == h5::Kind::real64);
+}
+
+TEST_CASE("HDF5 attributes can be replaced and may be absent", "[core]") {
+    const TemporaryFolder folder;
+    const fs::path path = written(folder, [](Writer& writer) {
+        writer.attribute("/", "a", std::int64_t{-5});
+        writer.attribute("/", "a", 0.1);
+        writer.attribute("/", "b", std::string("x"));
+        writer.attribute("/", "b", std::string(100000, 'y'));
+        writer.attribute("/", "empty", std::string());
+        writer.attribute("/", "n", std::numeric_limits<std::int64_t>::max());
+    });
+    const Reader reader(path);
+    CHECK(reader.real("/", "a") == 0.1);
+    CHECK(reader.text("/", "b") == std::string(100000, 'y'));
+    CHECK(reader.text("/", "empty") == "");
+    CHECK(reader.integer("/", "n") == std::numeric_limits<std::int64_t>::max());
+    CHECK_FALSE(reader.text("/", "c").has_value());
+    CHECK_THROWS_WITH(reader.integer("/", "b"), Catch::Contains("an integer is needed"));
+    CHECK_THROWS_WITH(reader.required_integer("/", "c"), Catch::Contains("/@c: missing"));
+}
+
+TEST_CASE("empty HDF5 datasets are datasets", "[core]") {
+    const TemporaryFolder folder;
+    const fs::path path = written(folder, [](Writer& writer) {
+        writer.dataset("/none", {"nothing", "1", "row x column"}, {0, 3}, all_of(ramp(0)));
+        writer.dataset("/words", {"nothing", "", "row"}, std::vector<std::string>{});
+    });
+    const Reader reader(path);
+    CHECK(reader.reals("/none", {0, 3}).empty());
+    CHECK(reader.texts("/words", {0}).empty());
+}
+
+TEST_CASE("a growing HDF5 dataset keeps what it has, over many openings", "[core]") {
+    const TemporaryFolder folder;
+    const fs::path path = written(folder, [](Writer& writer) {
+        writer.growing_reals(
+            "/rows", {"rows", "1", "row x a x b x c"}, {2, 3, 5}, {7, 1, 16, 5});
+        writer.growing_integers("/steps", {"steps", "1", "row"}, {}, {64});
+    });
+    const std::vector<double> all = ramp(30 * 47);
+    std::size_t n_rows = 0;
+    for (const std::size_t n_more : {1U, 0U, 6U, 7U, 33U}) {
+        h5::change_file(path, [&](Writer& writer) {
+            writer.append("/rows", all_of(all).subspan(30 * n_rows, 30 * n_more));
+            const std::vector<std::int64_t> step{static_cast<std::int64_t>(n_more)};
+            writer.append("/steps", all_of(step));
+        });
+        n_rows += n_more;
+        const Reader reader(path);
+        const std::vector<double> expected(all.begin(),
+                                           all.begin() + static_cast<long>(30 * n_rows));
+        CHECK(same_bits(reader.reals("/rows", {n_rows, 2, 3, 5}), expected));
+        const std::vector<double> last(expected.end() - 30, expected.end());
+        CHECK(same_bits(reader.last_reals("/rows", {n_rows, 2, 3, 5}), last));
+    }
+    CHECK(Reader(path).integers("/steps", {5}) == std::vector<std::int64_t>{1, 0, 6, 7, 33});
+    CHECK_FALSE(fs::exists(folder / "file.h5.next"));
+}
+
+TEST_CASE("the same content gives the same bytes", "[core]") {
+    const TemporaryFolder folder;
+    h5::write_file(folder / "first.h5", fill);
+    h5::write_file(folder / "second.h5", fill);
+    CHECK(bytes_of(folder / "first.h5") == bytes_of(folder / "second.h5"));
+}
+
+TEST_CASE("a reader that is open keeps what it opened while the file is changed", "[core]") {
+    const TemporaryFolder folder;
+    const fs::path path = written(folder, fill);
+    const Reader before(path);
+    h5::change_file(path, [](Writer& writer) { writer.group("/new", "new"); });
+    CHECK_FALSE(before.has("/new"));
+    CHECK(same_bits(before.reals("/group/reals", {4, 2}), odd));
+    CHECK(Reader(path).has("/new"));
+}
+
+TEST_CASE("numbers of any type of a foreign HDF5 file are read as doubles, in parts",
+          "[core]") {
+    const TemporaryFolder folder;
+    const Reader reader(written(folder, fill));
+    std::vector<double> part(2);
+    reader.read("/group/integers", 1, part);
+    CHECK(part == std::vector<double>{-1.0, 0.0});
+    reader.read("/group/naturals", 0, part);
+    CHECK(part == std::vector<double>{0.0, 4294967295.0});
+    CHECK_THROWS_AS(reader.read("/group/integers", 2, part), InputError);
+    CHECK_THROWS_AS(reader.read("/group/integers", 4, std::span<double>{}), InputError);
+    CHECK_THROWS_WITH(reader.read("/group/texts", 0, part),
+                      Catch::Contains("numbers are needed"));
+}
+
+TEST_CASE("a dataset of another rank, type or extent is refused with its path", "[core]") {
+    const TemporaryFolder folder;
+    const Reader reader(written(folder, fill));
+    CHECK_THROWS_WITH(reader.shape("/group/reals", 1), Catch::Contains("2 axes (4 x 2)"));
+    CHECK_THROWS_WITH(reader.reals("/group/reals", {2, 4}),
+                      Catch::Contains("/group/reals: extents 4 x 2; 2 x 4"));
+    CHECK_THROWS_WITH(reader.reals("/group/integers", {3}),
+                      Catch::Contains("holds 64-bit integer; 64-bit real is needed"));
+    CHECK_THROWS_WITH(reader.texts("/group/none", {3}),
+                      Catch::Contains("/group/none: missing"));
+    CHECK_THROWS_AS(reader.find("/group"), InputError);
+    CHECK_THROWS_AS(reader.names("/group/reals"), InputError);
+    CHECK_FALSE(reader.has("/no/such/thing"));
+}
+
+TEST_CASE("values that the stored bytes cannot hold are refused before memory is taken",
+          "[core]") {
+    // A growing dataset that was extended but never written: 2^40 doubles in no bytes at all.
+    const TemporaryFolder folder;
+    const fs::path path = folder / "vast.h5";
+    const hid_t file = H5Fcreate(path.c_str(), H5F_ACC_TRUNC, H5P_DEFAULT, H5P_DEFAULT);
+    const hsize_t extent = hsize_t{1} << 40U, chunk = 1024;
+    const hid_t space = H5Screate_simple(1, &extent, nullptr);
+    const hid_t list = H5Pcreate(H5P_DATASET_CREATE);
+    H5Pset_chunk(list, 1, &chunk);
+    const hid_t set =
+        H5Dcreate2(file, "/vast", H5T_IEEE_F64LE, space, H5P_DEFAULT, list, H5P_DEFAULT);
+    H5Dclose(set), H5Pclose(list), H5Sclose(space), H5Fclose(file);
+    CHECK_THROWS_WITH(Reader(path).reals("/vast", {extent}),
+                      Catch::Contains("the values cannot be in the file"));
+}
+
+TEST_CASE("the most compressible values stay within the bound on what bytes can hold",
+          "[core]") {
+    const TemporaryFolder folder;
+    const std::vector<double> ones(12 * 1024 * 1024 / 4, 1.0);
+    const fs::path path = written(folder, [&](Writer& writer) {
+        writer.dataset("/ones", {"ones", "1", "row"}, {ones.size()}, all_of(ones));
+    });
+    CHECK(Reader(path).reals("/ones", {ones.size()}) == ones);
+}
+
+TEST_CASE("files that are no HDF5 files are input errors", "[core]") {
+    const TemporaryFolder folder;
+    CHECK_THROWS_WITH(Reader(folder / "none.h5"), Catch::Contains("there is no such file"));
+    CHECK_THROWS_WITH(Reader(folder.path()), Catch::Contains("not a regular file"));
+    CHECK_THROWS_AS(Reader(folder.write("empty.h5", "")), InputError);
+    CHECK_THROWS_AS(Reader(folder.write("short.h5", "\x89HDF")), InputError);
+    CHECK_THROWS_WITH(Reader(folder.write("text.h5", std::string(5000, 'x'))),
+                      Catch::Contains("no HDF5 file"));
+}
+
+TEST_CASE("a file says what it is, and a newer schema is refused", "[core]") {
+    const TemporaryFolder folder;
+    const h5::Identity ours{"lantern list", 2, "a list"};
+    const fs::path path =
+        written(folder, [&](Writer& writer) { write_identity(writer, ours); });
+    const Reader reader(path);
+    CHECK_NOTHROW(check_identity(reader, ours));
+    CHECK_THROWS_WITH(check_identity(reader, {"lantern list", 1, ""}),
+                      Catch::Contains("schema 2") && Catch::Contains("reads 1"));
+    CHECK_THROWS_WITH(check_identity(reader, {"binnacle list", 2, ""}),
+                      Catch::Contains("lantern list") && Catch::Contains("binnacle list"));
+}
+
+TEST_CASE("what cannot be written is an output error with path and reason", "[core]") {
+    const TemporaryFolder folder;
+    folder.write("regular", "");
+    CHECK_THROWS_AS(h5::write_file(folder / "regular" / "file.h5", fill), OutputError);
+    CHECK_THROWS_WITH(
+        h5::write_file(folder / "none" / "file.h5", fill),
+        Catch::Contains("none/file.h5") && Catch::Contains("No such file or directory"));
+    CHECK_THROWS_WITH(h5::write_file(folder.path(), fill), Catch::Contains("directory"));
+    CHECK_THROWS_AS(h5::change_file(folder / "absent.h5", fill), OutputError);
+}
+
+TEST_CASE("a disk that fills up leaves the old file and no other, for any free space",
+          "[core]") {
+    const TemporaryFolder folder;
+    const std::vector<double> values = ramp(20000);
+    const h5::Edit add = [&](Writer& writer) {
+        writer.dataset("/more", {"more", "1", "row"}, {values.size()}, all_of(values));
+    };
+    const fs::path path = written(folder, fill);
+    const std::string before = bytes_of(path);
+    h5::write_file(folder / "whole.h5", fill);
+    h5::change_file(folder / "whole.h5", add);
+    const std::size_t whole = fs::file_size(folder / "whole.h5");
+    fs::remove(folder / "whole.h5");
+    for (std::size_t free = 0; free < whole; free += 997) {
+        INFO("free bytes " << free);
+        const FullDisk full(free);
+        CHECK_THROWS_AS(h5::change_file(path, add), OutputError);
+        CHECK_THROWS_AS(h5::write_file(folder / "new.h5",
+                                       [&](Writer& writer) {
+                                           fill(writer);
+                                           add(writer);
+                                       }),
+                        OutputError);
+    }
+    CHECK(bytes_of(path) == before);
+    CHECK(std::distance(fs::directory_iterator(folder.path()), {}) == 1);
+}
+
+TEST_CASE("an error of the caller while writing removes what was begun", "[core]") {
+    const TemporaryFolder folder;
+    const auto fails = [](Writer& writer) {
+        fill(writer);
+        throw InputError({"place", "found", "", ""});
+    };
+    CHECK_THROWS_AS(h5::write_file(folder / "file.h5", fails), InputError);
+    CHECK(fs::is_empty(folder.path()));
+}
