@@ -5,7 +5,9 @@
 #include <unistd.h>
 
 #include <cerrno>
+#include <string_view>
 #include <system_error>
+#include <utility>
 
 namespace deviascope::h5 {
 
@@ -13,68 +15,103 @@ namespace fs = std::filesystem;
 
 namespace {
 
-OutputError failure(const fs::path& path, const std::error_code& reason) {
-    return OutputError({path.string(), "cannot be written: " + reason.message(), "", ""});
+/// An error of the last system call.
+OutputError failure(const fs::path& path, const std::string& what) {
+    const std::error_code reason(errno, std::generic_category());
+    return OutputError({path.string(), what + ": " + reason.message(), "", ""});
 }
 
-fs::path beside(const fs::path& path, const char* suffix) {
-    fs::path name = path;
-    name += suffix;
-    return name;
+/// An open file or folder.
+class Descriptor {
+  public:
+    Descriptor(const fs::path& path, int flags)
+        : path_(path), number_(::open(path.c_str(), flags | O_CLOEXEC, 0666)) {
+        if (number_ < 0) throw failure(path, "cannot be opened");
+    }
+    ~Descriptor() {
+        if (number_ >= 0) ::close(number_);
+    }
+    Descriptor(const Descriptor&) = delete;
+    Descriptor& operator=(const Descriptor&) = delete;
+
+    void write(std::string_view bytes) {
+        while (!bytes.empty()) {
+            const ssize_t n_written = ::write(number_, bytes.data(), bytes.size());
+            if (n_written < 0 && errno == EINTR) continue;
+            if (n_written < 0) throw failure(path_, "cannot be written");
+            bytes.remove_prefix(static_cast<std::size_t>(n_written));
+        }
+    }
+
+    std::string read() {
+        std::string bytes;
+        std::string piece(std::size_t{1} << 20U, '\0');
+        while (true) {
+            const ssize_t n_read = ::read(number_, piece.data(), piece.size());
+            if (n_read < 0 && errno == EINTR) continue;
+            if (n_read < 0) throw failure(path_, "cannot be read");
+            if (n_read == 0) return bytes;
+            bytes.append(piece, 0, static_cast<std::size_t>(n_read));
+        }
+    }
+
+    /// Has the system put it on the disk.
+    void sync() {
+        if (::fsync(number_) != 0) throw failure(path_, "cannot be put on the disk");
+    }
+
+    /// Some file systems report failed writes only here.
+    void close() {
+        const int number = std::exchange(number_, -1);
+        if (::close(number) != 0) throw failure(path_, "cannot be closed");
+    }
+
+  private:
+    fs::path path_;
+    int number_;
+};
+
+void write_durably(const fs::path& path, const std::string& bytes) {
+    Descriptor file(path, O_WRONLY | O_CREAT | O_TRUNC);
+    file.write(bytes);
+    file.sync();
+    file.close();
 }
 
 void rename_durably(const fs::path& from, const fs::path& to) {
-    std::error_code failed;
-    fs::rename(from, to, failed);
-    if (failed) throw failure(to, failed);
+    if (::rename(from.c_str(), to.c_str()) != 0) throw failure(to, "cannot be replaced");
     const fs::path folder = to.parent_path();
-    put_on_disk(folder.empty() ? fs::path(".") : folder);
+    Descriptor(folder.empty() ? fs::path(".") : folder, O_RDONLY | O_DIRECTORY).sync();
 }
 
-void replace(const fs::path& path,
-             const fs::path& beside_it,
-             Writer::Mode mode,
-             const Edit& edit) {
+void put_in_place(const fs::path& path, const std::string& bytes) {
+    fs::path temporary = path;
+    temporary += ".tmp";
     try {
-        Writer writer(beside_it, mode);
-        edit(writer);
-        writer.close();
-        rename_durably(beside_it, path);
+        write_durably(temporary, bytes);
+        rename_durably(temporary, path);
     } catch (...) {
         std::error_code ignored;  // the first error is the one to tell
-        fs::remove(beside_it, ignored);
+        fs::remove(temporary, ignored);
         throw;
     }
 }
 
-}  // namespace
-
-void put_on_disk(const fs::path& path) {
-    const int descriptor = ::open(path.c_str(), O_RDONLY | O_CLOEXEC);
-    if (descriptor < 0) throw failure(path, {errno, std::generic_category()});
-    const int status = ::fsync(descriptor);
-    const int reason = errno;
-    ::close(descriptor);
-    if (status != 0) throw failure(path, {reason, std::generic_category()});
+std::string edited(const fs::path& path, const std::string& image, const Edit& edit) {
+    Writer writer(path, image);
+    edit(writer);
+    return writer.close();
 }
 
+}  // namespace
+
 void write_file(const fs::path& path, const Edit& fill) {
-    std::error_code ignored;
-    if (fs::is_directory(path, ignored))
-        throw failure(path, std::make_error_code(std::errc::is_a_directory));
-    replace(path, beside(path, ".tmp"), Writer::Mode::create, fill);
+    put_in_place(path, edited(path, {}, fill));
 }
 
 void change_file(const fs::path& path, const Edit& change) {
-    const fs::path next = beside(path, ".next");
-    std::error_code failed;
-    fs::copy_file(path, next, fs::copy_options::overwrite_existing, failed);
-    if (failed) {
-        std::error_code ignored;
-        fs::remove(next, ignored);
-        throw failure(path, failed);
-    }
-    replace(path, next, Writer::Mode::change, change);
+    const std::string before = Descriptor(path, O_RDONLY).read();
+    put_in_place(path, edited(path, before, change));
 }
 
 }  // namespace deviascope::h5

@@ -4,8 +4,7 @@
 #include <algorithm>
 #include <limits>
 
-#include "core/h5/replaced_file.h"
-#include "core/h5/session.h"
+#include "core/h5/memory_file.h"
 
 namespace deviascope::h5 {
 
@@ -45,12 +44,9 @@ struct Writer::Layout {
     bool grows = false;
 };
 
-/// The library may crash when an object whose closing failed is closed once more, as its
-/// destructors do. So objects that are written through live on the heap and, after a failure,
-/// stay there.
 struct Writer::Parts {
-    H5::H5File* file = nullptr;
-    mutable bool has_failed = false;
+    std::unique_ptr<MemoryFile> memory;
+    H5::H5File& file() { return memory->file(); }
 };
 
 namespace {
@@ -58,30 +54,10 @@ namespace {
 constexpr std::size_t default_chunk = 65536;  // elements; half a megabyte of doubles
 constexpr int deflate_level = 1;
 
-/// A dataset that is closed on demand only (see Writer::Parts).
-class OpenDataset {
-  public:
-    explicit OpenDataset(const H5::DataSet& set) : set_(new H5::DataSet(set)) {}
-    H5::DataSet* operator->() const { return set_; }
-    void close() {
-        set_->close();
-        delete set_;
-    }
-
-  private:
-    H5::DataSet* set_;
-};
-
 template <class PropertyList>
 PropertyList without_times(PropertyList list) {
     checked(H5Pset_obj_track_times(list.getId(), false), "H5Pset_obj_track_times");
     return list;
-}
-
-H5::FileAccPropList format_of_1_10() {
-    H5::FileAccPropList access;
-    access.setLibverBounds(H5F_LIBVER_V110, H5F_LIBVER_V110);
-    return access;
 }
 
 /// Chunks of about `default_chunk` elements: whole entries of the first axis, or parts of a
@@ -143,39 +119,19 @@ OutputError Writer::failure(const std::string& object, const std::string& reason
 
 template <class Call>
 auto Writer::attempt(const std::string& object, Call&& call) const {
-    ensure(parts_->file != nullptr && !parts_->has_failed, "the file is open and sound");
-    return translated(std::forward<Call>(call), [&](const std::string& reason) {
-        parts_->has_failed = true;
-        return failure(object, reason);
-    });
+    return translated(std::forward<Call>(call),
+                      [&](const std::string& reason) { return failure(object, reason); });
 }
 
-Writer::Writer(const std::filesystem::path& path, Mode mode)
+Writer::Writer(const std::filesystem::path& path, const std::string& image)
     : path_(path), parts_(std::make_unique<Parts>()) {
-    translated(
-        [&] {
-            const auto creation = without_times(H5::FileCreatPropList());
-            parts_->file = new H5::H5File(path.string(),
-                                          mode == Mode::create ? H5F_ACC_TRUNC : H5F_ACC_RDWR,
-                                          creation,
-                                          format_of_1_10());
-        },
-        [&](const std::string& reason) { return failure("", reason); });
+    attempt("", [&] { parts_->memory = std::make_unique<MemoryFile>(image); });
 }
 
-Writer::~Writer() {
-    if (parts_->file == nullptr || parts_->has_failed) return;
-    try {
-        parts_->file->flush(H5F_SCOPE_GLOBAL);
-        parts_->file->close();
-        delete parts_->file;
-    } catch (const H5::Exception&) {
-        // Left to the system; whoever leaves a file unclosed has an error of his own to report.
-    }
-}
+Writer::~Writer() = default;
 
 bool Writer::has(const std::string& object) const {
-    return attempt(object, [&] { return parts_->file->nameExists(object); });
+    return attempt(object, [&] { return parts_->file().nameExists(object); });
 }
 
 void Writer::group(const std::string& path, const std::string& meaning) {
@@ -183,7 +139,7 @@ void Writer::group(const std::string& path, const std::string& meaning) {
         const hid_t list = checked(H5Pcreate(H5P_GROUP_CREATE), "H5Pcreate");
         checked(H5Pset_obj_track_times(list, false), "H5Pset_obj_track_times");
         const hid_t id = checked(
-            H5Gcreate2(parts_->file->getId(), path.c_str(), H5P_DEFAULT, list, H5P_DEFAULT),
+            H5Gcreate2(parts_->file().getId(), path.c_str(), H5P_DEFAULT, list, H5P_DEFAULT),
             "H5Gcreate");
         checked(H5Gclose(id), "H5Gclose");
         checked(H5Pclose(list), "H5Pclose");
@@ -195,7 +151,7 @@ void Writer::set_attribute(const std::string& object,
                            const std::string& name,
                            const Elements& value) {
     attempt(object + "@" + name, [&] {
-        const hid_t file = parts_->file->getId();
+        const hid_t file = parts_->file().getId();
         if (checked(H5Aexists_by_name(file, object.c_str(), name.c_str(), H5P_DEFAULT),
                     "H5Aexists") > 0)
             checked(H5Adelete_by_name(file, object.c_str(), name.c_str(), H5P_DEFAULT),
@@ -231,9 +187,8 @@ void Writer::attribute(const std::string& object, const std::string& name, doubl
 
 void Writer::create(const std::string& path, const About& about, const Layout& layout) {
     attempt(path, [&] {
-        OpenDataset set(parts_->file->createDataSet(
-            path, layout.type, space_of(layout.shape, layout.grows), storage(layout.chunk)));
-        set.close();
+        parts_->file().createDataSet(
+            path, layout.type, space_of(layout.shape, layout.grows), storage(layout.chunk));
     });
     attribute(path, "meaning", about.meaning);
     if (!about.unit.empty()) attribute(path, "unit", about.unit);
@@ -248,9 +203,8 @@ void Writer::write_new(const std::string& path,
     create(path, about, layout);
     if (elements.count == 0) return;
     attempt(path, [&] {
-        OpenDataset set(parts_->file->openDataSet(path));
-        set->write(elements.data, elements.in_memory);
-        set.close();
+        const H5::DataSet set = parts_->file().openDataSet(path);
+        set.write(elements.data, elements.in_memory);
     });
 }
 
@@ -317,8 +271,8 @@ void Writer::growing_integers(const std::string& path,
 void Writer::append_elements(const std::string& path, const Elements& elements) {
     if (elements.count == 0) return;
     attempt(path, [&] {
-        OpenDataset set(parts_->file->openDataSet(path));
-        Shape shape = shape_of(set->getSpace());
+        const H5::DataSet set = parts_->file().openDataSet(path);
+        Shape shape = shape_of(set.getSpace());
         std::vector<hsize_t> start(shape.size(), 0), count = extents(shape);
         count[0] = 1;
         const std::size_t per_entry = n_elements(Shape(count.begin(), count.end()));
@@ -326,12 +280,11 @@ void Writer::append_elements(const std::string& path, const Elements& elements) 
         count[0] = elements.count / per_entry;
         start[0] = shape[0];
         shape[0] += count[0];
-        set->extend(extents(shape).data());
-        H5::DataSpace in_file = set->getSpace();
+        set.extend(extents(shape).data());
+        H5::DataSpace in_file = set.getSpace();
         in_file.selectHyperslab(H5S_SELECT_SET, count.data(), start.data());
         const H5::DataSpace in_memory(static_cast<int>(count.size()), count.data());
-        set->write(elements.data, elements.in_memory, in_memory, in_file);
-        set.close();
+        set.write(elements.data, elements.in_memory, in_memory, in_file);
     });
 }
 
@@ -343,15 +296,8 @@ void Writer::append(const std::string& path, std::span<const std::int64_t> value
     append_elements(path, Elements(values));
 }
 
-void Writer::close() {
-    attempt("", [&] {
-        // All writing happens here; a failure leaves the library's own books in order.
-        parts_->file->flush(H5F_SCOPE_GLOBAL);
-        parts_->file->close();
-        delete parts_->file;
-        parts_->file = nullptr;
-    });
-    put_on_disk(path_);
+std::string Writer::close() {
+    return attempt("", [&] { return parts_->memory->close(); });
 }
 
 }  // namespace deviascope::h5

@@ -4,7 +4,6 @@
 
 #include <cstdint>
 #include <filesystem>
-#include <functional>
 #include <memory>
 #include <span>
 #include <string>
@@ -15,20 +14,24 @@
 
 namespace deviascope::h5 {
 
-/// An HDF5 file that is being written. Objects are named by their absolute path inside it.
+/// An HDF5 file that is being made or changed, in memory. Objects are named by their absolute
+/// path inside it.
+///
+/// In memory, because the library keeps no order of its books when the system refuses to write:
+/// with a file of its own on a full disk it ends in a crash, at the latest when the program
+/// ends. So the library never meets the disk; whoever wants the file there writes the bytes
+/// that `close` gives.
 ///
 /// Numbers are little-endian, in chunks, shuffled, deflated (level 1: higher levels cost time
 /// and gain little on draws) and checksummed; texts are UTF-8 of fixed length. No times are
 /// stored, so that the same content gives the same bytes. The file format is that of HDF5 1.10,
 /// whose checksums turn damage into errors.
-/// Errors of all members: OutputError with file, object and the system's reason; after one, the
-/// file must be given up.
+/// Errors of all members: OutputError with file, object and reason.
 class Writer {
   public:
-    enum class Mode { create, change };
-    Writer(const std::filesystem::path& path, Mode mode);
-    /// Closes what was not closed, without a word; after a failure leaves the file to the
-    /// system.
+    /// A new file, or, where `image` is not empty, that file to be changed.
+    /// @param path  for messages only
+    explicit Writer(const std::filesystem::path& path, const std::string& image = {});
     ~Writer();
     Writer(const Writer&) = delete;
     Writer& operator=(const Writer&) = delete;
@@ -76,8 +79,8 @@ class Writer {
     void append(const std::string& path, std::span<const double> values);
     void append(const std::string& path, std::span<const std::int64_t> values);
 
-    /// Writes everything out, closes the file and has the system put it on the disk.
-    void close();
+    /// Closes the file and gives its bytes; the last call.
+    std::string close();
 
   private:
     struct Parts;

@@ -138,7 +138,7 @@ TEST_CASE("a growing HDF5 dataset keeps what it has, over many openings", "[core
         CHECK(same_bits(reader.last_reals("/rows", {n_rows, 2, 3, 5}), last));
     }
     CHECK(Reader(path).integers("/steps", {5}) == std::vector<std::int64_t>{1, 0, 6, 7, 33});
-    CHECK_FALSE(fs::exists(folder / "file.h5.next"));
+    CHECK(std::distance(fs::directory_iterator(folder.path()), {}) == 1);
 }
 
 TEST_CASE("the same content gives the same bytes", "[core]") {
@@ -258,23 +258,34 @@ TEST_CASE("a disk that fills up leaves the old file and no other, for any free s
     };
     const fs::path path = written(folder, fill);
     const std::string before = bytes_of(path);
-    h5::write_file(folder / "whole.h5", fill);
-    h5::change_file(folder / "whole.h5", add);
+    h5::write_file(folder / "whole.h5", add);
     const std::size_t whole = fs::file_size(folder / "whole.h5");
     fs::remove(folder / "whole.h5");
     for (std::size_t free = 0; free < whole; free += 997) {
         INFO("free bytes " << free);
         const FullDisk full(free);
         CHECK_THROWS_AS(h5::change_file(path, add), OutputError);
-        CHECK_THROWS_AS(h5::write_file(folder / "new.h5",
-                                       [&](Writer& writer) {
-                                           fill(writer);
-                                           add(writer);
-                                       }),
-                        OutputError);
+        CHECK_THROWS_WITH(h5::write_file(folder / "new.h5", add),
+                          Catch::Contains("cannot be written: File too large"));
     }
     CHECK(bytes_of(path) == before);
     CHECK(std::distance(fs::directory_iterator(folder.path()), {}) == 1);
+    h5::change_file(path, add);
+    CHECK(same_bits(Reader(path).reals("/more", {values.size()}), values));
+}
+
+TEST_CASE("what HDF5 refuses is an output error with the object and its words", "[core]") {
+    const TemporaryFolder folder;
+    CHECK_THROWS_WITH(
+        written(folder,
+                [](Writer& writer) {
+                    writer.group("/twice", "once");
+                    writer.group("/twice", "again");
+                }),
+        Catch::Contains("file.h5: /twice: cannot be written: name already exists"));
+    CHECK(fs::is_empty(folder.path()));
+    const fs::path damaged = folder.write("damaged.h5", std::string(3000, 'x'));
+    CHECK_THROWS_AS(h5::change_file(damaged, fill), OutputError);
 }
 
 TEST_CASE("an error of the caller while writing removes what was begun", "[core]") {
