@@ -88,7 +88,14 @@ Reader::Reader(const std::filesystem::path& path)
                           "no HDF5 file, or its beginning is damaged",
                           "an HDF5 file is needed",
                           "check the path, or make the file again"});
-    translated([&] { parts_->file.openFile(path.string(), H5F_ACC_RDONLY); }, refuse);
+    translated(
+        [&] {
+            // Strong: an object that could not be opened must not keep the file open.
+            H5::FileAccPropList access;
+            access.setFcloseDegree(H5F_CLOSE_STRONG);
+            parts_->file.openFile(path.string(), H5F_ACC_RDONLY, access);
+        },
+        refuse);
 }
 
 Reader::~Reader() {

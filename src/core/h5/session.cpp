@@ -40,14 +40,13 @@ herr_t on_failure(hid_t stack, void*) {
 
 }  // namespace
 
-void begin_call() {
-    static const bool prepared = [] {
-        H5E_auto2_t keep_words = on_failure;
-        H5::Exception::setAutoPrint(keep_words, nullptr);
-        return true;
-    }();
-    static_cast<void>(prepared);
+Listening::Listening() {
     words().clear();
+    H5Eset_auto2(H5E_DEFAULT, on_failure, nullptr);
+}
+
+Listening::~Listening() {
+    H5Eset_auto2(H5E_DEFAULT, nullptr, nullptr);
 }
 
 std::string reason_of(const H5::Exception& exception) {

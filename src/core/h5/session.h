@@ -14,8 +14,15 @@
 
 namespace deviascope::h5 {
 
-/// Makes the library silent, and forgets the words of earlier failures.
-void begin_call();
+/// While it lives, the words of failures are kept; before and after, the library is silent (one
+/// that has someone to talk to complains when the program ends).
+class Listening {
+  public:
+    Listening();
+    ~Listening();
+    Listening(const Listening&) = delete;
+    Listening& operator=(const Listening&) = delete;
+};
 
 /// Why the last call failed, in the library's and the system's words.
 std::string reason_of(const H5::Exception& exception);
@@ -23,7 +30,7 @@ std::string reason_of(const H5::Exception& exception);
 /// Runs `call`; where the library fails, throws what `error_of(reason)` returns.
 template <class Call, class ErrorOf>
 auto translated(Call&& call, ErrorOf&& error_of) {
-    begin_call();
+    const Listening listening;
     try {
         return std::forward<Call>(call)();
     } catch (const H5::Exception& exception) {
