@@ -12,9 +12,11 @@ namespace deviascope {
 
 namespace {
 
+/// Nothing can be said without rows.
 bool is_constant(const std::vector<double>& series) {
-    return std::all_of(
-        series.begin(), series.end(), [&](double value) { return value == series.front(); });
+    return !series.empty() && std::all_of(series.begin(), series.end(), [&](double value) {
+        return value == series.front();
+    });
 }
 
 bool passes(const ScalarDiagnostics& found, const LookRule& rule) {

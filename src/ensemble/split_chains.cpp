@@ -60,14 +60,16 @@ class CentredHalves {
     }
 
   private:
+    /// Sums run over differences from the first draw, so that the mean of a constant chain is
+    /// that constant to the last bit.
     void centre(std::size_t half) {
         double* first = value_.data() + half * n_ * n_chains_;
         double* mean = mean_.data() + half * n_chains_;
-        for (std::size_t draw = 0; draw < n_; ++draw)
+        for (std::size_t draw = 1; draw < n_; ++draw)
             for (std::size_t chain = 0; chain < n_chains_; ++chain)
-                mean[chain] += first[draw * n_chains_ + chain];
+                mean[chain] += first[draw * n_chains_ + chain] - first[chain];
         for (std::size_t chain = 0; chain < n_chains_; ++chain)
-            mean[chain] /= static_cast<double>(n_);
+            mean[chain] = first[chain] + mean[chain] / static_cast<double>(n_);
         for (std::size_t draw = 0; draw < n_; ++draw)
             for (std::size_t chain = 0; chain < n_chains_; ++chain)
                 first[draw * n_chains_ + chain] -= mean[chain];

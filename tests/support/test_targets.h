@@ -62,8 +62,7 @@ class CoordinateTarget : public Target {
 /// rho = 0: the unit Gaussian.
 class ChainGaussian : public CoordinateTarget {
   public:
-    explicit ChainGaussian(Eigen::Index n, double rho = 0.0)
-        : CoordinateTarget(n), rho_(rho) {}
+    explicit ChainGaussian(Eigen::Index n, double rho = 0.0) : CoordinateTarget(n), rho_(rho) {}
     double log_density_at(const double* x) const override {
         double sum = 0.0;
         for (Eigen::Index axis = 0; axis < n_coordinates(); ++axis) {
