@@ -24,18 +24,11 @@ SineCosine sine_cosine(double angle_deg) {
     if (std::abs(angle_deg) > 0x1p40) angle_deg = std::remainder(angle_deg, 360.0);
     const auto quarter = std::int64_t(angle_deg / 90.0 + std::copysign(0.5, angle_deg));
     const double rest = (angle_deg - 90.0 * double(quarter)) * degree;
-    const double s = std::sin(rest);
-    const double c = std::cos(rest);
-    switch (quarter & 3) {
-        case 0:
-            return {s, c};
-        case 1:
-            return {c, -s};
-        case 2:
-            return {-s, -c};
-        default:
-            return {-c, s};
-    }
+    // Quarter turns swap sine and cosine and change their signs; without a branch, for quarters
+    // of random directions cannot be foretold.
+    const double pair[2] = {std::sin(rest), std::cos(rest)};
+    return {pair[quarter & 1] * double(1 - (quarter & 2)),
+            pair[1 - (quarter & 1)] * double(1 - ((quarter + 1) & 2))};
 }
 
 /// The vector scaled so that its largest component is 1: products neither overflow nor vanish.

@@ -40,6 +40,8 @@ struct Exclusion {
 /// An exclusion made ready to judge directions of one frame.
 class ExclusionTest {
   public:
+    /// Errors: InternalError unless a band is 0 … 90 deg, a disc 0 … 180 deg, a latitude -90 …
+    /// 90 deg (callers check input).
     ExclusionTest(const Exclusion& exclusion, Frame frame_of_directions);
     /// True where a pixel with this centre is left out.
     bool excludes(const Direction& centre) const;

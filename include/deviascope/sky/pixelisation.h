@@ -26,9 +26,10 @@ class Pixelisation {
     /// 4 pi / n_pixels, steradian.
     double solid_angle() const;
 
-    /// Pixel that holds a direction (unit vector, components finite).
+    /// Pixel that holds a direction. Errors: InternalError unless it is a unit vector to 1e-6.
     std::int64_t pixel_at(const Direction& direction) const;
-    /// The same for many; both spans have the same length.
+    /// The same for many, and the same numbers, several times faster; both spans have the same
+    /// length.
     void pixels_at(std::span<const Direction> directions, std::span<std::int64_t> pixels) const;
     /// Centre of a pixel. Its z component is HEALPix's own z, exact on rings.
     Direction centre(std::int64_t pixel) const;
