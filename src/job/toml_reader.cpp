@@ -228,6 +228,11 @@ void TomlTable::fault(const std::string& key,
         place_of(key), path_of(key), std::move(found), std::move(allowed), std::move(remedy));
 }
 
+void TomlTable::fault_here(std::string found, std::string allowed, std::string remedy) const {
+    if (silent_) return;
+    document_->add(place_, path_, std::move(found), std::move(allowed), std::move(remedy));
+}
+
 void TomlTable::wrong(const std::string& key, std::string allowed, std::string remedy) const {
     const toml::node* node = find(key);
     fault(key, node ? "found " + shown(*node) : "missing", allowed + " is allowed", remedy);

@@ -20,6 +20,7 @@ namespace deviascope {
 
 /// Whether a key may be left out.
 enum class Presence { optional, required };
+inline constexpr Presence required = Presence::required;
 
 /// `"a", "b" or "c"`, for messages.
 std::string listed(const std::vector<std::string>& names, const char* last_joint = " or ");
@@ -133,6 +134,8 @@ class TomlTable {
                std::string found,
                std::string allowed,
                std::string remedy = {}) const;
+    /// Notes a fault of the table itself.
+    void fault_here(std::string found, std::string allowed, std::string remedy = {}) const;
     /// Notes that the value of a key, shown as it was written, is not allowed.
     void wrong(const std::string& key, std::string allowed, std::string remedy = {}) const;
     /// Notes the faults of another file that a key refers to, at the place of that key.
