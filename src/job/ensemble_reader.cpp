@@ -5,6 +5,7 @@
 
 #include <cmath>
 #include <limits>
+#include <utility>
 
 namespace deviascope {
 
@@ -16,16 +17,20 @@ KernelFractions read_kernels(const TomlTable& table) {
     KernelFractions fractions;
     if (!table.has("kernels")) return fractions;
     const TomlTable kernels = table.table("kernels");
-    const auto fraction = [&](const char* key) {
-        return kernels.number(key, between(0, 1)).value_or(0.0);
-    };
-    fractions.stretch = fraction("stretch");
-    fractions.differential_evolution = fraction("differential-evolution");
-    fractions.independence = fraction("independence");
+    const std::pair<const char*, double*> entries[] = {
+        {"stretch", &fractions.stretch},
+        {"differential-evolution", &fractions.differential_evolution},
+        {"independence", &fractions.independence}};
+    bool sound = static_cast<bool>(kernels);
+    double sum = 0;
+    for (const auto& [key, fraction] : entries) {
+        const auto value = kernels.number(key, between(0, 1));
+        sound = sound && (value || !kernels.has(key));
+        *fraction = value.value_or(0.0);
+        sum += *fraction;
+    }
     if (fractions.independence > 0) kernels.refuse_later("independence");
-    const double sum =
-        fractions.stretch + fractions.differential_evolution + fractions.independence;
-    if (kernels && std::abs(sum - 1) > 1e-9) {
+    if (sound && std::abs(sum - 1) > 1e-9) {
         kernels.fault_here(fmt::format("the fractions add to {:.10g}", sum),
                            "fractions that add to 1 are allowed",
                            "a kernel left out has fraction 0");

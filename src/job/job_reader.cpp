@@ -18,17 +18,18 @@ namespace deviascope {
 
 namespace {
 
+constexpr std::int64_t largest_integer = std::numeric_limits<std::int64_t>::max();
+
 /// Hypotheses that every comparison knows already (design section 6).
 const std::vector<std::string> built_in_hypotheses = {
     "reference", "reference-intrinsic", "free", "free-intrinsic"};
 
 int read_nside(const TomlTable& table) {
-    const auto nside = table.integer("nside", 1, 1024, required);
+    const auto nside = table.integer("nside", 1, largest_integer, required);
     if (!nside) return 0;
-    if (!Pixelisation::is_valid_nside(*nside)) {
-        table.wrong("nside", "a power of two from 1 to 1024");
-    }
-    return static_cast<int>(*nside);
+    if (*nside <= 1024 && Pixelisation::is_valid_nside(*nside)) return static_cast<int>(*nside);
+    table.wrong("nside", "a power of two from 1 to 1024");
+    return 0;
 }
 
 /// Reads a job's tables in turn; the parts that later ones need are members.
@@ -60,9 +61,8 @@ class JobReader {
     void read_job_table() {
         const TomlTable table = root_.table("job");
         job_.title = table.text("title").value_or("");
-        constexpr std::int64_t largest_seed = std::numeric_limits<std::int64_t>::max();
         job_.seed = static_cast<std::uint64_t>(
-            table.integer("seed", 0, largest_seed, required).value_or(0));
+            table.integer("seed", 0, largest_integer, required).value_or(0));
         job_.nside = read_nside(table);
         job_.frame = read_frame(table, "frame").value_or(Frame::galactic);
         table.refuse_later("deduplicate");

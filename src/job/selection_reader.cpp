@@ -3,6 +3,7 @@
 
 #include <fmt/format.h>
 
+#include <algorithm>
 #include <optional>
 
 #include "job/frame_reader.h"
@@ -17,25 +18,13 @@ NumberRange any_or_infinite() {
     return range;
 }
 
-/// Properties that a range may name.
-std::vector<std::string> selectable(const Columns& columns) {
+/// Properties besides the position.
+std::vector<std::string> properties(const Columns& columns) {
     std::vector<std::string> names;
     for (const auto& [property, column] : columns) {
         if (property != "lon" && property != "lat") names.push_back(property);
     }
     return names;
-}
-
-bool is_selectable(const TomlTable& select,
-                   const std::string& property,
-                   const std::vector<std::string>& known) {
-    if (std::find(known.begin(), known.end(), property) != known.end()) return true;
-    const std::string allowed =
-        known.empty() ? "the survey's columns name none"
-                      : "a property of the survey's columns is allowed: " + listed(known, ", ");
-    select.fault(
-        property, "no such property to select by", allowed, suggestion(property, known));
-    return false;
 }
 
 std::optional<PropertyRange> read_range(const TomlTable& select, const std::string& property) {
@@ -102,13 +91,24 @@ Columns read_columns(const TomlTable& survey, Presence presence) {
     return columns;
 }
 
+bool names_property(const TomlTable& table, const std::string& key, const Columns& columns) {
+    const std::vector<std::string> known = properties(columns);
+    const bool is_known = std::find(known.begin(), known.end(), key) != known.end();
+    if (is_known || !table.has(key)) return is_known;
+    table.fault(key,
+                "no such property",
+                known.empty() ? "the survey's columns name none besides the position"
+                              : "the survey's columns name " + listed(known, " and "),
+                suggestion(key, known));
+    return false;
+}
+
 std::vector<PropertyRange> read_select(const TomlTable& table, const Columns& columns) {
     std::vector<PropertyRange> ranges;
     const TomlTable select = table.table("select");
-    const std::vector<std::string> known = selectable(columns);
     for (const std::string& property : select.keys()) {
         const auto range = read_range(select, property);
-        if (is_selectable(select, property, known) && range) ranges.push_back(*range);
+        if (names_property(select, property, columns) && range) ranges.push_back(*range);
     }
     return ranges;
 }

@@ -17,6 +17,10 @@ using Columns = std::map<std::string, std::string>;
 /// The `columns` of a survey; lon and lat required, each column once.
 Columns read_columns(const TomlTable& survey, Presence presence);
 
+/// Whether a key of a table names a property of a survey other than its position; a fault of
+/// that key where it does not.
+bool names_property(const TomlTable& table, const std::string& key, const Columns& columns);
+
 /// A `select` table: half-open ranges of properties, in the order of the file.
 std::vector<PropertyRange> read_select(const TomlTable& table, const Columns& columns);
 

@@ -71,8 +71,8 @@ std::optional<VectorPrior> Surroundings::named_prior(const TomlTable& table,
     const auto companion = find_prior_(*name);
     if (!companion) {
         const auto known = known_priors_();
-        table.wrong(
-            key, "a known prior (" + listed(known, ", ") + ")", suggestion(*name, known));
+        const std::string names = known.empty() ? "" : ", " + listed(known) + ",";
+        table.wrong(key, "a known prior" + names, suggestion(*name, known));
         return std::nullopt;
     }
     keep(*companion);

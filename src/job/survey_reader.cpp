@@ -56,10 +56,8 @@ bool is_redshift_scatter(std::string text) {
 void check_scatter(const TomlTable& survey, const Columns& columns) {
     const TomlTable scatter = survey.table("scatter");
     for (const std::string& property : scatter.keys()) {
-        const bool is_position = property == "lon" || property == "lat";
-        if (is_position || columns.find(property) == columns.end()) {
-            scatter.refuse(property, "no such property", "name one of the survey's columns");
-        } else if (property == "redshift" && scatter.has_text(property)) {
+        if (!names_property(scatter, property, columns)) continue;
+        if (property == "redshift" && scatter.has_text(property)) {
             const bool fits = is_redshift_scatter(scatter.text(property).value_or(""));
             if (!fits) scatter.wrong(property, "a number or the form \"0.05*(1+z)\"");
         } else {
@@ -120,8 +118,11 @@ BinInput read_bin_input(const TomlTable& bin,
     BinInput input;
     input.name = names.read(bin);
     check_source_of_counts(bin, has_catalogue);
-    if (has_catalogue || !bin.has("select")) input.select = read_select(bin, survey.columns);
-    if (!has_catalogue) bin.table("select").ignore_unknown_keys();
+    if (has_catalogue) {
+        input.select = read_select(bin, survey.columns);
+    } else {
+        bin.table("select").ignore_unknown_keys();
+    }
     input.counts = surroundings.optional_input(bin, "counts");
     input.exposure = surroundings.optional_input(bin, "exposure");
     return input;

@@ -47,7 +47,8 @@ const char* const weight_forms = "a table { mean, sd } or { x, x_sd, alpha, alph
 std::optional<QuotedWeight> read_quoted(const TomlTable& bin) {
     if (!bin.has_table("weight")) {
         const bool measured = bin.has_text("weight") && bin.text("weight") == "measure";
-        measured ? bin.refuse_later("weight") : bin.wrong("weight", weight_forms);
+        measured ? bin.refuse_later("weight", "give it as numbers")
+                 : bin.wrong("weight", weight_forms);
         return std::nullopt;
     }
     const TomlTable weight = bin.table("weight");
@@ -65,7 +66,7 @@ std::optional<WeightsFile> read_file(const TomlTable& survey,
                                      const std::string& survey_name,
                                      Surroundings& surroundings) {
     if (survey.has_text("weights") && survey.text("weights") == "measure") {
-        survey.refuse_later("weights");
+        survey.refuse_later("weights", "name a weights file, or give each bin a weight");
         return std::nullopt;
     }
     const auto companion = surroundings.read_companion(survey, "weights");
