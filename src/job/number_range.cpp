@@ -21,7 +21,9 @@ std::string NumberRange::text() const {
     if (std::isfinite(high))
         upper = fmt::format(" {} {}", high_open ? "below" : "at most", high);
     const char* joint = lower.empty() || upper.empty() ? "" : " and";
-    return (infinite ? "a number or inf" : "a number") + lower + joint + upper;
+    const bool bounded = std::isfinite(low) && std::isfinite(high);
+    const char* kind = infinite ? "a number or inf" : bounded ? "a number" : "a finite number";
+    return kind + lower + joint + upper;
 }
 
 NumberRange above(double low) {

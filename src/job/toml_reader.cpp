@@ -107,6 +107,18 @@ std::string integer_text(std::int64_t low, std::int64_t high) {
     return fmt::format("an integer from {} to {}", low, high);
 }
 
+/// A key path as a table heading spells it: without the counts of arrays.
+std::string heading(std::string_view path) {
+    std::string text;
+    int depth = 0;
+    for (const char c : path) {
+        if (c == '[') ++depth;
+        if (depth == 0) text += c;
+        if (c == ']') --depth;
+    }
+    return text;
+}
+
 /// A fault of the TOML text itself, in our grammar.
 Message syntax_fault(const toml::parse_error& error, const std::string& name) {
     const toml::source_position place = error.source().begin;
@@ -228,6 +240,11 @@ void TomlTable::fault(const std::string& key,
         place_of(key), path_of(key), std::move(found), std::move(allowed), std::move(remedy));
 }
 
+void TomlTable::fault_here(std::string found, std::string allowed, std::string remedy) const {
+    if (silent_) return;
+    document_->add(place_, path_, std::move(found), std::move(allowed), std::move(remedy));
+}
+
 void TomlTable::wrong(const std::string& key, std::string allowed, std::string remedy) const {
     const toml::node* node = find(key);
     fault(key, node ? "found " + shown(*node) : "missing", allowed + " is allowed", remedy);
@@ -249,8 +266,10 @@ void TomlTable::refuse(const std::string& key, std::string why, std::string reme
     if (find(key)) fault(key, std::move(why), "", std::move(remedy));
 }
 
-void TomlTable::refuse_later(const std::string& key) const {
-    refuse(key, "not yet available", "leave it out");
+void TomlTable::refuse_later(const std::string& key, std::string remedy) const {
+    const toml::node* node = find(key);
+    if (node)
+        fault(key, "found " + shown(*node) + ", not yet available", "", std::move(remedy));
 }
 
 void TomlTable::ignore_unknown_keys() const {
@@ -356,7 +375,8 @@ std::optional<Eigen::VectorXd> TomlTable::numbers(const std::string& key,
                                                   Eigen::Index n,
                                                   const NumberRange& range,
                                                   Presence presence) const {
-    const std::string allowed = fmt::format("an array of {} numbers", n);
+    const std::string allowed = fmt::format(
+        "an array of {} {}", n, range.infinite ? "numbers or inf" : "finite numbers");
     return read<Eigen::VectorXd>(key, allowed, presence, [&](const toml::node& node) {
         return numbers_in(node, n, range);
     });
@@ -365,7 +385,7 @@ std::optional<Eigen::VectorXd> TomlTable::numbers(const std::string& key,
 std::optional<Eigen::MatrixXd> TomlTable::matrix(const std::string& key,
                                                  Eigen::Index n,
                                                  Presence presence) const {
-    const std::string allowed = fmt::format("an array of {0} rows of {0} numbers", n);
+    const std::string allowed = fmt::format("an array of {0} rows of {0} finite numbers", n);
     return read<Eigen::MatrixXd>(
         key, allowed, presence, [&](const toml::node& node) { return matrix_in(node, n); });
 }
@@ -380,7 +400,8 @@ TomlTable TomlTable::table(const std::string& key) const {
 }
 
 std::vector<TomlTable> TomlTable::tables(const std::string& key, Presence presence) const {
-    const std::string allowed = fmt::format("an array of tables, [[{}]],", path_of(key));
+    const std::string allowed =
+        fmt::format("an array of tables, [[{}]],", heading(path_of(key)));
     const toml::node* node = find(key);
     if (!node) {
         missing(key, allowed, presence);

@@ -20,6 +20,7 @@ namespace deviascope {
 
 /// Whether a key may be left out.
 enum class Presence { optional, required };
+inline constexpr Presence required = Presence::required;
 
 /// `"a", "b" or "c"`, for messages.
 std::string listed(const std::vector<std::string>& names, const char* last_joint = " or ");
@@ -133,14 +134,16 @@ class TomlTable {
                std::string found,
                std::string allowed,
                std::string remedy = {}) const;
+    /// Notes a fault of the table itself.
+    void fault_here(std::string found, std::string allowed, std::string remedy = {}) const;
     /// Notes that the value of a key, shown as it was written, is not allowed.
     void wrong(const std::string& key, std::string allowed, std::string remedy = {}) const;
     /// Notes the faults of another file that a key refers to, at the place of that key.
     void adopt(const std::string& key, const std::vector<Message>& faults) const;
     /// Makes a key known that must not be there, for the reason given.
     void refuse(const std::string& key, std::string why, std::string remedy) const;
-    /// A key of a later version.
-    void refuse_later(const std::string& key) const;
+    /// A key, or a value, of a later version.
+    void refuse_later(const std::string& key, std::string remedy = "leave it out") const;
     /// No faults for keys that nobody asks for: where what is known hangs on a faulty value.
     void ignore_unknown_keys() const;
     /// Line of a key's value, from 1; of the table where it is absent.

@@ -88,7 +88,7 @@ class PendingText {
   public:
     explicit PendingText(std::filesystem::path path)
         : path_(std::move(path)),
-          temporary_(path_.string() + ".part"),
+          temporary_(path_.string() + ".partial"),
           file_(temporary_, std::ios::binary | std::ios::trunc) {
         if (!file_) fail();
     }

@@ -216,6 +216,28 @@ struct Piece {
     MockTally tally;
 };
 
+/// As many pieces as are drawn before their rows are handed on: a few a thread, so that none
+/// waits long and little is held in memory.
+std::vector<Piece> pieces_for(int threads) {
+    return std::vector<Piece>(threads > 1 ? 4 * static_cast<std::size_t>(threads) : 1);
+}
+
+/// Draws the sources from `first` on that fill all pieces, or what is left of n_sources.
+void draw_pieces(const SurveySky& sky,
+                 std::int64_t first,
+                 std::int64_t n_sources,
+                 int threads,
+                 std::vector<Piece>& pieces) {
+    parallel_for(pieces.size(), threads, [&](std::size_t index) {
+        Piece& piece = pieces[index];
+        const std::int64_t from =
+            std::min(n_sources, first + static_cast<std::int64_t>(index) * chunk_size);
+        piece.rows.clear();
+        piece.tally = {};
+        sky.draw(from, std::min(n_sources, from + chunk_size), piece.rows, piece.tally);
+    });
+}
+
 }  // namespace
 
 void MockRows::clear() {
@@ -244,34 +266,23 @@ MockTally draw_survey(const Scenario& scenario,
         throw UsageError(std::move(problems));
     const SurveySky sky(scenario, survey);
     const std::int64_t n_sources = sky.n_sources();
+    const std::string& name = scenario.surveys[survey].name;
+    std::vector<Piece> pieces = pieces_for(options.threads);
     MockTally total;
     total.excluded.assign(scenario.surveys[survey].exclude.size(), 0);
-    // A few pieces a thread: enough that none waits long, little enough to hold in memory.
-    std::vector<Piece> pieces(
-        options.threads > 1 ? 4 * static_cast<std::size_t>(options.threads) : 1);
-    for (std::int64_t first = 0; first < n_sources;) {
+    while (total.drawn < n_sources) {
         if (options.stop_requested && options.stop_requested()) {
             total.finished = false;
             break;
         }
-        parallel_for(pieces.size(), options.threads, [&](std::size_t index) {
-            Piece& piece = pieces[index];
-            const std::int64_t from =
-                std::min(n_sources, first + static_cast<std::int64_t>(index) * chunk_size);
-            piece.rows.clear();
-            piece.tally = {};
-            sky.draw(from, std::min(n_sources, from + chunk_size), piece.rows, piece.tally);
-        });
+        draw_pieces(sky, total.drawn, n_sources, options.threads, pieces);
         for (const Piece& piece : pieces) {
             total.add(piece.tally);
             if (piece.rows.size() > 0) sink(piece.rows);
         }
-        first = total.drawn;
         if (options.progress)
-            options.progress(fmt::format("{}: {} of {} sources drawn",
-                                         scenario.surveys[survey].name,
-                                         total.drawn,
-                                         n_sources));
+            options.progress(
+                fmt::format("{}: {} of {} sources drawn", name, total.drawn, n_sources));
     }
     return total;
 }

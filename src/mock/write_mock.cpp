@@ -36,6 +36,17 @@ void refuse_existing(const Scenario& scenario, const std::filesystem::path& fold
                                "give --replace or another folder"});
 }
 
+/// An old truth must not stand beside new catalogues, even if this run is killed.
+void remove_old_truth(const std::filesystem::path& folder) {
+    std::error_code error;
+    std::filesystem::remove(folder / "truth.toml", error);
+    if (!error) return;
+    throw OutputError({(folder / "truth.toml").string(),
+                       "cannot be removed (" + error.message() + ")",
+                       "a folder that can be written is needed",
+                       ""});
+}
+
 void write_exposure(const MockSurvey& survey,
                     const std::filesystem::path& folder,
                     MockReport& report) {
@@ -69,6 +80,7 @@ MockReport write_mock(const Scenario& scenario,
         throw UsageError(std::move(problems));
     make_folder(folder);
     if (!replace) refuse_existing(scenario, folder);
+    remove_old_truth(folder);
     MockReport report;
     report.warnings = scenario.warnings();
     for (std::size_t survey = 0; survey < scenario.surveys.size(); ++survey) {

@@ -15,18 +15,26 @@
 
 namespace deviascope {
 
-/// A job file, understood: the options of every stage.
+/// A data file that a job reads: a catalogue, an exposure map or a count map.
+struct InputFile {
+    std::string written;         ///< as the job file names it
+    std::filesystem::path path;  ///< where it is: relative paths start at the job's folder
+};
+
+/// A job file, understood: the options of every stage. Paths in `surveys` are those of
+/// `inputs`.
 struct Job {
-    std::string name;   ///< file name
-    std::string title;  ///< job.title, else the file name
+    std::string name;              ///< file name
+    std::string title;             ///< job.title, else the file name
     std::filesystem::path folder;  ///< where relative paths start; empty for a text
-    std::string text;   ///< the file's bytes
+    std::string text;              ///< the file's bytes
     std::uint64_t seed = 0;
     int nside = 64;
     Frame frame = Frame::galactic;
     std::vector<SurveyInput> surveys;
     ModelOptions model;
-    EnsembleOptions ensemble;  ///< threads, stop and progress are the command's to fill
+    EnsembleOptions ensemble;       ///< threads, stop and progress are the command's to fill
+    std::vector<InputFile> inputs;  ///< each file once, in job order
     std::vector<Companion> companions;  ///< priors and weights files that were read
     std::vector<std::string> warnings;  ///< for instance bins that share one alpha
 };
@@ -41,6 +49,8 @@ using CompanionFinder = std::function<std::optional<Companion>(const std::string
 Job read_job(const std::filesystem::path& path);
 
 /// The same from a text, without looking for input files: for chains that are read back.
+/// @param name        of the job, as faults shall call it
+/// @param companions  answers with `Job::companions` of the job that was read, by name
 Job parse_job(const std::string& text,
               const std::string& name,
               const CompanionFinder& companions);
@@ -52,11 +62,13 @@ std::optional<Companion> find_prior(const std::string& name,
 /// A prior file's text as a prior in the job's frame. Errors: UsageError.
 VectorPrior parse_prior(const Companion& companion, Frame job_frame);
 
-/// SHA-256 over the input files' digests and everything that decides the counts (nside, frame,
-/// surveys without weights and priors), for counts.h5.
+/// SHA-256 over everything that decides the counts (nside, frame, surveys without weights and
+/// priors), for counts.h5. Files count by their bytes, not by their names.
+/// @param inputs  one for each of `Job::inputs`, in their order
 std::string digest_of_inputs(const Job& job, const std::vector<InputDigest>& inputs);
 
-/// Digests of all input files of a job, in job order.
+/// Digests of all input files of a job, in the order of `Job::inputs`.
+/// Errors: InputError if one cannot be read.
 std::vector<InputDigest> digests_of_inputs(const Job& job);
 
 }  // namespace deviascope

@@ -76,8 +76,8 @@ TEST_CASE("ends of a range are in or out as it says", "[job]") {
     CHECK_FALSE(accepts("0", above_up_to(0, 1)));
     CHECK(above_up_to(0, 1).text() == "a number above 0 and at most 1");
     CHECK(inside(-90, 90).text() == "a number above -90 and below 90");
-    CHECK(at_least(0).text() == "a number of at least 0");
-    CHECK(NumberRange{}.text() == "a number");
+    CHECK(at_least(0).text() == "a finite number of at least 0");
+    CHECK(NumberRange{}.text() == "a finite number");
 }
 
 TEST_CASE("each kind of value says what was found and what is allowed", "[job]") {
@@ -93,10 +93,12 @@ TEST_CASE("each kind of value says what was found and what is allowed", "[job]")
         {"k = 1",
          [](TomlTable t) { t.text("k"); },
          "found 1; a text that is not empty is allowed"},
-        {"k = 'a'", [](TomlTable t) { t.number("k"); }, "found \"a\"; a number is allowed"},
+        {"k = 'a'",
+         [](TomlTable t) { t.number("k"); },
+         "found \"a\"; a finite number is allowed"},
         {"k = true",
          [](TomlTable t) { t.number("k", above(0)); },
-         "found true; a number above 0 is allowed"},
+         "found true; a finite number above 0 is allowed"},
         {"k = 1", [](TomlTable t) { t.boolean("k"); }, "found 1; true or false is allowed"},
         {"k = 'tru'",
          [](TomlTable t) { t.boolean("k"); },
@@ -106,16 +108,16 @@ TEST_CASE("each kind of value says what was found and what is allowed", "[job]")
          "found -1; an integer of at least 0 is allowed"},
         {"k = [1, 2]",
          [](TomlTable t) { t.numbers("k", 3); },
-         "found [1, 2]; an array of 3 numbers is allowed"},
+         "found [1, 2]; an array of 3 finite numbers is allowed"},
         {"k = [1, 2, 'x']",
          [](TomlTable t) { t.numbers("k", 3); },
-         "found [1, 2, \"x\"]; an array of 3 numbers is allowed"},
+         "found [1, 2, \"x\"]; an array of 3 finite numbers is allowed"},
         {"k = [1, 2, 3, 4, 5, 6, 7]",
          [](TomlTable t) { t.numbers("k", 3); },
-         "found an array of 7 values; an array of 3 numbers is allowed"},
+         "found an array of 7 values; an array of 3 finite numbers is allowed"},
         {"k = [[1, 2], [3]]",
          [](TomlTable t) { t.matrix("k", 2); },
-         "found [[1, 2], [3]]; an array of 2 rows of 2 numbers is allowed"},
+         "found [[1, 2], [3]]; an array of 2 rows of 2 finite numbers is allowed"},
         {"k = []",
          [](TomlTable t) { t.texts("k"); },
          "found []; a text or an array of texts is allowed"},
@@ -138,7 +140,9 @@ TEST_CASE("each kind of value says what was found and what is allowed", "[job]")
              t.choice("k", {"galactic", "icrs"});
          },
          "found 7; \"galactic\" or \"icrs\" is allowed"},
-        {"k = 1", [](TomlTable t) { t.refuse_later("k"); }, "not yet available; leave it out"},
+        {"k = 1",
+         [](TomlTable t) { t.refuse_later("k"); },
+         "found 1, not yet available; leave it out"},
     };
     for (const Case& c : cases) {
         INFO(c.text);
@@ -208,10 +212,10 @@ TEST_CASE("tables of an array are counted from 1 and faults come in the order of
                     "}]\n[[survey]]\nlate = 'c'\n"
                     "[[survey.bin]]\nmean = 'd'\n",
                     ask) ==
-          "f.toml:1:5: x: found \"a\"; a number is allowed\n"
-          "f.toml:3:31: survey[1].bin[2].mean: found \"b\"; a number is allowed\n"
-          "f.toml:5:8: survey[2].late: found \"c\"; a number is allowed\n"
-          "f.toml:7:8: survey[2].bin[1].mean: found \"d\"; a number is allowed");
+          "f.toml:1:5: x: found \"a\"; a finite number is allowed\n"
+          "f.toml:3:31: survey[1].bin[2].mean: found \"b\"; a finite number is allowed\n"
+          "f.toml:5:8: survey[2].late: found \"c\"; a finite number is allowed\n"
+          "f.toml:7:8: survey[2].bin[1].mean: found \"d\"; a finite number is allowed");
 }
 
 TEST_CASE("faults of another file stand where it is named", "[job]") {
@@ -224,5 +228,5 @@ TEST_CASE("faults of another file stand where it is named", "[job]") {
                     }) ==
           "f.toml:1:5: a: found 1; a text that is not empty is allowed\n"
           "p.toml:9:9: sd: found 0\n"
-          "f.toml:3:5: b: found \"x\"; a number is allowed");
+          "f.toml:3:5: b: found \"x\"; a finite number is allowed");
 }

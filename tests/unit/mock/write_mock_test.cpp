@@ -71,6 +71,11 @@ TEST_CASE("existing files are replaced only when asked", "[mock]") {
     write_mock(small_scenario(), folder.path(), {}, false);
     CHECK_THROWS_AS(write_mock(small_scenario(), folder.path(), {}, false), OutputError);
     CHECK_NOTHROW(write_mock(small_scenario(), folder.path(), {}, true));
+    // An old truth does not outlive a run that was stopped.
+    MockOptions options;
+    options.stop_requested = [] { return true; };
+    write_mock(small_scenario(), folder.path(), options, true);
+    CHECK_FALSE(std::filesystem::exists(folder / "truth.toml"));
 }
 
 TEST_CASE("a stopped mock leaves no unfinished file", "[mock]") {

@@ -1,0 +1,93 @@
+// SPDX-License-Identifier: GPL-2.0-or-later
+#include "job/ensemble_reader.h"
+
+#include <fmt/format.h>
+
+#include <cmath>
+#include <limits>
+#include <utility>
+
+namespace deviascope {
+
+namespace {
+
+constexpr std::int64_t any_integer = std::numeric_limits<std::int64_t>::max();
+
+KernelFractions read_kernels(const TomlTable& table) {
+    KernelFractions fractions;
+    if (!table.has("kernels")) return fractions;
+    const TomlTable kernels = table.table("kernels");
+    const std::pair<const char*, double*> entries[] = {
+        {"stretch", &fractions.stretch},
+        {"differential-evolution", &fractions.differential_evolution},
+        {"independence", &fractions.independence}};
+    bool sound = static_cast<bool>(kernels);
+    double sum = 0;
+    for (const auto& [key, fraction] : entries) {
+        const auto value = kernels.number(key, between(0, 1));
+        sound = sound && (value || !kernels.has(key));
+        *fraction = value.value_or(0.0);
+        sum += *fraction;
+    }
+    if (fractions.independence > 0) kernels.refuse_later("independence");
+    if (sound && std::abs(sum - 1) > 1e-9) {
+        kernels.fault_here(fmt::format("the fractions add to {:.10g}", sum),
+                           "fractions that add to 1 are allowed",
+                           "a kernel left out has fraction 0");
+    }
+    return fractions;
+}
+
+/// `engine` and `tolerance`: there is one engine so far, the exact one, whatever the tolerance.
+void check_engine(const TomlTable& table) {
+    const std::vector<std::string> engines = {"auto", "moment", "pixel"};
+    const auto engine = table.choice("engine", engines);
+    if (engine && engines[*engine] == "moment") table.refuse_later("engine");
+    table.number("tolerance", above(0));
+}
+
+int read_walkers(const TomlTable& table, const std::optional<Eigen::Index>& n_coordinates) {
+    const auto walkers = table.integer("walkers", 4, 1'000'000);
+    if (!walkers) return 0;
+    const std::int64_t least = 2 * n_coordinates.value_or(0) + 2;
+    if (*walkers % 2 != 0 || *walkers < least) {
+        const std::string reason =
+            n_coordinates ? fmt::format(" of at least {} (twice the {} coordinates, plus 2)",
+                                        least,
+                                        *n_coordinates)
+                          : "";
+        table.wrong("walkers", "an even number" + reason);
+    }
+    return static_cast<int>(*walkers);
+}
+
+}  // namespace
+
+Eigen::Index n_coordinates_of(const ModelOptions& model) {
+    Eigen::Index n = model.velocity.n_coordinates();
+    if (model.intrinsic_shared) n += model.intrinsic.n_coordinates();
+    for (const SurveyModel& survey : model.surveys) {
+        if (!model.intrinsic_shared) n += survey.intrinsic.n_coordinates();
+        n += (survey.weights.covariance.diagonal().array() > 0).count();
+        if (model.monopole.sampled) n += std::ssize(survey.bins);
+    }
+    return n;
+}
+
+EnsembleOptions read_ensemble(const TomlTable& table,
+                              const std::optional<Eigen::Index>& n_coordinates) {
+    EnsembleOptions options;
+    check_engine(table);
+    options.replicates =
+        static_cast<int>(table.integer("replicates", 1, 10'000).value_or(options.replicates));
+    options.walkers = read_walkers(table, n_coordinates);
+    options.effective_draws =
+        table.number("effective_draws", at_least(1)).value_or(options.effective_draws);
+    options.max_steps = table.integer("max_steps", 2, any_integer).value_or(options.max_steps);
+    options.store_every =
+        table.integer("store_every", 0, any_integer).value_or(options.store_every);
+    options.kernels = read_kernels(table);
+    return options;
+}
+
+}  // namespace deviascope

@@ -1,0 +1,156 @@
+// SPDX-License-Identifier: GPL-2.0-or-later
+#include <fmt/format.h>
+
+#include <limits>
+#include <utility>
+
+#include "deviascope/job/job.h"
+#include "deviascope/sky/pixelisation.h"
+#include "job/ensemble_reader.h"
+#include "job/frame_reader.h"
+#include "job/prior_reader.h"
+#include "job/surroundings.h"
+#include "job/survey_reader.h"
+#include "job/text_file.h"
+#include "job/toml_reader.h"
+
+namespace deviascope {
+
+namespace {
+
+constexpr std::int64_t largest_integer = std::numeric_limits<std::int64_t>::max();
+
+/// Hypotheses that every comparison knows already (design section 6).
+const std::vector<std::string> built_in_hypotheses = {
+    "reference", "reference-intrinsic", "free", "free-intrinsic"};
+
+int read_nside(const TomlTable& table) {
+    const auto nside = table.integer("nside", 1, largest_integer, required);
+    if (!nside) return 0;
+    if (*nside <= 1024 && Pixelisation::is_valid_nside(*nside)) return static_cast<int>(*nside);
+    table.wrong("nside", "a power of two from 1 to 1024");
+    return 0;
+}
+
+/// Reads a job's tables in turn; the parts that later ones need are members.
+class JobReader {
+  public:
+    JobReader(const std::string& text, const std::string& name, Surroundings surroundings)
+        : document_(text, name), root_(document_.root()), around_(std::move(surroundings)) {
+        job_.text = text;
+    }
+
+    Job read() {
+        read_job_table();
+        job_.model.monopole = read_monopole(root_.table("monopole"));
+        read_velocity();
+        read_intrinsic();
+        read_surveys();
+        const auto n =
+            model_complete_ ? std::optional(n_coordinates_of(job_.model)) : std::nullopt;
+        job_.ensemble = read_ensemble(root_.table("ensemble"), n);
+        job_.ensemble.seed = job_.seed;
+        check_hypotheses();
+        document_.finish();
+        job_.companions = around_.companions();
+        job_.inputs = around_.inputs();
+        return std::move(job_);
+    }
+
+  private:
+    void read_job_table() {
+        const TomlTable table = root_.table("job");
+        job_.title = table.text("title").value_or("");
+        job_.seed = static_cast<std::uint64_t>(
+            table.integer("seed", 0, largest_integer, required).value_or(0));
+        job_.nside = read_nside(table);
+        job_.frame = read_frame(table, "frame").value_or(Frame::galactic);
+        table.refuse_later("deduplicate");
+        table.refuse_later("match_arcsec");
+    }
+
+    void read_velocity() {
+        const auto prior =
+            around_.read_prior(root_.table("velocity"), "prior", job_.frame, required);
+        if (prior) job_.model.velocity = *prior;
+        model_complete_ = model_complete_ && prior;
+    }
+
+    void read_intrinsic() {
+        const TomlTable table = root_.table("intrinsic");
+        job_.model.intrinsic_shared = table.boolean("shared").value_or(false);
+        intrinsic_ = around_.read_prior(table, "prior", job_.frame, required);
+        if (intrinsic_) job_.model.intrinsic = *intrinsic_;
+        model_complete_ = model_complete_ && intrinsic_;
+    }
+
+    void read_surveys() {
+        NameRule names({"all"});
+        const auto tables = root_.tables("survey", required);
+        for (const TomlTable& table : tables) {
+            SurveyReading survey = read_survey(
+                table, names, intrinsic_, job_.model.intrinsic_shared, job_.frame, around_);
+            job_.surveys.push_back(std::move(survey.input));
+            job_.model.surveys.push_back(std::move(survey.model));
+            for (std::string& warning : survey.warnings) {
+                job_.warnings.push_back(std::move(warning));
+            }
+            model_complete_ = model_complete_ && survey.model_complete;
+        }
+        model_complete_ = model_complete_ && !tables.empty();
+    }
+
+    /// Hypotheses are for comparisons: they have to be sound, and nothing else uses them.
+    void check_hypotheses() {
+        NameRule names(built_in_hypotheses);
+        for (const TomlTable& table : root_.tables("hypothesis")) {
+            names.read(table);
+            check_replacement(table, "velocity");
+            check_replacement(table, "intrinsic");
+        }
+    }
+
+    void check_replacement(const TomlTable& hypothesis, const std::string& key) {
+        if (!hypothesis.has(key)) return;
+        const TomlTable table = hypothesis.table(key);
+        if (key == "intrinsic") table.boolean("shared");
+        if (table) around_.read_prior(table, "prior", job_.frame, required);
+    }
+
+    TomlDocument document_;
+    TomlTable root_;
+    Surroundings around_;
+    Job job_;
+    std::optional<VectorPrior> intrinsic_;
+    bool model_complete_ = true;
+};
+
+Job named(Job job, const std::string& file_name) {
+    job.name = file_name;
+    if (job.title.empty()) job.title = file_name;
+    return job;
+}
+
+}  // namespace
+
+Job read_job(const std::filesystem::path& path) {
+    const auto text = text_of_file(path);
+    if (!text) {
+        throw UsageError({path.string(),
+                          "cannot be read",
+                          "a job file (TOML) is required",
+                          "check the path and its permissions"});
+    }
+    const std::filesystem::path folder = path.parent_path();
+    Job job = JobReader(*text, path.string(), Surroundings::on_disk(folder)).read();
+    job.folder = folder;
+    return named(std::move(job), path.filename().string());
+}
+
+Job parse_job(const std::string& text,
+              const std::string& name,
+              const CompanionFinder& companions) {
+    return named(JobReader(text, name, Surroundings::kept(companions)).read(), name);
+}
+
+}  // namespace deviascope

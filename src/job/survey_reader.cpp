@@ -1,0 +1,201 @@
+// SPDX-License-Identifier: GPL-2.0-or-later
+#include "job/survey_reader.h"
+
+#include <fmt/format.h>
+
+#include <algorithm>
+#include <cstdlib>
+#include <limits>
+#include <set>
+
+#include "job/frame_reader.h"
+#include "job/selection_reader.h"
+#include "job/weight_reader.h"
+
+namespace deviascope {
+
+namespace {
+
+std::vector<std::filesystem::path> read_catalogue(const TomlTable& survey,
+                                                  Surroundings& surroundings) {
+    std::vector<std::filesystem::path> paths;
+    std::set<std::string> seen;
+    for (const std::string& written : survey.texts("catalogue")) {
+        paths.push_back(surroundings.input(survey, "catalogue", written));
+        if (seen.insert(written).second) continue;
+        survey.fault("catalogue",
+                     fmt::format("\"{}\" is named twice", written),
+                     "each file once is allowed",
+                     "its sources would count twice");
+    }
+    return paths;
+}
+
+/// HDU name or number, or HDF5 group, as text.
+std::optional<std::string> read_table_name(const TomlTable& survey) {
+    if (!survey.has("table") || survey.has_text("table")) return survey.text("table");
+    constexpr std::int64_t most = std::numeric_limits<std::int32_t>::max();
+    const auto number = survey.integer("table", 0, most);
+    return number ? std::optional(std::to_string(*number)) : std::nullopt;
+}
+
+/// Whether a text is `0.05*(1+z)`: a number of at least 0, times (1+z); blanks do not matter.
+bool is_redshift_scatter(std::string text) {
+    text.erase(std::remove(text.begin(), text.end(), ' '), text.end());
+    const std::string ending = "*(1+z)";
+    if (!text.ends_with(ending)) return false;
+    const std::string factor = text.substr(0, text.size() - ending.size());
+    const bool plain = factor.find_first_not_of("0123456789.eE+-") == std::string::npos;
+    if (factor.empty() || !plain) return false;
+    char* end = nullptr;
+    const double value = std::strtod(factor.c_str(), &end);
+    return *end == '\0' && at_least(0).holds(value);
+}
+
+/// `scatter` is for measuring weights: its syntax is checked, nothing else uses it yet.
+void check_scatter(const TomlTable& survey, const Columns& columns) {
+    const TomlTable scatter = survey.table("scatter");
+    for (const std::string& property : scatter.keys()) {
+        if (!names_property(scatter, property, columns)) continue;
+        if (property == "redshift" && scatter.has_text(property)) {
+            const bool fits = is_redshift_scatter(scatter.text(property).value_or(""));
+            if (!fits) scatter.wrong(property, "a number or the form \"0.05*(1+z)\"");
+        } else {
+            scatter.number(property, at_least(0));
+        }
+    }
+}
+
+/// `alpha` is for measuring weights: its syntax is checked, nothing else uses it yet.
+void check_alpha(const TomlTable& survey) {
+    if (!survey.has("alpha")) return;
+    const TomlTable alpha = survey.table("alpha");
+    alpha.number("mean", {}, required);
+    alpha.number("sd", at_least(0), required);
+}
+
+BadRows read_bad_rows(const TomlTable& survey) {
+    return survey.choice("bad_rows", {"stop", "skip"}) == std::size_t{1} ? BadRows::skip
+                                                                         : BadRows::stop;
+}
+
+/// All of a survey but its bins and what the model needs.
+SurveyInput read_input(const TomlTable& survey, NameRule& names, Surroundings& surroundings) {
+    SurveyInput input;
+    input.name = names.read(survey);
+    const Presence presence = survey.has("catalogue") ? required : Presence::optional;
+    input.catalogue = read_catalogue(survey, surroundings);
+    input.table = read_table_name(survey);
+    input.frame = read_frame(survey, "frame", presence).value_or(Frame::icrs);
+    input.columns = read_columns(survey, presence);
+    input.exposure = surroundings.optional_input(survey, "exposure");
+    input.map_frame = read_frame(survey, "map_frame");
+    input.exclude = read_exclusions(survey);
+    input.select = read_select(survey, input.columns);
+    input.bad_rows = read_bad_rows(survey);
+    check_alpha(survey);
+    check_scatter(survey, input.columns);
+    return input;
+}
+
+void check_source_of_counts(const TomlTable& bin, bool has_catalogue) {
+    const bool select = bin.has("select"), counts = bin.has("counts");
+    if (select && counts) {
+        bin.fault("counts", "given besides select", "one of select and counts is allowed");
+    } else if (!select && !counts) {
+        bin.fault("select", "missing", "select (a table) or counts (a map) is required");
+    } else if (select && !has_catalogue) {
+        bin.fault(
+            "select", "the survey has no catalogue", "select needs one", "or give counts");
+    }
+}
+
+BinInput read_bin_input(const TomlTable& bin,
+                        const SurveyInput& survey,
+                        bool has_catalogue,
+                        NameRule& names,
+                        Surroundings& surroundings) {
+    BinInput input;
+    input.name = names.read(bin);
+    check_source_of_counts(bin, has_catalogue);
+    if (has_catalogue) {
+        input.select = read_select(bin, survey.columns);
+    } else {
+        bin.table("select").ignore_unknown_keys();
+    }
+    input.counts = surroundings.optional_input(bin, "counts");
+    input.exposure = surroundings.optional_input(bin, "exposure");
+    return input;
+}
+
+BinModel read_bin_model(const TomlTable& bin) {
+    BinModel model;
+    model.bias_ratio = bin.number("bias", at_least(0)).value_or(1.0);
+    const bool measured = bin.has_text("dispersion") && bin.text("dispersion") == "measure";
+    if (measured) {
+        bin.refuse_later("dispersion");
+    } else {
+        model.dispersion = bin.number("dispersion", above(0)).value_or(1.0);
+    }
+    return model;
+}
+
+/// The survey's own intrinsic prior, else the job's.
+std::optional<VectorPrior> read_own_prior(const TomlTable& survey,
+                                          const std::optional<VectorPrior>& intrinsic,
+                                          bool intrinsic_shared,
+                                          Frame job_frame,
+                                          Surroundings& surroundings) {
+    if (!survey.has("prior")) return intrinsic;
+    if (intrinsic_shared) {
+        survey.refuse("prior",
+                      "given although intrinsic.shared = true gives all surveys one vector",
+                      "leave it out, or write shared = false");
+        return intrinsic;
+    }
+    return surroundings.read_prior(survey, "prior", job_frame, required);
+}
+
+void warn_of_idle_catalogue(SurveyReading& reading) {
+    const auto& bins = reading.input.bins;
+    const bool idle = !reading.input.catalogue.empty() && !bins.empty() &&
+                      std::all_of(bins.begin(), bins.end(), [](const BinInput& bin) {
+                          return bin.counts.has_value();
+                      });
+    if (!idle) return;
+    reading.warnings.push_back(fmt::format(
+        "survey {}: no bin selects from its catalogue, all have counts", reading.input.name));
+}
+
+}  // namespace
+
+SurveyReading read_survey(const TomlTable& table,
+                          NameRule& names,
+                          const std::optional<VectorPrior>& intrinsic,
+                          bool intrinsic_shared,
+                          Frame job_frame,
+                          Surroundings& surroundings) {
+    SurveyReading reading;
+    reading.input = read_input(table, names, surroundings);
+    const auto prior =
+        read_own_prior(table, intrinsic, intrinsic_shared, job_frame, surroundings);
+    if (prior) reading.model.intrinsic = *prior;
+    const std::vector<TomlTable> bins = table.tables("bin", required);
+    std::vector<std::string> bin_names;
+    NameRule bin_rule;
+    for (const TomlTable& bin : bins) {
+        reading.input.bins.push_back(
+            read_bin_input(bin, reading.input, table.has("catalogue"), bin_rule, surroundings));
+        reading.model.bins.push_back(read_bin_model(bin));
+        bin_names.push_back(reading.input.bins.back().name);
+    }
+    WeightReading weights =
+        read_weights(table, reading.input.name, bins, bin_names, surroundings);
+    if (weights.prior) reading.model.weights = *weights.prior;
+    reading.warnings = std::move(weights.warnings);
+    warn_of_idle_catalogue(reading);
+    reading.model_complete = prior && weights.prior && !bins.empty();
+    return reading;
+}
+
+}  // namespace deviascope
