@@ -11,14 +11,23 @@
 // every instruction set (the library is built with -ffp-contract=off). The constants are Taylor
 // coefficients, not fits: the truncation bounds below are those of the series.
 //
-// `Reach::near` leaves out the argument reduction where the caller knows that it does nothing.
+// `Reach` leaves out what a small argument does not need: the caller knows a bound.
 
 namespace deviascope::elementary {
 
 enum class Reach {
-    near,  ///< the argument is known to be small (bound beside each function)
-    far    ///< any argument of the domain
+    tiny,   ///< |y| <= 1/64 (expm1 only)
+    small,  ///< |x|, |y| <= 1/16
+    near,   ///< |x| <= 0.29, |y| <= 0.34: the argument reduction would do nothing
+    far     ///< any argument of the domain
 };
+
+inline constexpr double tiny_bound = 1.0 / 64.0;
+inline constexpr double small_bound = 1.0 / 16.0;
+/// 1 + x stays between sqrt(1/2) and sqrt(2).
+inline constexpr double log1p_near_bound = 0.29;
+/// Below ln(2)/2.
+inline constexpr double expm1_near_bound = 0.34;
 
 /// ln 2 = ln2_high + ln2_low; ln2_high ends in 21 zero bits, so that k ln2_high is exact for
 /// |k| < 2^21. Computed from 50 digits of ln 2.
@@ -27,27 +36,26 @@ inline constexpr double ln2_low = 0x1.a39ef35793c76p-33;
 
 /// Smallest argument that log1p tells from -1.
 inline constexpr double log1p_lowest = -1.0 + 0x1p-53;
-/// log1p: bound of |x| for Reach::near; 1 + x stays between sqrt(1/2) and sqrt(2).
-inline constexpr double log1p_near = 0.29;
-/// expm1: bound of |y| for Reach::near, below ln(2)/2.
-inline constexpr double expm1_near = 0.34;
-/// expm1_small: bound of |y|.
-inline constexpr double expm1_small_reach = 0.0625;
 /// expm1: |y| is cut off here.
 inline constexpr double expm1_furthest = 708.0;
 
-/// sum_{j=1..9} 2 s^2j / (2j+1), by Horner: 2 atanh(s)/s - 2.
-[[gnu::always_inline]] inline double atanh_tail(double s_squared) {
-    double sum = 2.0 / 19.0;
-    sum = sum * s_squared + 2.0 / 17.0;
-    sum = sum * s_squared + 2.0 / 15.0;
-    sum = sum * s_squared + 2.0 / 13.0;
-    sum = sum * s_squared + 2.0 / 11.0;
-    sum = sum * s_squared + 2.0 / 9.0;
-    sum = sum * s_squared + 2.0 / 7.0;
-    sum = sum * s_squared + 2.0 / 5.0;
-    sum = sum * s_squared + 2.0 / 3.0;
-    return sum * s_squared;
+/// sum_{j=first..last} 2 s^2(j-first) / (2j+1), by Horner.
+template <int first, int last>
+[[gnu::always_inline]] inline double atanh_series(double s_squared) {
+    constexpr double coefficient = 2.0 / (2.0 * first + 1.0);
+    if constexpr (first == last)
+        return coefficient;
+    else
+        return atanh_series<first + 1, last>(s_squared) * s_squared + coefficient;
+}
+
+/// 2 atanh(s)/s - 2. Truncation, relative to 2 atanh(s): 2.4e-17 for |s| < 0.1716, where 1 + x
+/// is between sqrt(1/2) and sqrt(2); 2e-19 for |s| < 0.0323, where |x| <= 1/16.
+template <Reach reach>
+[[gnu::always_inline]] inline double atanh_tail(double s) {
+    const double s_squared = s * s;
+    constexpr int last = reach == Reach::small ? 5 : 9;
+    return atanh_series<1, last>(s_squared) * s_squared;
 }
 
 /// ln(1 + x).
@@ -56,13 +64,14 @@ inline constexpr double expm1_furthest = 708.0;
 ///   ln(1 + x) = k ln 2 + f - s (f - (2 atanh(s)/s - 2))
 ///
 /// The rounding error of 1 + x is kept and goes into f, so that small x lose nothing.
-/// Domain: |x| <= 1; below -1 + 2^-53 the value there, -36.74.  Near: |x| <= log1p_near.
-/// Accuracy: 2 units in the last place (|s| < 0.1716: truncation 2.4e-17 relative).
+/// Domain: |x| <= 1; below -1 + 2^-53 the value there, -36.74.
+/// Accuracy: 2 units in the last place.
 template <Reach reach>
 [[gnu::always_inline]] inline double log1p(double x) {
-    if constexpr (reach == Reach::near) {
+    static_assert(reach != Reach::tiny);
+    if constexpr (reach != Reach::far) {
         const double s = x / (2.0 + x);
-        return x - s * (x - atanh_tail(s * s));
+        return x - s * (x - atanh_tail<reach>(s));
     } else {
         const double inside = x < log1p_lowest ? log1p_lowest : x;
         const double u = 1.0 + inside;
@@ -79,24 +88,30 @@ template <Reach reach>
             std::bit_cast<double>(0x4330000000000000ULL | shifted) - (0x1p52 + 1024.0);
         const double f = (mantissa - 1.0) + lost * scale;
         const double s = f / (2.0 + f);
-        return k * ln2_high + (f - (s * (f - atanh_tail(s * s)) - k * ln2_low));
+        return k * ln2_high + (f - (s * (f - atanh_tail<reach>(s)) - k * ln2_low));
     }
 }
 
-/// (e^r - 1 - r) / r^2 to r^11 by Horner; |r| < 0.35: truncation 1.6e-17 of e^r - 1.
+constexpr double factorial(int n) {
+    return n < 2 ? 1.0 : n * factorial(n - 1);
+}
+
+/// sum_{k=first..last} r^(k-first) / k!, by Horner.
+template <int first, int last>
+[[gnu::always_inline]] inline double exponential_series(double r) {
+    constexpr double coefficient = 1.0 / factorial(first);
+    if constexpr (first == last)
+        return coefficient;
+    else
+        return exponential_series<first + 1, last>(r) * r + coefficient;
+}
+
+/// e^r - 1 - r. Truncation, relative to e^r - 1: 6e-18 (tiny), 4e-18 (small), 2e-17 (|r| <
+/// 0.35).
+template <Reach reach>
 [[gnu::always_inline]] inline double exponential_tail(double r) {
-    double sum = 1.0 / 6227020800.0;
-    sum = sum * r + 1.0 / 479001600.0;
-    sum = sum * r + 1.0 / 39916800.0;
-    sum = sum * r + 1.0 / 3628800.0;
-    sum = sum * r + 1.0 / 362880.0;
-    sum = sum * r + 1.0 / 40320.0;
-    sum = sum * r + 1.0 / 5040.0;
-    sum = sum * r + 1.0 / 720.0;
-    sum = sum * r + 1.0 / 120.0;
-    sum = sum * r + 1.0 / 24.0;
-    sum = sum * r + 1.0 / 6.0;
-    return sum * r + 0.5;
+    constexpr int last = reach == Reach::tiny ? 7 : reach == Reach::small ? 9 : 13;
+    return r * r * exponential_series<2, last>(r);
 }
 
 /// e^y - 1.
@@ -104,12 +119,12 @@ template <Reach reach>
 ///   y = k ln 2 + r + c,  |r| <= ln(2)/2,  e^y - 1 = 2^k (e^r - 1) + (2^k - 1)
 ///
 /// c is what the reduction rounds away.
-/// Domain: all; |y| is cut off at expm1_furthest.  Near: |y| <= expm1_near.
+/// Domain: all; |y| is cut off at expm1_furthest.
 /// Accuracy: 2 units in the last place.
 template <Reach reach>
 [[gnu::always_inline]] inline double expm1(double y) {
-    if constexpr (reach == Reach::near) {
-        return y + y * y * exponential_tail(y);
+    if constexpr (reach != Reach::far) {
+        return y + exponential_tail<reach>(y);
     } else {
         const double below = y > expm1_furthest ? expm1_furthest : y;
         const double inside = below < -expm1_furthest ? -expm1_furthest : below;
@@ -122,23 +137,9 @@ template <Reach reach>
         const double low = k * ln2_low;
         const double r = high - low;
         const double c = (high - r) - low;
-        const double reduced = r + (c + r * r * exponential_tail(r));
+        const double reduced = r + (c + exponential_tail<reach>(r));
         return power * reduced + (power - 1.0);
     }
-}
-
-/// e^y - 1 for |y| <= expm1_small_reach: the series to y^9, truncation 4.1e-18 relative.
-/// Accuracy: 2 units in the last place.
-[[gnu::always_inline]] inline double expm1_small(double y) {
-    double sum = 1.0 / 362880.0;
-    sum = sum * y + 1.0 / 40320.0;
-    sum = sum * y + 1.0 / 5040.0;
-    sum = sum * y + 1.0 / 720.0;
-    sum = sum * y + 1.0 / 120.0;
-    sum = sum * y + 1.0 / 24.0;
-    sum = sum * y + 1.0 / 6.0;
-    sum = sum * y + 0.5;
-    return y + y * y * sum;
 }
 
 }  // namespace deviascope::elementary

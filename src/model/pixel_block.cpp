@@ -8,12 +8,29 @@ namespace {
 
 using elementary::Reach;
 
-/// Folds the upper half onto the lower until one value is left: a pairwise sum.
-[[gnu::always_inline]] inline double tree_sum(double* __restrict values) {
-    for (std::size_t half = block_size / 2; half >= 8; half /= 2)
-        for (std::size_t p = 0; p < half; ++p) values[p] += values[p + half];
-    return ((values[0] + values[4]) + (values[2] + values[6])) +
-           ((values[1] + values[5]) + (values[3] + values[7]));
+// A block is summed as a binary tree whose upper half is folded onto the lower again and again.
+// The two highest levels are taken in registers, by evaluating four pixels at a time.
+constexpr std::size_t quarter = block_size / 4;
+using QuarterBlock = double[quarter];
+
+/// ((v0 + v2) + (v1 + v3)) of the four quarters.
+[[gnu::always_inline]] inline double fold(double v0, double v1, double v2, double v3) {
+    return (v0 + v2) + (v1 + v3);
+}
+
+template <std::size_t n>
+[[gnu::always_inline]] inline void fold_to(double* __restrict values) {
+    for (std::size_t p = 0; p < n; ++p)
+        values[p] = fold(values[p], values[p + n], values[p + 2 * n], values[p + 3 * n]);
+}
+
+/// The remaining levels.
+[[gnu::always_inline]] inline double sum_of(QuarterBlock& values) {
+    static_assert(quarter == 128);
+    fold_to<32>(values);
+    fold_to<8>(values);
+    return fold(values[0], values[2], values[4], values[6]) +
+           fold(values[1], values[3], values[5], values[7]);
 }
 
 template <Reach reach>
@@ -34,46 +51,43 @@ template <Reach reach>
                                                   std::size_t first,
                                                   const std::array<double, 3>& vector,
                                                   double* __restrict out) {
-    constexpr double bound = elementary::log1p_near * elementary::log1p_near * (1.0 - 1e-12);
+    constexpr auto squared_bound = [](double bound) { return bound * bound * (1.0 - 1e-12); };
     const double squared =
         vector[0] * vector[0] + vector[1] * vector[1] + vector[2] * vector[2];
-    if (squared < bound)
+    if (squared < squared_bound(elementary::small_bound))
+        fill_log1p<Reach::small>(centres, first, vector, out);
+    else if (squared < squared_bound(elementary::log1p_near_bound))
         fill_log1p<Reach::near>(centres, first, vector, out);
     else
         fill_log1p<Reach::far>(centres, first, vector, out);
 }
 
-struct SmallExpm1 {
-    [[gnu::always_inline]] inline double operator()(double y) const {
-        return elementary::expm1_small(y);
-    }
-};
 template <Reach reach>
-struct Expm1 {
-    [[gnu::always_inline]] inline double operator()(double y) const {
-        return elementary::expm1<reach>(y);
-    }
-};
-
-template <typename Function>
 [[gnu::always_inline]] inline PixelSums sums_with(const double* __restrict log_kinematic,
                                                   const double* __restrict log_intrinsic,
                                                   const BinOfWalker& bin,
-                                                  std::size_t first,
-                                                  Function expm1) {
-    alignas(64) double counted[block_size];
-    alignas(64) double exposed[block_size];
+                                                  std::size_t first) {
+    alignas(64) QuarterBlock counted;
+    alignas(64) QuarterBlock exposed;
     const double* __restrict exposure = bin.exposure + first;
     const std::int32_t* __restrict count = bin.count + first;
     const double weight = bin.weight;
-    for (std::size_t p = 0; p < block_size; ++p) {
+    const auto terms_at = [=](std::size_t p) __attribute__((always_inline)) {
         const double y = log_intrinsic[p] - weight * log_kinematic[p];
-        counted[p] = static_cast<double>(count[p]) * y;
-        exposed[p] = exposure[p] * expm1(y);
+        return PixelSums{static_cast<double>(count[p]) * y,
+                         exposure[p] * elementary::expm1<reach>(y)};
+    };
+    for (std::size_t p = 0; p < quarter; ++p) {
+        const PixelSums t0 = terms_at(p);
+        const PixelSums t1 = terms_at(p + quarter);
+        const PixelSums t2 = terms_at(p + 2 * quarter);
+        const PixelSums t3 = terms_at(p + 3 * quarter);
+        counted[p] = fold(t0.counted, t1.counted, t2.counted, t3.counted);
+        exposed[p] = fold(t0.exposed, t1.exposed, t2.exposed, t3.exposed);
     }
     PixelSums sums;
-    sums.counted = tree_sum(counted);
-    sums.exposed = tree_sum(exposed);
+    sums.counted = sum_of(counted);
+    sums.exposed = sum_of(exposed);
     return sums;
 }
 
@@ -81,11 +95,13 @@ template <typename Function>
                                                     const double* __restrict log_intrinsic,
                                                     const BinOfWalker& bin,
                                                     std::size_t first) {
-    if (bin.furthest < elementary::expm1_small_reach)
-        return sums_with(log_kinematic, log_intrinsic, bin, first, SmallExpm1{});
-    if (bin.furthest < elementary::expm1_near)
-        return sums_with(log_kinematic, log_intrinsic, bin, first, Expm1<Reach::near>{});
-    return sums_with(log_kinematic, log_intrinsic, bin, first, Expm1<Reach::far>{});
+    if (bin.furthest < elementary::tiny_bound)
+        return sums_with<Reach::tiny>(log_kinematic, log_intrinsic, bin, first);
+    if (bin.furthest < elementary::small_bound)
+        return sums_with<Reach::small>(log_kinematic, log_intrinsic, bin, first);
+    if (bin.furthest < elementary::expm1_near_bound)
+        return sums_with<Reach::near>(log_kinematic, log_intrinsic, bin, first);
+    return sums_with<Reach::far>(log_kinematic, log_intrinsic, bin, first);
 }
 
 // Compiled for several instruction sets; the widest that the processor has is chosen when the

@@ -1,6 +1,8 @@
 // SPDX-License-Identifier: GPL-2.0-or-later
 #include "model/elementary.h"
 
+#include <algorithm>
+#include <array>
 #include <catch2/catch.hpp>
 #include <cmath>
 #include <vector>
@@ -39,6 +41,19 @@ double hard_argument(Stream& stream, int kind, double furthest) {
     }
 }
 
+/// The series that the loops choose for these bounds.
+double log1p_for(double size, double x) {
+    if (size < elementary::small_bound) return elementary::log1p<Reach::small>(x);
+    return size < elementary::log1p_near_bound ? elementary::log1p<Reach::near>(x)
+                                               : elementary::log1p<Reach::far>(x);
+}
+double expm1_for(double furthest, double y) {
+    if (furthest < elementary::tiny_bound) return elementary::expm1<Reach::tiny>(y);
+    if (furthest < elementary::small_bound) return elementary::expm1<Reach::small>(y);
+    return furthest < elementary::expm1_near_bound ? elementary::expm1<Reach::near>(y)
+                                                   : elementary::expm1<Reach::far>(y);
+}
+
 }  // namespace
 
 TEST_CASE("log1p is exact where it must be", "[model]") {
@@ -55,21 +70,27 @@ TEST_CASE("log1p is exact where it must be", "[model]") {
 TEST_CASE("log1p agrees with long double within two units in the last place", "[model]") {
     // Outside truth: log1pl of the C library, 80-bit.
     Stream stream(31, Purpose::test, 0, 0, 0);
-    double far = 0.0, near = 0.0;
+    double far = 0.0, near = 0.0, small = 0.0;
     for (int draw = 0; draw < 300000; ++draw) {
         const double x = hard_argument(stream, draw % 5, 1.0 - 0x1p-53);
         const long double exact = std::log1p(static_cast<long double>(x));
         far = std::max(far, error_in_ulp(elementary::log1p<Reach::far>(x), exact));
-        if (std::abs(x) <= elementary::log1p_near)
+        if (std::abs(x) <= elementary::log1p_near_bound)
             near = std::max(near, error_in_ulp(elementary::log1p<Reach::near>(x), exact));
+        if (std::abs(x) <= elementary::small_bound)
+            small = std::max(small, error_in_ulp(elementary::log1p<Reach::small>(x), exact));
     }
     CHECK(far < 2.0);
     CHECK(near < 2.0);
+    CHECK(small < 2.0);
+    for (const double x : {elementary::small_bound, -elementary::small_bound})
+        CHECK(error_in_ulp(elementary::log1p<Reach::small>(x),
+                           std::log1p(static_cast<long double>(x))) < 2.0);
 }
 
 TEST_CASE("expm1 is exact where it must be", "[model]") {
     CHECK(elementary::expm1<Reach::far>(0.0) == 0.0);
-    CHECK(elementary::expm1_small(0.0) == 0.0);
+    CHECK(elementary::expm1<Reach::tiny>(0.0) == 0.0);
     CHECK(elementary::expm1<Reach::far>(-1e-300) == -1e-300);
     CHECK(elementary::expm1<Reach::far>(-1e4) == -1.0);
     CHECK(elementary::expm1<Reach::far>(1e4) ==
@@ -80,20 +101,24 @@ TEST_CASE("expm1 is exact where it must be", "[model]") {
 TEST_CASE("expm1 agrees with long double within two units in the last place", "[model]") {
     // Outside truth: expm1l of the C library, 80-bit.
     Stream stream(32, Purpose::test, 0, 0, 0);
-    double far = 0.0, near = 0.0, small = 0.0;
+    double far = 0.0, near = 0.0, small = 0.0, tiny = 0.0;
     for (int draw = 0; draw < 300000; ++draw) {
-        const double furthest = draw % 2 == 0 ? 700.0 : 2.0;
+        const double furthest =
+            std::array{700.0, 2.0, 0.05}[static_cast<std::size_t>(draw % 3)];
         const double y = hard_argument(stream, draw % 5, furthest);
         const long double exact = std::expm1(static_cast<long double>(y));
         far = std::max(far, error_in_ulp(elementary::expm1<Reach::far>(y), exact));
-        if (std::abs(y) <= elementary::expm1_near)
+        if (std::abs(y) <= elementary::expm1_near_bound)
             near = std::max(near, error_in_ulp(elementary::expm1<Reach::near>(y), exact));
-        if (std::abs(y) <= elementary::expm1_small_reach)
-            small = std::max(small, error_in_ulp(elementary::expm1_small(y), exact));
+        if (std::abs(y) <= elementary::small_bound)
+            small = std::max(small, error_in_ulp(elementary::expm1<Reach::small>(y), exact));
+        if (std::abs(y) <= elementary::tiny_bound)
+            tiny = std::max(tiny, error_in_ulp(elementary::expm1<Reach::tiny>(y), exact));
     }
     CHECK(far < 2.0);
     CHECK(near < 2.0);
     CHECK(small < 2.0);
+    CHECK(tiny < 2.0);
 }
 
 TEST_CASE("the widest loop of this processor gives the bits of a plain loop", "[model]") {
@@ -113,7 +138,8 @@ TEST_CASE("the widest loop of this processor gives the bits of a plain loop", "[
             for (std::size_t p = 0; p < half; ++p) v[p] += v[p + half];
         return v[0];
     };
-    for (const double size : {0.003, 0.05, 0.28, 0.7, 0.999999}) {
+    // Sizes on both sides of every choice of series.
+    for (const double size : {0.002, 0.01, 0.05, 0.07, 0.28, 0.7, 0.999999}) {
         const double furthest = -4.75 * std::log1p(-size);
         const BinOfWalker bin{exposure.data(), count.data(), 3.75, furthest};
         const DipoleOfWalker dipole{{0.6 * size, 0.0, -0.8 * size}, {&bin, 1}};
@@ -122,20 +148,16 @@ TEST_CASE("the widest loop of this processor gives the bits of a plain loop", "[
         sum_block({x.data(), y.data(), z.data()}, 0, walker, sums);
         std::vector<double> counted(block_size), exposed(block_size);
         for (std::size_t p = 0; p < block_size; ++p) {
-            const auto log1p = [size](double a) {
-                return size < elementary::log1p_near ? elementary::log1p<Reach::near>(a)
-                                                     : elementary::log1p<Reach::far>(a);
-            };
-            const double intrinsic = log1p(dipole.vector[0] * x[p] + dipole.vector[1] * y[p] +
-                                           dipole.vector[2] * z[p]);
+            const double intrinsic = log1p_for(
+                size,
+                dipole.vector[0] * x[p] + dipole.vector[1] * y[p] + dipole.vector[2] * z[p]);
             const double kinematic =
-                log1p(walker.receding[0] * x[p] + walker.receding[1] * y[p] +
-                      walker.receding[2] * z[p]);
+                log1p_for(size,
+                          walker.receding[0] * x[p] + walker.receding[1] * y[p] +
+                              walker.receding[2] * z[p]);
             const double ratio = intrinsic - 3.75 * kinematic;
             counted[p] = count[p] * ratio;
-            exposed[p] = exposure[p] * (furthest < elementary::expm1_small_reach
-                                            ? elementary::expm1_small(ratio)
-                                            : elementary::expm1<Reach::far>(ratio));
+            exposed[p] = exposure[p] * expm1_for(furthest, ratio);
         }
         INFO("size " << size);
         CHECK(sums[0].counted == tree(counted));
