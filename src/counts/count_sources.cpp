@@ -167,7 +167,12 @@ SurveyCounts count_survey(const SurveyInput& survey,
     std::vector<BinTally> tallies;
     for (const BinInput& bin : survey.bins)
         tallies.emplace_back(fmt::format("survey {}, bin {}", survey.name, bin.name), grid);
-    if (!rows.selecting_bins.empty()) count_rows(selection, cuts, tallies, progress);
+    if (!rows.selecting_bins.empty()) {
+        count_rows(selection, cuts, tallies, progress);
+    } else if (!survey.catalogue.empty()) {
+        cuts.report.warnings.push_back(
+            "the catalogue is not read for counting: every bin has a count map");
+    }
     for (std::size_t bin = 0; bin < survey.bins.size(); ++bin)
         if (survey.bins[bin].counts) count_map_sources(selection, bin, cuts, tallies[bin]);
     return assembled(selection, tallies, cuts);

@@ -67,6 +67,16 @@ double ExposureMap::at(const Direction& direction) const {
     return value_[static_cast<std::size_t>(cells_.pixel_at(in_map))];
 }
 
+void ExposureMap::mark_zero(std::span<const Direction> directions, std::span<char> zero) const {
+    std::vector<Direction> in_map(directions.begin(), directions.end());
+    if (!in_job_frame_)
+        for (Direction& direction : in_map) direction = to_map_ * direction;
+    std::vector<std::int64_t> cell(in_map.size());
+    cells_.pixels_at(in_map, cell);
+    for (std::size_t i = 0; i < cell.size(); ++i)
+        if (value_[static_cast<std::size_t>(cell[i])] == 0.0) zero[i] = 1;
+}
+
 double ExposureMap::in_cell(std::int64_t cell, const Pixelisation& cells) const {
     if (!in_job_frame_) return at(cells.centre(cell));
     const std::int64_t own = cells.nside() == nside() ? cell : cells.parent(cell, cells_);
@@ -93,9 +103,11 @@ bool has_structure_inside_pixels(const ExposureProduct& maps, const Pixelisation
     });
 }
 
-bool is_unexposed(const ExposureProduct& maps, const Direction& direction) {
-    return std::ranges::any_of(
-        maps, [&](const ExposureMap* map) { return map->at(direction) == 0.0; });
+void find_unexposed(const ExposureProduct& maps,
+                    std::span<const Direction> directions,
+                    std::span<char> unexposed) {
+    std::ranges::fill(unexposed, char{0});
+    for (const ExposureMap* map : maps) map->mark_zero(directions, unexposed);
 }
 
 }  // namespace deviascope

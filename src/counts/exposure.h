@@ -5,6 +5,7 @@
 #include <Eigen/Core>
 #include <filesystem>
 #include <optional>
+#include <span>
 #include <vector>
 
 #include "deviascope/sky/healpix_map.h"
@@ -27,6 +28,8 @@ class ExposureMap {
 
     /// Exposure 0 … 1 of the map's pixel that holds a direction of the job's frame.
     double at(const Direction& direction) const;
+    /// Sets `zero` to 1 where the exposure at a direction is 0; leaves the rest.
+    void mark_zero(std::span<const Direction> directions, std::span<char> zero) const;
     /// Exposure of pixel `cell` of a grid that is as fine as the map or finer, in the job's
     /// frame: the value of the map's pixel that holds it, or its centre where frames differ.
     double in_cell(std::int64_t cell, const Pixelisation& cells) const;
@@ -52,7 +55,10 @@ std::vector<double> exposure_on_grid(const ExposureProduct& maps, const Pixelisa
 /// that sources must be judged by their own position.
 bool has_structure_inside_pixels(const ExposureProduct& maps, const Pixelisation& grid);
 
-/// True where the product is 0 at a direction of the job's frame.
-bool is_unexposed(const ExposureProduct& maps, const Direction& direction);
+/// Says of each direction of the job's frame whether the product is 0 there: 1, else 0.
+/// @param unexposed  as long as `directions`
+void find_unexposed(const ExposureProduct& maps,
+                    std::span<const Direction> directions,
+                    std::span<char> unexposed);
 
 }  // namespace deviascope

@@ -52,10 +52,11 @@ std::size_t cut_at(const Selection& selection,
                    const CutTable& cuts,
                    std::size_t bin,
                    std::int64_t pixel,
-                   const Direction& centre) {
+                   const Direction& centre,
+                   bool is_hole) {
     const std::int32_t sky_cut = selection.sky.removed_by(pixel);
     if (sky_cut != SkyCuts::kept) return cuts.first_sky_cut + static_cast<std::size_t>(sky_cut);
-    if (selection.sky.has_hole_at(centre)) return cuts.hole;
+    if (is_hole) return cuts.hole;
     return selection.sky.exposes(bin, pixel, centre) ? none : cuts.bin_exposure[bin];
 }
 
@@ -70,6 +71,40 @@ void warn_of_unresolved_holes(const Selection& selection,
         selection.input.bins[bin].name));
 }
 
+/// A bin's count map and what its sources are judged by.
+struct MapOfBin {
+    const Selection& selection;
+    std::size_t bin;
+    const HealpixMap& map;
+    const Pixelisation& cells;
+};
+
+/// Judges and counts the sources of the map's pixels [first, end).
+void count_cells(
+    const MapOfBin& of, std::int64_t first, std::int64_t end, CutTable& cuts, BinTally& tally) {
+    std::vector<Direction> centre;
+    for (std::int64_t cell = first; cell < end; ++cell) centre.push_back(of.cells.centre(cell));
+    std::vector<char> is_hole(centre.size());
+    of.selection.sky.find_holes(centre, is_hole);
+    for (std::int64_t cell = first; cell < end; ++cell) {
+        const auto at = static_cast<std::size_t>(cell - first);
+        const double value = of.map.value[static_cast<std::size_t>(cell)];
+        const std::int64_t pixel = of.cells.parent(cell, of.selection.grid);
+        const std::size_t cut =
+            cut_at(of.selection, cuts, of.bin, pixel, centre[at], is_hole[at] != 0);
+        if (std::isnan(value) && cut != none) continue;
+        const std::filesystem::path& path = *of.selection.input.bins[of.bin].counts;
+        const std::int64_t n = checked_count(value, path, cell);
+        cuts.report.rows_read += n;
+        if (cut != none) {
+            cuts.remove_rows(cut, n);
+        } else {
+            cuts.report.rows_kept += n;
+            tally.add(pixel, n);
+        }
+    }
+}
+
 }  // namespace
 
 void count_map_sources(const Selection& selection,
@@ -80,20 +115,10 @@ void count_map_sources(const Selection& selection,
     const HealpixMap map = read_count_map(selection, path);
     const Pixelisation cells(map.nside);
     warn_of_unresolved_holes(selection, bin, cells, cuts);
-    for (std::int64_t cell = 0; cell < cells.n_pixels(); ++cell) {
-        const double value = map.value[static_cast<std::size_t>(cell)];
-        const std::int64_t pixel =
-            map.nside == selection.grid.nside() ? cell : cells.parent(cell, selection.grid);
-        const std::size_t cut = cut_at(selection, cuts, bin, pixel, cells.centre(cell));
-        if (std::isnan(value) && cut != none) continue;
-        const std::int64_t n = checked_count(value, path, cell);
-        cuts.report.rows_read += n;
-        if (cut != none) {
-            cuts.remove_rows(cut, n);
-        } else {
-            cuts.report.rows_kept += n;
-            tally.add(pixel, n);
-        }
+    constexpr std::int64_t block = 16384;  // maps are large, lists of centres larger
+    for (std::int64_t first = 0; first < cells.n_pixels(); first += block) {
+        const std::int64_t end = std::min(first + block, cells.n_pixels());
+        count_cells({selection, bin, map, cells}, first, end, cuts, tally);
     }
 }
 

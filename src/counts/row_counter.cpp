@@ -45,7 +45,7 @@ void RowCounter::add(const TableChunk& chunk,
     cuts_.report.rows_read += chunk.n_rows();
 }
 
-/// Directions in the job's frame and pixels of all rows of the chunk.
+/// Where the rows of the chunk are: directions in the job's frame, pixels, holes.
 void RowCounter::locate(const TableChunk& chunk) {
     const std::vector<double>& lon = chunk.column[selection_.rows.lon];
     const std::vector<double>& lat = chunk.column[selection_.rows.lat];
@@ -58,6 +58,8 @@ void RowCounter::locate(const TableChunk& chunk) {
         if (!is_bad_[row]) direction_[row] = to_job_ * direction_of(lon[row], lat[row]);
     }
     selection_.grid.pixels_at(direction_, pixel_);
+    is_hole_.resize(lon.size());
+    selection_.sky.find_holes(direction_, is_hole_);
 }
 
 /// The line of the table of cuts that removes a row; none: the row is counted.
@@ -78,40 +80,58 @@ std::size_t RowCounter::cut_of(const TableChunk& chunk, std::size_t row) {
     const std::int32_t sky_cut = selection_.sky.removed_by(pixel_[row]);
     if (sky_cut != SkyCuts::kept)
         return cuts_.first_sky_cut + static_cast<std::size_t>(sky_cut);
-    if (selection_.sky.has_hole_at(direction_[row])) return cuts_.hole;
+    if (is_hole_[row]) return cuts_.hole;
     return cut_by_bins(chunk, row);
 }
 
 /// Counts a row of a kept pixel in its bin; else says what removes it.
 std::size_t RowCounter::cut_by_bins(const TableChunk& chunk, std::size_t row) {
-    std::size_t home = none;
-    std::size_t missing = none;
-    std::size_t unexposed = none;
+    std::size_t n_bins = 0;
+    std::size_t bin = none;
+    for (const std::size_t candidate : selection_.rows.selecting_bins) {
+        const bool inside = holds(selection_.rows.bins[candidate], chunk, row);
+        n_bins += inside ? 1 : 0;
+        bin = inside ? candidate : bin;
+    }
+    if (n_bins == 0) return cut_of_homeless(chunk, row);
+    if (n_bins > 1) bin = exposed_bin(chunk, row);
+    if (!selection_.sky.exposes(bin, pixel_[row], direction_[row]))
+        return cuts_.bin_exposure[bin];
+    tallies_[bin].add(pixel_[row]);
+    return none;
+}
+
+/// The line of a row in no bin: a value is missing where no other value fails, or none fits.
+std::size_t RowCounter::cut_of_homeless(const TableChunk& chunk, std::size_t row) const {
     for (const std::size_t bin : selection_.rows.selecting_bins) {
         const std::vector<ColumnRange>& ranges = selection_.rows.bins[bin];
         const Verdict verdict = judge(ranges, chunk, row);
-        if (verdict.kind == Verdict::Kind::outside) continue;
-        if (verdict.kind == Verdict::Kind::missing) {
-            if (missing == none) missing = cuts_.missing[ranges[verdict.range].property];
-        } else if (!selection_.sky.exposes(bin, pixel_[row], direction_[row])) {
-            if (unexposed == none) unexposed = cuts_.bin_exposure[bin];
-        } else if (home == none) {
+        if (verdict.kind == Verdict::Kind::missing)
+            return cuts_.missing[ranges[verdict.range].property];
+    }
+    return cuts_.no_bin;
+}
+
+/// Of several bins whose ranges hold a row, the first that is exposed there (else the first);
+/// a second one is noted as a fault.
+std::size_t RowCounter::exposed_bin(const TableChunk& chunk, std::size_t row) {
+    std::size_t first = none;
+    std::size_t home = none;
+    for (const std::size_t bin : selection_.rows.selecting_bins) {
+        if (!holds(selection_.rows.bins[bin], chunk, row)) continue;
+        if (first == none) first = bin;
+        if (!selection_.sky.exposes(bin, pixel_[row], direction_[row])) continue;
+        if (home == none) {
             home = bin;
-        } else {
-            in_two_bins_.add([&] {
-                const auto& bins = selection_.input.bins;
-                return fmt::format(
-                    "{} ({} and {})", place(row), bins[home].name, bins[bin].name);
-            });
-            break;
+            continue;
         }
+        in_two_bins_.add([&] {
+            const auto& bins = selection_.input.bins;
+            return fmt::format("{} ({} and {})", place(row), bins[home].name, bins[bin].name);
+        });
+        break;
     }
-    if (home != none) {
-        tallies_[home].add(pixel_[row]);
-        return none;
-    }
-    if (unexposed != none) return unexposed;
-    return missing != none ? missing : cuts_.no_bin;
+    return home == none ? first : home;
 }
 
 std::string RowCounter::place(std::size_t row) const {

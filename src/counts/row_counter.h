@@ -40,6 +40,8 @@ class RowCounter {
     void locate(const TableChunk& chunk);
     std::size_t cut_of(const TableChunk& chunk, std::size_t row);
     std::size_t cut_by_bins(const TableChunk& chunk, std::size_t row);
+    std::size_t cut_of_homeless(const TableChunk& chunk, std::size_t row) const;
+    std::size_t exposed_bin(const TableChunk& chunk, std::size_t row);
     std::string place(std::size_t row) const;
 
     const Selection selection_;
@@ -53,6 +55,7 @@ class RowCounter {
     std::vector<Direction> direction_;  // in the job's frame; of bad positions arbitrary
     std::vector<std::int64_t> pixel_;
     std::vector<char> is_bad_;
+    std::vector<char> is_hole_;
     std::int64_t first_row_ = 0;
     const std::filesystem::path* path_ = nullptr;
     const TableReader* reader_ = nullptr;

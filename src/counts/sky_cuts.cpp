@@ -16,7 +16,6 @@ SkyCuts::SkyCuts(const SurveyInput& survey, const Pixelisation& grid, Frame fram
         survey_maps_.push_back(&survey_map_.front());
     }
     survey_structure_ = deviascope::has_structure_inside_pixels(survey_maps_, grid);
-    needs_directions_ = survey_structure_;
     survey_exposure_ = exposure_on_grid(survey_maps_, grid);
     remove_excluded(survey.exclude, frame);
     const auto exposure_cut = static_cast<std::int32_t>(survey.exclude.size());
@@ -53,7 +52,6 @@ void SkyCuts::add_bin(const SurveyInput& survey, const BinInput& bin, Frame fram
         OwnExposure& own = own_.emplace_back(
             OwnExposure{ExposureMap(*bin.exposure, survey.map_frame, frame), false, {}, 0});
         own.structure = deviascope::has_structure_inside_pixels({&own.map}, grid_);
-        needs_directions_ = needs_directions_ || own.structure;
         ExposureProduct maps = survey_maps_;
         maps.push_back(&own.map);
         const std::vector<double> exposure = exposure_on_grid(maps, grid_);
@@ -86,6 +84,10 @@ std::size_t SkyCuts::add_footprint(const std::vector<double>& exposure,
     if (same != footprints_.end()) return static_cast<std::size_t>(same - footprints_.begin());
     footprints_.push_back(std::move(made));
     return footprints_.size() - 1;
+}
+
+void SkyCuts::find_holes(std::span<const Direction> positions, std::span<char> is_hole) const {
+    find_unexposed(survey_structure_ ? survey_maps_ : ExposureProduct{}, positions, is_hole);
 }
 
 bool SkyCuts::exposes(std::size_t bin, std::int64_t pixel, const Direction& direction) const {

@@ -5,6 +5,7 @@
 #include <cstdint>
 #include <deque>
 #include <map>
+#include <span>
 #include <string>
 #include <vector>
 
@@ -31,17 +32,12 @@ class SkyCuts {
     /// The same for all pixels, in RING order.
     const std::vector<std::int32_t>& removed_by() const { return removed_by_; }
 
-    /// True where sources must be judged by their own position too (`has_hole_at`).
-    bool has_structure_inside_pixels() const { return survey_structure_; }
-    /// True where the survey's exposure is 0 at a position inside a kept pixel.
-    bool has_hole_at(const Direction& direction) const {
-        return survey_structure_ && is_unexposed(survey_maps_, direction);
-    }
+    /// Says of each position whether the survey's exposure is 0 there although its pixel may be
+    /// kept: 1, else 0.
+    void find_holes(std::span<const Direction> positions, std::span<char> is_hole) const;
 
     /// True where a bin's own exposure is above 0 at a position inside a kept pixel.
     bool exposes(std::size_t bin, std::int64_t pixel, const Direction& direction) const;
-    /// True if any source needs its direction, not its pixel alone.
-    bool needs_directions() const { return needs_directions_; }
     /// Maps that decide about a bin: the survey's, the bin's.
     ExposureProduct maps_of_bin(std::size_t bin) const;
 
@@ -69,7 +65,6 @@ class SkyCuts {
     std::map<std::string, const OwnExposure*> own_by_path_;
     std::vector<const OwnExposure*> own_of_bin_;  // null: none
     bool survey_structure_ = false;
-    bool needs_directions_ = false;
     std::vector<std::int32_t> removed_by_;  // n_pixels
     std::vector<double> survey_exposure_;   // n_pixels
     std::vector<Footprint> footprints_;

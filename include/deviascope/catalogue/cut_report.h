@@ -11,7 +11,7 @@ namespace deviascope {
 /// One line of the table of cuts: what a cut found and what it removed.
 struct CutLine {
     std::string name;                 ///< in the job file's words
-    std::int64_t rows_removed = 0;    ///< catalogue rows
+    std::int64_t rows_removed = 0;    ///< catalogue rows, and sources of count maps
     std::int64_t pixels_removed = 0;  ///< pixels of the job's grid
 };
 

@@ -131,3 +131,13 @@ TEST_CASE("count maps that do not fit are refused", "[counts]") {
                    Catch::Contains("bin mapped: pixel 3: there are more than 4294967295"));
     }
 }
+
+TEST_CASE("a catalogue that no bin selects from is not read, and this is said", "[counts]") {
+    SmallSurvey survey;
+    survey.add_catalogue("a.csv", "not,a,number,0\n");
+    add_map_bin(survey, std::vector<double>(12, 1.0));
+    const SurveyCounts counts = survey.count(1);
+    CHECK(counts.cuts.rows_read == 12);
+    REQUIRE(counts.cuts.warnings.size() == 1);
+    CHECK_THAT(counts.cuts.warnings[0], Catch::Contains("the catalogue is not read"));
+}

@@ -268,6 +268,22 @@ TEST_CASE("bins with the same effective exposure share a footprint", "[counts]")
     CHECK(counts.cuts.rows_kept == 4);
 }
 
+TEST_CASE("a hole of a bin's own exposure drops sources of that bin alone", "[counts]") {
+    SmallSurvey survey;
+    survey.add_catalogue("a.csv", "2,0,1,0\n2,0,5,0\n-2,0,5,0\n");
+    survey.add_bin("faint", {{"flux", 0.0, 2.0}});
+    survey.add_bin("bright", {{"flux", 2.0, 9.0}});
+    const Pixelisation fine(8);
+    std::vector<double> map(768, 1.0);
+    map[static_cast<std::size_t>(fine.pixel_at(direction_of(2.0, 0.0)))] = 0.0;
+    survey.input.bins[1].exposure = survey.add_map("bright.fits", map);
+    const SurveyCounts counts = survey.count(1);
+    CHECK(full_sky(counts, 0, 12)[4] == 1);
+    CHECK(full_sky(counts, 1, 12)[4] == 1);
+    CHECK(removed(counts, "exposure of bin bright 0").first == 1);
+    CHECK(footprint_of(counts, 1).exposure[4] == 63.0 / 64.0);
+}
+
 TEST_CASE("holes that survey and bin share are not counted twice", "[counts]") {
     // The mean of the product, not the product of the means: half of pixel 4 is unobserved.
     SmallSurvey survey;
