@@ -10,13 +10,17 @@ namespace deviascope {
 namespace {
 
 constexpr double pi = std::numbers::pi;
-constexpr int coarsest_nside = 8, finest_nside = 64;
+constexpr int coarsest_nside = 8, coarsest_table_nside = 32, finest_nside = 64;
 constexpr int block_nside = 4;
 constexpr double kernel_reach = 5.0;  // bandwidths; what lies beyond is 4e-6 of the mass
 constexpr double lobe_cut = 0.5 * 2.5 * 2.5;
 constexpr double gaussian_lobe = 0.7506;  // t = 1 - x / (exp(x) - 1), x = lobe_cut t
 constexpr int rounds_of_scale = 3;
 constexpr int steps_to_peak = 20;
+
+double expm1_of(double x) {
+    return std::expm1(x);
+}
 
 /// Side of a cell of a given nside, radians.
 double cell_side(int nside) {
@@ -116,12 +120,14 @@ void SphereCells::close_block(Eigen::Index first, Eigen::Index last) {
 }
 
 SphereKernel::SphereKernel(std::span<const Direction> draws, double bandwidth)
-    : cells_(draws, nside_for(0.5 * bandwidth, coarsest_nside)) {
-    const double width = std::max(bandwidth, cell_side(finest_nside));
-    concentration_ = 1.0 / (width * width);
-    norm_ = concentration_ / (2.0 * pi * -std::expm1(-2.0 * concentration_));
+    : cells_(draws, nside_for(0.7 * bandwidth, coarsest_nside)),
+      bandwidth_(std::max(bandwidth, cell_side(finest_nside))),
+      concentration_(1.0 / (bandwidth_ * bandwidth_)) {
+    const Eigen::ArrayXd own = concentration_ * cells_.mean().square().rowwise().sum().sqrt();
+    height_ = cells_.weight() * own / (-2.0 * pi * (-2.0 * own).unaryExpr(&expm1_of)) *
+              (concentration_ - own).exp();
     for (const SphereCells::Block& block : cells_.blocks()) {
-        const double reach = kernel_reach * width + block.radius;
+        const double reach = kernel_reach * bandwidth_ + block.radius;
         block_cosine_.push_back(reach < pi ? std::cos(reach) : -2.0);
     }
 }
@@ -132,9 +138,9 @@ void SphereKernel::visit_near(const Direction& direction, const Visit& visit) co
         const SphereCells::Block& cells = cells_.blocks()[block];
         if (cells.centre.dot(direction) < block_cosine_[block]) continue;
         const auto mean = cells_.mean().middleRows(cells.first, cells.size);
-        const auto weight = cells_.weight().segment(cells.first, cells.size);
+        const auto height = height_.segment(cells.first, cells.size);
         visit(mean,
-              weight *
+              height *
                   (concentration_ * (mean.col(0) * direction.x() + mean.col(1) * direction.y() +
                                      mean.col(2) * direction.z() - 1.0))
                       .exp());
@@ -144,7 +150,7 @@ void SphereKernel::visit_near(const Direction& direction, const Visit& visit) co
 double SphereKernel::at(const Direction& direction) const {
     double sum = 0.0;
     visit_near(direction, [&](const auto&, const auto& term) { sum += term.sum(); });
-    return norm_ * sum;
+    return sum;
 }
 
 double SphereKernel::at(const Direction& direction, Eigen::Vector3d& gradient) const {
@@ -155,8 +161,8 @@ double SphereKernel::at(const Direction& direction, Eigen::Vector3d& gradient) c
         sum += value.sum();
         pull += mean.matrix().transpose() * value.matrix();
     });
-    gradient = norm_ * concentration_ * (pull - pull.dot(direction) * direction);
-    return norm_ * sum;
+    gradient = concentration_ * (pull - pull.dot(direction) * direction);
+    return sum;
 }
 
 Direction SphereKernel::peak() const {
@@ -180,8 +186,9 @@ Direction SphereKernel::peak() const {
 SphereDensity::SphereDensity(std::span<const Direction> draws,
                              double mean_length,
                              double effective_draws)
-    : kernel_(settled_kernel(draws, mean_length, effective_draws)), grid_(finest_nside) {
-    centre_ = grid_.centres();
+    : kernel_(settled_kernel(draws, mean_length, effective_draws)),
+      grid_(nside_for(0.25 * kernel_.bandwidth(), coarsest_table_nside)),
+      centre_(grid_.centres()) {
     value_.resize(std::ssize(centre_));
     gradient_.resize(3, std::ssize(centre_));
     for (Eigen::Index pixel = 0; pixel < value_.size(); ++pixel) {

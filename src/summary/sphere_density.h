@@ -37,9 +37,11 @@ class SphereCells {
 
 /// Sum of von Mises-Fisher kernels of one width over cells of draws.
 ///
-///   f(n) = sum_c w_c kappa / (2 pi (1 - exp(-2 kappa))) exp(kappa (n.v_c - 1)),
-///   kappa = 1 / h^2,  v_c the mean vector of the draws in the cell (exact to second order in
-///   the size of the cell)
+///   f(n) = sum_c w_c k_c / (2 pi (1 - exp(-2 k_c))) exp(kappa n.v_c - k_c),
+///   kappa = 1 / h^2,  v_c the mean vector of the draws in the cell, k_c = kappa |v_c|
+///
+/// Each cell's kernel integrates to 1 and stands at the mean of its draws; the cells, at most
+/// 0.7 h wide, blur it by at most 4 % of h^2.
 ///
 /// Source: Hall, Watson & Cabrera 1987, Biometrika 74, 751 (from memory).
 class SphereKernel {
@@ -53,13 +55,15 @@ class SphereKernel {
     /// Where the density is greatest.
     Direction peak() const;
     const SphereCells& cells() const { return cells_; }
+    double bandwidth() const { return bandwidth_; }  ///< radians
 
   private:
     template <class Visit>
     void visit_near(const Direction& direction, const Visit& visit) const;
 
     SphereCells cells_;
-    double concentration_, norm_;
+    double bandwidth_, concentration_;
+    Eigen::ArrayXd height_;             ///< of each cell's kernel, times its weight
     std::vector<double> block_cosine_;  ///< a block matters where the cosine is above this
 };
 
@@ -72,9 +76,9 @@ class SphereKernel {
 ///     0.7506 sigma^2 (derived in DEVELOPERS.md).
 ///
 /// h is at least a cell of nside 64 (0.92 deg). Values and gradients are tabulated on a HEALPix
-/// grid of nside 32 or 64 for levels and areas; `at` is the kernel sum itself.
-/// Source of the first scale: Banerjee, Dhillon, Ghosh & Sra 2005, J. Mach. Learn. Res. 6,
-/// 1345, Eq. 4.4 for three dimensions (from memory).
+/// grid of nside 32 or 64 (cells below h/4) for levels and areas; `at` is the kernel sum
+/// itself. Source of the first scale: Banerjee, Dhillon, Ghosh & Sra 2005, J. Mach. Learn. Res.
+/// 6, 1345, Eq. 4.4 for three dimensions (from memory).
 class SphereDensity : public SkyDensity {
   public:
     SphereDensity(std::span<const Direction> draws, double mean_length, double effective_draws);

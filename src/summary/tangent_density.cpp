@@ -16,8 +16,10 @@ constexpr Eigen::Index most_cells = 1024;
 constexpr double tail_probability = 0.995;
 constexpr double tail_deviations = 10.0;
 
-/// Median radius of a two-dimensional standard normal, sqrt(2 ln 2).
-const double normal_median_radius = std::sqrt(2.0 * std::log(2.0));
+constexpr double central_share = 0.9;
+/// Variance of the central 90 % of a two-dimensional standard normal: 1 + 0.1 ln(0.1) / 0.9.
+constexpr double central_variance = 0.7441572118;
+constexpr int rounds_of_whitening = 3;
 
 /// Unit vector at right angles to another.
 Direction right_angle_to(const Direction& direction) {
@@ -26,12 +28,17 @@ Direction right_angle_to(const Direction& direction) {
     return helper.cross(direction).normalized();
 }
 
-std::vector<double> sorted_radii(const Eigen::Matrix2Xd& points) {
+std::vector<double> radii_of(const Eigen::Matrix2Xd& points) {
     std::vector<double> radius(static_cast<std::size_t>(points.cols()));
-    for (std::size_t draw = 0; draw < radius.size(); ++draw)
-        radius[draw] = points.col(static_cast<Eigen::Index>(draw)).norm();
-    std::sort(radius.begin(), radius.end());
+    Eigen::Map<Eigen::RowVectorXd>(radius.data(), points.cols()) = points.colwise().norm();
     return radius;
+}
+
+double radius_holding(std::vector<double> radius, double probability) {
+    const auto place =
+        static_cast<std::ptrdiff_t>(draws_holding(radius.size(), probability)) - 1;
+    std::nth_element(radius.begin(), radius.begin() + place, radius.end());
+    return radius[static_cast<std::size_t>(place)];
 }
 
 /// Convolution of each row of nodes (second index) with a symmetric kernel, zero outside.
@@ -102,23 +109,37 @@ TangentDensity::TangentDensity(std::span<const Direction> draws,
     Eigen::Matrix2Xd points(2, std::ssize(draws));
     for (Eigen::Index draw = 0; draw < points.cols(); ++draw)
         points.col(draw) = plane_.project(draws[static_cast<std::size_t>(draw)]);
-    whiten(points);
-    points = whitening_ * (points.colwise() - mean_);
-
-    const std::vector<double> radius = sorted_radii(points);
-    const double robust_sd = std::min(1.0, median_of(radius) / normal_median_radius);
-    const double bandwidth = 1.2 * std::pow(effective_draws, -1.0 / 6.0) * robust_sd;
+    points = whiten(points);
+    const double bandwidth = 1.2 * std::pow(effective_draws, -1.0 / 6.0);
     lay_grid(points,
              bandwidth,
-             std::max(tail_deviations * robust_sd, quantile_of(radius, tail_probability)));
+             std::max(tail_deviations, radius_holding(radii_of(points), tail_probability)));
     smooth(points, bandwidth);
 }
 
-void TangentDensity::whiten(const Eigen::Matrix2Xd& plane) {
-    mean_ = plane.rowwise().mean();
-    const Eigen::Matrix2Xd centred = plane.colwise() - mean_;
-    const Eigen::Matrix2d covariance =
-        centred * centred.transpose() / static_cast<double>(plane.cols());
+Eigen::Matrix2Xd TangentDensity::whiten(const Eigen::Matrix2Xd& plane) {
+    Eigen::VectorXd central = Eigen::VectorXd::Ones(plane.cols());
+    double scale = 1.0;
+    Eigen::Matrix2Xd whitened;
+    for (int round = 0; round <= rounds_of_whitening; ++round) {
+        const Eigen::Vector2d mean = plane * central / central.sum();
+        const Eigen::Matrix2Xd centred = plane.colwise() - mean;
+        set_whitening(
+            mean,
+            centred * central.asDiagonal() * centred.transpose() / (central.sum() * scale));
+        whitened = whitening_ * centred;
+        const std::vector<double> radius = radii_of(whitened);
+        const double limit = radius_holding(radius, central_share);
+        for (Eigen::Index draw = 0; draw < central.size(); ++draw)
+            central[draw] = radius[static_cast<std::size_t>(draw)] <= limit ? 1.0 : 0.0;
+        scale = central_variance;
+    }
+    return whitened;
+}
+
+void TangentDensity::set_whitening(const Eigen::Vector2d& mean,
+                                   const Eigen::Matrix2d& covariance) {
+    mean_ = mean;
     const Eigen::SelfAdjointEigenSolver<Eigen::Matrix2d> axes(covariance);
     // Draws along a line or in one point: as wide as unit vectors can resolve.
     const double least = std::max(1e-12 * axes.eigenvalues()[1], 1e-32);

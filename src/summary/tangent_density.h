@@ -23,12 +23,14 @@ class TangentPlane {
 /// Density of a compact posterior: Gaussian kernel in whitened Lambert coordinates about the
 /// mean direction, binned and smoothed on a grid, read by bilinear interpolation.
 ///
-///   bandwidth  h = 1.2 n_eff^(-1/6) min(1, median radius / sqrt(2 ln 2))    (whitened units)
+///   bandwidth  h = 1.2 n_eff^(-1/6)    in whitened units
 ///
-/// The last factor is 1 for a Gaussian and keeps heavy tails from swelling the core. There is
-/// no smallest bandwidth: the grid follows the draws to any scale. Cell h/4, at most 1024 cells
-/// a side; draws farther out than ten robust standard deviations and the 99.5 % radius count as
-/// draws but carry no density (levels up to P = 0.99 are not affected).
+/// Whitening: mean and covariance of the central 90 % of the draws (by whitened radius, three
+/// rounds), scaled to those of a whole Gaussian, so that a few far draws do not swell the core
+/// (Rousseeuw & Van Driessen 1999, Technometrics 41, 212, "concentration steps"; from memory).
+/// There is no smallest bandwidth: the grid follows the draws to any scale. Cell h/4, at most
+/// 1024 cells a side; draws farther out than ten standard deviations and the 99.5 % radius
+/// count as draws but carry no density (levels up to P = 0.99 are not affected).
 class TangentDensity : public SkyDensity {
   public:
     TangentDensity(std::span<const Direction> draws,
@@ -47,7 +49,9 @@ class TangentDensity : public SkyDensity {
     };
     /// False outside the grid.
     bool locate(const Eigen::Vector2d& whitened, Place& place) const;
-    void whiten(const Eigen::Matrix2Xd& plane);
+    /// The same points, whitened.
+    Eigen::Matrix2Xd whiten(const Eigen::Matrix2Xd& plane);
+    void set_whitening(const Eigen::Vector2d& mean, const Eigen::Matrix2d& covariance);
     void lay_grid(const Eigen::Matrix2Xd& whitened, double bandwidth, double half_width);
     void smooth(const Eigen::Matrix2Xd& whitened, double bandwidth);
 
