@@ -46,7 +46,7 @@ std::vector<std::string> shortfalls_of(const SamplingSummary& sampling, double w
     using S = ScalarDiagnostics;
     const S* walker = largest(sampling, [](const S& s) { return s.walker_rhat; });
     const S* replicate = largest(sampling, [](const S& s) { return s.replicate_rhat; });
-    const S* draws = largest(sampling, [](const S& s) { return -std::min(s.bulk, s.tail); });
+    const S* draws = largest(sampling, [](const S& s) { return -s.effective_draws(); });
     std::vector<std::string> lacks;
     if (walker && !(walker->walker_rhat < rule.walker_rhat_below))
         lacks.push_back(fmt::format("walker R-hat {:.3f} of {} (wanted below {})",
@@ -58,12 +58,11 @@ std::vector<std::string> shortfalls_of(const SamplingSummary& sampling, double w
                                     replicate->replicate_rhat,
                                     replicate->name,
                                     rule.replicate_rhat_below));
-    if (draws && std::min(draws->bulk, draws->tail) < rule.effective_draws_at_least)
-        lacks.push_back(
-            fmt::format("{} effective draws of {} ({} wanted)",
-                        short_number(std::floor(std::min(draws->bulk, draws->tail))),
-                        draws->name,
-                        short_number(rule.effective_draws_at_least)));
+    if (draws && draws->effective_draws() < rule.effective_draws_at_least)
+        lacks.push_back(fmt::format("{} effective draws of {} ({} wanted)",
+                                    short_number(std::floor(draws->effective_draws())),
+                                    draws->name,
+                                    short_number(rule.effective_draws_at_least)));
     return lacks;
 }
 

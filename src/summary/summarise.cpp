@@ -71,11 +71,7 @@ SamplingSummary sampling_of(const Chain& chain,
     sampling.replicates = chain.draws.n_replicates;
     sampling.walkers = chain.draws.n_walkers;
     sampling.n_draws = rows_of(chain.draws).rows();
-    diagnostics.resize(monitored.size());
-    parallel_for(monitored.size(), threads, [&](std::size_t scalar) {
-        diagnostics[scalar] =
-            diagnose(monitored[scalar], chain.draws, chain.outcome.store_every);
-    });
+    diagnostics = diagnose(monitored, chain.draws, chain.outcome.store_every, threads);
     std::copy_if(diagnostics.begin(),
                  diagnostics.end(),
                  std::back_inserter(sampling.scalars),
@@ -88,7 +84,7 @@ SamplingSummary sampling_of(const Chain& chain,
     sampling.replicate_rhat_max = extreme(
         all, [](const S& s) { return s.replicate_rhat; }, larger);
     sampling.effective_draws_min = extreme(
-        all, [](const S& s) { return std::min(s.bulk, s.tail); }, std::less<double>());
+        all, [](const S& s) { return s.effective_draws(); }, std::less<double>());
     sampling.autocorrelation_steps_max = extreme(
         all, [](const S& s) { return s.autocorrelation_steps; }, larger);
     const auto& tried = chain.outcome.tally.tried;
