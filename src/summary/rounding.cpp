@@ -23,7 +23,6 @@ int decimals_for(double size, int digits) {
 std::string set_apart(std::string digits) {
     const std::size_t end = std::min(digits.find('.'), digits.size());
     const std::size_t begin = digits.starts_with('-') ? 1 : 0;
-    if (end - begin < 5) return digits;  // 1234 reads well as it is
     for (std::size_t place = end; place > begin + 3;) digits.insert(place -= 3, " ");
     return digits;
 }

@@ -111,32 +111,39 @@ double effective_directions(const VectorParameter& vector,
 
 // ---- vectors ----
 
-std::string sd_text(const GaussianPrior& prior) {
-    const Eigen::Vector3d sd = prior.covariance.diagonal().cwiseSqrt();
-    const bool is_isotropic =
-        prior.covariance.isApprox(sd[0] * sd[0] * Eigen::Matrix3d::Identity(), 1e-12);
-    if (is_isotropic) return fmt::format("sd {:.4g} a component", sd[0]);
-    return fmt::format("sd {:.4g}, {:.4g}, {:.4g} along x, y, z", sd[0], sd[1], sd[2]);
-}
-
+/// A prior's density in words and numbers.
 struct PriorWords {
+    std::string unit;  ///< ` c` for the velocity
+
     std::string operator()(const UniformVectorPrior& prior) const {
-        return fmt::format("constant inside a ball of radius {:g}", prior.max);
+        return fmt::format("constant inside a ball of radius {:g}{}", prior.max, unit);
     }
     std::string operator()(const UniformAmplitudePrior& prior) const {
-        return fmt::format("uniform in amplitude up to {:g}, any direction alike", prior.max);
+        return fmt::format(
+            "uniform in amplitude up to {:g}{}, all directions alike", prior.max, unit);
     }
     std::string operator()(const GaussianPrior& prior) const {
-        if (prior.mean.isZero(0.0)) return "Gaussian about zero, " + sd_text(prior);
-        return fmt::format(
-            "Gaussian about a vector of length {:.6g}, {}", prior.mean.norm(), sd_text(prior));
+        const std::string centre =
+            prior.mean.isZero(0.0)
+                ? "zero"
+                : fmt::format("a vector of length {:.6g}{}", prior.mean.norm(), unit);
+        return "Gaussian about " + centre + ", " + widths(prior.covariance);
     }
     std::string operator()(const AxisPrior& prior) const {
-        return fmt::format("along a fixed direction, uniform in amplitude up to {:g}",
-                           prior.max);
+        return fmt::format(
+            "along a fixed direction, uniform in amplitude up to {:g}{}", prior.max, unit);
     }
     std::string operator()(const FixedPrior& prior) const {
-        return fmt::format("fixed at length {:g}", prior.value.norm());
+        return fmt::format("fixed at length {:g}{}", prior.value.norm(), unit);
+    }
+
+  private:
+    std::string widths(const Eigen::Matrix3d& covariance) const {
+        const Eigen::Vector3d sd = covariance.diagonal().cwiseSqrt();
+        if (covariance.isApprox(sd[0] * sd[0] * Eigen::Matrix3d::Identity(), 1e-12))
+            return fmt::format("sd {:.4g}{} a component", sd[0], unit);
+        return fmt::format(
+            "sd {:.4g}, {:.4g}, {:.4g}{} along x, y, z", sd[0], sd[1], sd[2], unit);
     }
 };
 
@@ -210,8 +217,6 @@ std::vector<double> amplitudes_of(const Rows& rows, Eigen::Index first) {
 VectorSummary vector_of(const Rows& rows,
                         const ParameterSpace& space,
                         std::size_t index,
-                        Frame frame,
-                        double effective_draws,
                         std::uint64_t seed) {
     const VectorParameter& vector = space.vectors()[index];
     const VectorPrior& prior = space.vector_prior(index);
@@ -219,16 +224,12 @@ VectorSummary vector_of(const Rows& rows,
     VectorSummary summary;
     summary.name = dot == std::string::npos ? vector.name : vector.name.substr(dot + 1);
     summary.prior = prior.name();
-    summary.prior_description = std::visit(PriorWords{}, prior.kind());
+    summary.prior_description = std::visit(PriorWords{index == 0 ? " c" : ""}, prior.kind());
     summary.prior_median_amplitude = prior.median_amplitude(seed);
     summary.amplitude_free = vector.amplitude_free;
     summary.direction_free = vector.direction_free;
     summary.amplitude = estimate_of(amplitudes_of(rows, vector.first));
     find_moments(rows, vector.first, summary);
-    if (vector.direction_free)
-        find_direction(directions_of(rows, vector.first), frame, effective_draws, summary);
-    else if (!summary.mean.isZero(0.0))
-        place(summary.mean, frame, summary);
     return summary;
 }
 

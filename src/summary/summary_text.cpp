@@ -52,7 +52,7 @@ std::string head(const Summary& summary) {
 
 std::string warnings_block(const std::vector<std::string>& warnings) {
     if (warnings.empty()) return "No warnings.\n";
-    std::string text = heading("WARNINGS", '!');
+    std::string text = heading(fmt::format("WARNINGS ({})", warnings.size()), '!');
     for (std::size_t number = 0; number < warnings.size(); ++number)
         text += folded(warnings[number], 5, fmt::format("{:>2}.  ", number + 1));
     return text;
@@ -88,52 +88,50 @@ std::string amplitude_table(const VectorSummary& vector) {
     return table.text();
 }
 
-/// Numbers of a place on the sky, rounded by the radius of its region.
-std::vector<std::string> place_cells(const std::string& frame,
-                                     const std::optional<LonLat>& place,
-                                     const std::optional<SkyRegion>& region) {
-    if (!place) return {frame, "-", "-"};
-    constexpr double tenth_of_degree = 1.0;
-    const double radius = region && region->radius_deg ? *region->radius_deg : tenth_of_degree;
-    return {frame, rounded(place->lon_deg, radius), rounded(place->lat_deg, radius)};
-}
-
-void append_region(std::vector<std::string>& cells,
-                   const std::string& name,
-                   const std::optional<SkyRegion>& region) {
-    cells.push_back(name);
-    cells.push_back(region ? short_number(region->area_deg2) : "-");
-    cells.push_back(region && region->radius_deg ? short_number(*region->radius_deg) : "-");
+/// A place on the sky, rounded by the standard deviation along one coordinate.
+void place_row(TextTable& table,
+               const std::string& frame,
+               const std::optional<LonLat>& place,
+               const std::optional<SkyRegion>& region) {
+    if (!place) return table.row({frame, "-", "-"});
+    // 68.27 % of a circular Gaussian lie within 1.515 standard deviations.
+    const double sd = region && region->radius_deg ? *region->radius_deg / 1.515 : 1.0;
+    table.row({frame, rounded(place->lon_deg, sd), rounded(place->lat_deg, sd)});
 }
 
 std::string direction_table(const VectorSummary& vector) {
-    TextTable table("lrrrrr");
-    table.row({"direction",
-               "longitude (deg)",
-               "latitude (deg)",
-               "region",
-               "area (sq deg)",
-               "radius (deg)"});
-    std::vector<std::string> galactic =
-        place_cells("galactic", vector.galactic, vector.region68);
-    std::vector<std::string> icrs = place_cells("ICRS", vector.icrs, vector.region68);
-    append_region(galactic, "68 %", vector.region68);
-    append_region(icrs, "95 %", vector.region95);
-    table.row(galactic);
-    table.row(icrs);
+    TextTable table("lrr");
+    table.row({"mean direction", "longitude (deg)", "latitude (deg)"});
+    place_row(table, "galactic (l, b)", vector.galactic, vector.region68);
+    place_row(table, "ICRS (RA, Dec)", vector.icrs, vector.region68);
     return table.text();
 }
 
+void region_row(TextTable& table, const std::string& name, const SkyRegion& region) {
+    table.row({name,
+               short_number(region.area_deg2),
+               region.radius_deg ? short_number(*region.radius_deg) : "-"});
+}
+
+std::string region_table(const VectorSummary& vector) {
+    if (!vector.region68 || !vector.region95) return "";
+    TextTable table("lrr");
+    table.row({"draws within", "area of sky (sq deg)", "radius about the mean (deg)"});
+    region_row(table, "68 %", *vector.region68);
+    region_row(table, "95 %", *vector.region95);
+    return "\n" + table.text();
+}
+
 std::string direction_block(const VectorSummary& vector) {
-    std::string text = direction_table(vector);
     if (!vector.direction_free)
-        text += folded("The direction is fixed by the prior.", 2);
-    else if (!vector.galactic)
-        text += folded(
-            "No direction to speak of: the draws point so widely over the sky that their mean "
-            "unit vector is shorter than 0.2.",
-            2);
-    return text;
+        return direction_table(vector) + folded("The direction is fixed by the prior.", 2);
+    if (vector.galactic) return direction_table(vector) + region_table(vector);
+    return folded(
+               "No direction to speak of: the draws point so widely over the sky that their "
+               "mean "
+               "unit vector is shorter than 0.2.",
+               2) +
+           region_table(vector);
 }
 
 std::string offset_table(const CmbOffset& offset) {

@@ -25,7 +25,8 @@ TEST_CASE("numbers are rounded to two digits of their uncertainty", "[summary]")
     CHECK(rounded(Interval{1.18, 1.571}, 0.1955) == "1.18 to 1.57");
     CHECK(short_number(11897.4) == "11 900");
     CHECK(short_number(0.0123456) == "0.0123");
-    CHECK(grouped(1234) == "1234");
+    CHECK(grouped(123) == "123");
+    CHECK(grouped(1234) == "1 234");
     CHECK(grouped(12345) == "12 345");
     CHECK(grouped(-1234567) == "-1 234 567");
 }
