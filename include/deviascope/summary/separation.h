@@ -25,6 +25,19 @@ struct Separation {
     SeparationEntry joint;
 };
 
+/// Columns that turn the velocity's free coordinates, as the separation counts them, into the
+/// vector: 3 x 3 identity, the axis (3 x 1) under an `axis` prior, 3 x 0 where it is fixed.
+Eigen::MatrixXd free_velocity_coordinates(const ParameterSpace& space);
+
+///   I = sum over terms of the expected information (model/information.h), plus the prior
+///       information of the weights, all but the velocity eliminated by Schur complement
+///   velocity_prior_share = 1 - tr(I Sigma) / n_free, clipped to 0 … 1
+///
+/// Joint: all surveys, Sigma the posterior covariance. A survey's entry: that survey alone,
+/// Sigma^-1 = information with the intrinsic prior added before the elimination + velocity
+/// prior. A verdict of a fixed velocity says so.
+/// Errors: InternalError where the covariance has another size than the free coordinates.
+///
 /// @param mean        posterior means of all parameters (a row)
 /// @param covariance  posterior covariance of the velocity's free coordinates (n_free x n_free)
 Separation separation_of(const Counts& counts,

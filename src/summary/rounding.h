@@ -1,0 +1,29 @@
+// SPDX-License-Identifier: GPL-2.0-or-later
+// chain -> SUMMARY -> figures
+#pragma once
+
+#include <cstdint>
+#include <string>
+
+#include "deviascope/summary/interval.h"
+
+namespace deviascope {
+
+/// A number to two significant digits of its uncertainty (common practice); to four digits of
+/// its own where the uncertainty is zero or undefined. Thousands are set apart by blanks. `-`
+/// for a number that is undefined.
+std::string rounded(double value, double uncertainty);
+
+/// A number to three significant digits.
+std::string short_number(double value);
+
+/// `2.41 to 2.93`, to the digits of an uncertainty.
+std::string rounded(const Interval& interval, double uncertainty);
+
+/// Half the width of an interval: the uncertainty by which its numbers are rounded.
+double half_width(const Interval& interval);
+
+/// 1234567 as `1 234 567`.
+std::string grouped(std::int64_t number);
+
+}  // namespace deviascope

@@ -1,0 +1,72 @@
+// SPDX-License-Identifier: GPL-2.0-or-later
+// Count maps without noise: the same number of sources in every pixel of the whole sky.
+#pragma once
+
+#include <numeric>
+#include <string>
+#include <utility>
+#include <vector>
+
+#include "deviascope/counts/count_map.h"
+#include "deviascope/model/model_options.h"
+#include "deviascope/sky/pixelisation.h"
+
+namespace even {
+
+/// A bin: sources in each pixel, and its weight's prior.
+struct Bin {
+    std::string name;
+    std::uint32_t sources_per_pixel;
+    double weight;
+    double weight_sd = 0.0;
+    double bias_ratio = 1.0, dispersion = 1.0;
+};
+
+struct Survey {
+    std::string name;
+    std::vector<Bin> bins;
+};
+
+inline deviascope::Counts counts_of(int nside, const std::vector<Survey>& surveys) {
+    deviascope::Counts counts;
+    counts.nside = nside;
+    const auto n = static_cast<std::size_t>(deviascope::Pixelisation(nside).n_pixels());
+    for (const Survey& given : surveys) {
+        deviascope::SurveyCounts survey;
+        survey.name = given.name;
+        deviascope::Footprint footprint{std::vector<std::int64_t>(n),
+                                        std::vector<double>(n, 1.0)};
+        std::iota(footprint.pixel.begin(), footprint.pixel.end(), 0);
+        survey.footprints.push_back(std::move(footprint));
+        for (const Bin& bin : given.bins)
+            survey.bins.push_back(
+                {bin.name, 0, std::vector<std::uint32_t>(n, bin.sources_per_pixel)});
+        counts.surveys.push_back(std::move(survey));
+    }
+    return counts;
+}
+
+inline deviascope::ModelOptions model_of(const std::vector<Survey>& surveys,
+                                         const deviascope::VectorPrior& velocity,
+                                         const deviascope::VectorPrior& intrinsic) {
+    deviascope::ModelOptions options;
+    options.velocity = velocity;
+    options.intrinsic = intrinsic;
+    for (const Survey& given : surveys) {
+        const auto n = static_cast<Eigen::Index>(given.bins.size());
+        deviascope::SurveyModel survey;
+        survey.weights.mean.resize(n);
+        survey.weights.covariance = Eigen::MatrixXd::Zero(n, n);
+        for (Eigen::Index b = 0; b < n; ++b) {
+            const Bin& bin = given.bins[static_cast<std::size_t>(b)];
+            survey.weights.mean[b] = bin.weight;
+            survey.weights.covariance(b, b) = bin.weight_sd * bin.weight_sd;
+            survey.bins.push_back({bin.bias_ratio, bin.dispersion});
+        }
+        survey.intrinsic = intrinsic;
+        options.surveys.push_back(std::move(survey));
+    }
+    return options;
+}
+
+}  // namespace even
