@@ -1,22 +1,22 @@
 // SPDX-License-Identifier: GPL-2.0-or-later
 // Simulation-based calibration (Talts, Betancourt, Simpson, Vehtari & Gelman 2018,
-// arXiv 1804.06788): where the truth is drawn from the priors, its rank among L independent draws of
-// the posterior is uniform on 0 … L.
+// arXiv 1804.06788): where the truth is drawn from the priors, its rank among L independent
+// draws of the posterior is uniform on 0 … L.
 #include <algorithm>
 #include <boost/math/distributions/chi_squared.hpp>
 #include <catch2/catch.hpp>
 #include <map>
 #include <string>
 
-#include "collected_draws.h"
 #include "deviascope/core/parallel.h"
 #include "deviascope/ensemble/monitored.h"
 #include "deviascope/ensemble/sampler.h"
 #include "deviascope/model/posterior.h"
+#include "memory_sink.h"
 #include "simulated_sky.h"
 
 using namespace deviascope;
-using deviascope::test::CollectedDraws;
+using deviascope::test::MemorySink;
 using deviascope::test::SkyTruth;
 
 namespace {
@@ -71,8 +71,8 @@ std::vector<MonitoredScalar> ranked_scalars(const Posterior& posterior) {
     return scalars;
 }
 
-/// Ranks of the truth among L draws of one sky, one for each scalar. The draws are the last stored
-/// rows of walkers far apart in the ensembles, so nearly independent.
+/// Ranks of the truth among L draws of one sky, one for each scalar. The draws are the last
+/// stored rows of walkers far apart in the ensembles, so nearly independent.
 std::vector<int> ranks_of_sky(std::uint64_t sky) {
     const ModelOptions model = calibration_model();
     Stream truth_stream(calibration_seed, Purpose::test, sky, 0, 0);
@@ -85,7 +85,7 @@ std::vector<int> ranks_of_sky(std::uint64_t sky) {
     options.seed = calibration_seed + 1 + sky;
     options.replicates = 4;
     options.effective_draws = 1000;
-    CollectedDraws sink;
+    MemorySink sink;
     const Outcome outcome = sample(posterior, options, sink);
     if (outcome.end != Outcome::End::converged) throw std::runtime_error("not converged");
 
@@ -109,7 +109,8 @@ std::vector<int> ranks_of_sky(std::uint64_t sky) {
 /// Chi-square probability that ranks are uniform, over `n_bins` equal bins of 0 … L.
 double uniformity(const std::vector<int>& ranks, int n_bins) {
     std::vector<double> filled(static_cast<std::size_t>(n_bins), 0.0);
-    for (const int rank : ranks) filled[static_cast<std::size_t>(rank * n_bins / (n_ranked + 1))] += 1.0;
+    for (const int rank : ranks)
+        filled[static_cast<std::size_t>(rank * n_bins / (n_ranked + 1))] += 1.0;
     const double expected = static_cast<double>(ranks.size()) / n_bins;
     double chi2 = 0.0;
     for (const double n : filled) chi2 += (n - expected) * (n - expected) / expected;
@@ -119,7 +120,8 @@ double uniformity(const std::vector<int>& ranks, int n_bins) {
 
 void check_calibration(std::size_t n_skies, int n_bins) {
     std::vector<std::vector<int>> ranks(n_skies);
-    parallel_for(n_skies, default_threads(), [&](std::size_t sky) { ranks[sky] = ranks_of_sky(sky); });
+    parallel_for(
+        n_skies, default_threads(), [&](std::size_t sky) { ranks[sky] = ranks_of_sky(sky); });
     Stream stream(calibration_seed, Purpose::test, 0, 0, 0);
     const ModelOptions model = calibration_model();
     const Counts counts = test::simulate_sky(test::draw_truth(model, stream), 8, stream);

@@ -5,9 +5,9 @@
 #include <cmath>
 #include <numeric>
 
-#include "collected_draws.h"
 #include "deviascope/ensemble/sampler.h"
 #include "deviascope/model/posterior.h"
+#include "memory_sink.h"
 #include "simulated_sky.h"
 
 using namespace deviascope;
@@ -36,8 +36,8 @@ Counts isotropic_sky() {
     return test::simulate_sky(truth, 8, stream);
 }
 
-/// Likelihood averaged over directions at amplitude r, relative to the isotropic sky: the posterior
-/// density of r under a flat prior in r, unnormalised.
+/// Likelihood averaged over directions at amplitude r, relative to the isotropic sky: the
+/// posterior density of r under a flat prior in r, unnormalised.
 double density_of_amplitude(const Posterior& posterior, double r) {
     const VectorPrior& prior = posterior.space().vector_prior(1);
     const std::vector<Direction> directions = Pixelisation(8).centres();
@@ -65,7 +65,7 @@ double probability_by_quadrature(const Posterior& posterior, double r_small, dou
 double probability_by_sampling(const Posterior& posterior, double r_small, std::uint64_t seed) {
     EnsembleOptions options;
     options.seed = seed;
-    test::CollectedDraws sink;
+    test::MemorySink sink;
     REQUIRE(sample(posterior, options, sink).end == Outcome::End::converged);
     const Draws& draws = sink.draws;
     const Eigen::Index n = draws.n_rows * draws.n_replicates * draws.n_walkers;

@@ -22,8 +22,8 @@ struct SkyTruth {
     std::vector<Eigen::VectorXd> monopole;   ///< likewise, per steradian
 };
 
-/// Draws the truth from the priors of a model. Weights must have a diagonal covariance, monopoles
-/// a proper prior.
+/// Draws the truth from the priors of a model. Weights must have a diagonal covariance,
+/// monopoles a proper prior.
 inline SkyTruth draw_truth(const ModelOptions& model, Stream& stream) {
     SkyTruth truth;
     truth.velocity = model.velocity.draw(stream);
@@ -45,8 +45,8 @@ inline SkyTruth draw_truth(const ModelOptions& model, Stream& stream) {
     return truth;
 }
 
-/// Poisson counts on the full sky given the truth: the model's formula written out plainly, with
-/// exposure 1 everywhere. Surveys are named s0, s1 …, their bins b0, b1 ….
+/// Poisson counts on the full sky given the truth: the model's formula written out plainly,
+/// with exposure 1 everywhere. Surveys are named s0, s1 …, their bins b0, b1 ….
 inline Counts simulate_sky(const SkyTruth& truth, int nside, Stream& stream) {
     Counts counts;
     counts.nside = nside;

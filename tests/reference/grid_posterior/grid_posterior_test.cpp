@@ -6,10 +6,10 @@
 #include <cmath>
 #include <sstream>
 
-#include "collected_draws.h"
 #include "deviascope/ensemble/diagnostics.h"
 #include "deviascope/ensemble/sampler.h"
 #include "deviascope/model/posterior.h"
+#include "memory_sink.h"
 #include "python_check.h"
 #include "simulated_sky.h"
 #include "temporary_folder.h"
@@ -50,7 +50,8 @@ std::string as_table(const Counts& counts) {
     std::string text;
     for (std::size_t k = 0; k < survey.footprints[0].pixel.size(); ++k) {
         const Direction n = grid.centre(survey.footprints[0].pixel[k]);
-        text += fmt::format("{} {} {} {}", n.x(), n.y(), n.z(), survey.footprints[0].exposure[k]);
+        text +=
+            fmt::format("{} {} {} {}", n.x(), n.y(), n.z(), survey.footprints[0].exposure[k]);
         for (const BinCounts& bin : survey.bins) text += fmt::format(" {}", bin.count[k]);
         text += '\n';
     }
@@ -64,9 +65,13 @@ struct Moments {
 Moments moments_by_grid(const Counts& counts) {
     const test::TemporaryFolder folder;
     const auto table = folder.write("sky.txt", as_table(counts));
-    const auto result = test::run_python(
-        std::filesystem::path(DEVIASCOPE_TEST_DATA) / "reference/grid_posterior/grid_posterior.py",
-        {table.string(), fmt::format("{}", max_velocity), fmt::format("{}", max_intrinsic), "2.5", "6.0"});
+    const auto result = test::run_python(std::filesystem::path(DEVIASCOPE_TEST_DATA) /
+                                             "reference/grid_posterior/grid_posterior.py",
+                                         {table.string(),
+                                          fmt::format("{}", max_velocity),
+                                          fmt::format("{}", max_intrinsic),
+                                          "2.5",
+                                          "6.0"});
     INFO(result.output);
     REQUIRE(result.exit_code == 0);
     Moments m{};
@@ -85,7 +90,7 @@ TEST_CASE("a sampled posterior agrees with brute force on a grid", "[model][ense
     EnsembleOptions options;
     options.seed = 20260817;
     options.effective_draws = 20000;
-    test::CollectedDraws sink;
+    test::MemorySink sink;
     REQUIRE(sample(posterior, options, sink).end == Outcome::End::converged);
 
     const Draws& draws = sink.draws;
@@ -102,8 +107,8 @@ TEST_CASE("a sampled posterior agrees with brute force on a grid", "[model][ense
     const double sd_b = std::sqrt(sum_bb / count - mean_b * mean_b);
     const double sd_d = std::sqrt(sum_dd / count - mean_d * mean_d);
     const double correlation = (sum_bd / count - mean_b * mean_d) / (sd_b * sd_d);
-    // 20,000 effective draws: standard error of a mean sd / 141, of an sd about sd / 200, of the
-    // correlation at most 1 / 141; five of each are allowed.
+    // 20,000 effective draws: standard error of a mean sd / 141, of an sd about sd / 200, of
+    // the correlation at most 1 / 141; five of each are allowed.
     CHECK(std::abs(mean_b - grid.mean_velocity) < 5 * grid.sd_velocity / 141);
     CHECK(std::abs(mean_d - grid.mean_intrinsic) < 5 * grid.sd_intrinsic / 141);
     CHECK(std::abs(sd_b / grid.sd_velocity - 1) < 5.0 / 200);
