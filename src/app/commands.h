@@ -1,0 +1,28 @@
+// SPDX-License-Identifier: GPL-2.0-or-later
+// APP: on top of all stages
+#pragma once
+
+#include <filesystem>
+
+#include "deviascope/core/error.h"
+
+namespace deviascope {
+
+/// What the command line of any command can say.
+struct CommandOptions {
+    std::filesystem::path input;   ///< job, scenario or chain
+    std::filesystem::path output;  ///< folder; empty: the command's own default
+    int threads = 0;               ///< 0: as many as the machine offers
+    bool quiet = false;
+    bool replace = false;
+    bool strict = false;
+};
+
+/// One function a command; each returns the exit code of a run that did not fail.
+ExitCode run_command(const CommandOptions& options);
+ExitCode count_command(const CommandOptions& options);
+ExitCode sample_command(const CommandOptions& options);
+ExitCode summarise_command(const CommandOptions& options);
+ExitCode mock_command(const CommandOptions& options);
+
+}  // namespace deviascope

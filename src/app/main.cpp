@@ -1,0 +1,138 @@
+// SPDX-License-Identifier: GPL-2.0-or-later
+// APP: the command line, and the one place that turns errors into exit codes
+#include <CLI/CLI.hpp>
+#include <cstdio>
+#include <exception>
+#include <functional>
+#include <string>
+
+#include "app/commands.h"
+#include "app/interrupt.h"
+#include "deviascope/core/version.h"
+
+namespace {
+
+using deviascope::CommandOptions;
+using deviascope::ExitCode;
+using Action = std::function<ExitCode(const CommandOptions&)>;
+
+/// A command as the table below describes it.
+struct Command {
+    const char* name;
+    const char* description;
+    const char* input;  ///< name of its argument in the help
+    const char* input_description;
+    const char* output_description;
+    bool strict;  ///< takes --strict
+    Action action;
+};
+
+std::vector<Command> commands() {
+    const char* job = "job file (TOML)";
+    const char* folder = "folder for the results; default: the job's name with -results, here";
+    return {
+        {"run",
+         "The whole job: counts, samples and summarises",
+         "JOB.toml",
+         job,
+         folder,
+         true,
+         deviascope::run_command},
+        {"count",
+         "Counts the sources of every survey into counts.h5",
+         "JOB.toml",
+         job,
+         folder,
+         false,
+         deviascope::count_command},
+        {"sample",
+         "Samples the posterior into chains.h5, from the folder's counts.h5 if it fits",
+         "JOB.toml",
+         job,
+         folder,
+         true,
+         deviascope::sample_command},
+        {"summarise",
+         "Summarises a chain into summary.json and summary.txt",
+         "chains.h5",
+         "chain file",
+         "folder for the summary; default: beside the chain",
+         true,
+         deviascope::summarise_command},
+        {"mock",
+         "Makes mock catalogues with known truth",
+         "SCENARIO.toml",
+         "scenario file (TOML)",
+         "folder for the catalogues; default: the scenario's name, here",
+         false,
+         deviascope::mock_command},
+    };
+}
+
+void add_command(CLI::App& program,
+                 const Command& command,
+                 CommandOptions& options,
+                 Action& chosen) {
+    CLI::App* sub = program.add_subcommand(command.name, command.description);
+    sub->add_option("input", options.input, command.input_description)
+        ->required()
+        ->option_text(command.input);
+    sub->add_option("-o,--output", options.output, command.output_description)
+        ->option_text("DIR");
+    sub->add_option(
+           "--threads", options.threads, "threads to use; the results do not depend on it")
+        ->check(CLI::Range(1, 4096))
+        ->option_text("N");
+    sub->add_flag("--quiet", options.quiet, "no progress and no report; warnings remain");
+    sub->add_flag("--replace", options.replace, "overwrite results that exist");
+    if (command.strict)
+        sub->add_flag("--strict", options.strict, "exit with 6 where the result is doubtful");
+    sub->callback([&chosen, action = command.action] { chosen = action; });
+}
+
+int fail(ExitCode code, const std::string& text) {
+    std::fprintf(stderr, "deviascope: %s\n", text.c_str());
+    return static_cast<int>(code);
+}
+
+int parse_and_act(int argc, char** argv) {
+    CLI::App program{
+        "Tells the observer's velocity and an intrinsic dipole apart in counts of distant "
+        "sources.",
+        "deviascope"};
+    program.require_subcommand(1);
+    program.set_version_flag("--version", "deviascope " + deviascope::version());
+    program.footer(
+        "Exit codes: 0 done; 2 wrong command line or job file; 3 bad input data; 4 numerics "
+        "cannot\n"
+        "go on; 5 cannot write; 6 doubtful (--strict); 70 a fault of ours; 130 interrupted.");
+    CommandOptions options;
+    Action chosen;
+    for (const Command& command : commands()) add_command(program, command, options, chosen);
+    try {
+        program.parse(argc, argv);
+    } catch (const CLI::ParseError& error) {
+        if (error.get_exit_code() == 0) return program.exit(error);
+        return fail(ExitCode::usage,
+                    std::string("command line: ") + error.what() + "; see deviascope --help");
+    }
+    return static_cast<int>(chosen(options));
+}
+
+}  // namespace
+
+int main(int argc, char** argv) {
+    deviascope::watch_for_interrupts();
+    try {
+        return parse_and_act(argc, argv);
+    } catch (const deviascope::Error& error) {
+        return fail(error.exit_code(), error.what());
+    } catch (const std::bad_alloc&) {
+        return fail(ExitCode::numerics,
+                    "memory: there is not enough; a lower nside or fewer walkers need less");
+    } catch (const std::exception& error) {
+        return fail(ExitCode::internal,
+                    std::string("an unexpected fault: ") + error.what() +
+                        "; please report it with the job file");
+    }
+}

@@ -1,0 +1,21 @@
+// SPDX-License-Identifier: GPL-2.0-or-later
+// APP: on top of all stages
+#pragma once
+
+#include <filesystem>
+#include <string>
+#include <vector>
+
+namespace deviascope {
+
+/// Makes the folder if it is not there and checks that none of `files` is in it already.
+/// With `replace`, existing ones are removed instead.
+/// Errors: OutputError (cannot be made; a file stands there; names all files that exist).
+void prepare_output(const std::filesystem::path& folder,
+                    const std::vector<std::string>& files,
+                    bool replace);
+
+/// Writes a text file under a temporary name and puts it in place. Errors: OutputError.
+void write_text(const std::filesystem::path& path, const std::string& text);
+
+}  // namespace deviascope

@@ -1,0 +1,39 @@
+// SPDX-License-Identifier: GPL-2.0-or-later
+// APP: the only stage that prints
+#pragma once
+
+#include <chrono>
+#include <string>
+
+#include "deviascope/core/progress.h"
+
+namespace deviascope {
+
+/// What the program says: plain lines on standard output, progress and warnings on standard
+/// error. Progress overwrites itself on a terminal (a few times a second), is one line a minute
+/// elsewhere, and silent with --quiet.
+class Terminal {
+  public:
+    explicit Terminal(bool quiet);
+    ~Terminal();
+    Terminal(const Terminal&) = delete;
+    Terminal& operator=(const Terminal&) = delete;
+
+    /// A line (or several) of what was done; nothing with --quiet.
+    void say(const std::string& text);
+    /// A warning; printed with --quiet too.
+    void warn(const std::string& text);
+    /// Where library stages report progress.
+    Progress progress();
+
+  private:
+    void show(const std::string& line);
+    void wipe();
+
+    bool quiet_;
+    bool is_terminal_;
+    bool line_open_ = false;
+    std::chrono::steady_clock::time_point last_;
+};
+
+}  // namespace deviascope

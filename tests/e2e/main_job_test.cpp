@@ -1,0 +1,199 @@
+// SPDX-License-Identifier: GPL-2.0-or-later
+// The main job on a small mock sky, from catalogues to a summary, through the built program.
+#include <algorithm>
+#include <catch2/catch.hpp>
+#include <chrono>
+#include <csignal>
+#include <fstream>
+#include <iterator>
+#include <nlohmann/json.hpp>
+#include <string>
+#include <thread>
+
+#include "deviascope/chain/chain_file.h"
+#include "run_process.h"
+#include "temporary_folder.h"
+
+using namespace deviascope;
+using deviascope::test::Process;
+using deviascope::test::ProcessResult;
+using deviascope::test::TemporaryFolder;
+
+namespace {
+
+/// A small survey; its bins carry the weights written in `weights`.
+std::string small_job(const std::string& weights, const std::string& ensemble) {
+    return "[job]\nseed = 20260817\nnside = 8\nframe = \"icrs\"\n"
+           "[velocity]\nprior = \"free-velocity\"\n"
+           "[intrinsic]\nprior = { kind = \"gaussian\", sd = 0.05 }\n"
+           "[ensemble]\n" +
+           ensemble +
+           "[[survey]]\nname = \"binnacle\"\ncatalogue = \"binnacle.csv\"\nframe = \"icrs\"\n"
+           "columns = { lon = \"ra\", lat = \"dec\", flux = \"s\" }\n" +
+           weights;
+}
+
+std::string bins(double faint, double bright) {
+    const auto bin = [](const char* name, const char* range, double weight) {
+        return std::string("[[survey.bin]]\nname = \"") + name +
+               "\"\nselect = { flux = " + range +
+               " }\nweight = { mean = " + std::to_string(weight) + ", sd = 0.0 }\n";
+    };
+    return bin("faint", "[1.0, 2.0]", faint) + bin("bright", "[2.0, inf]", bright);
+}
+
+/// A catalogue of positions on a lattice of golden-ratio steps: no random numbers, nearly
+/// isotropic.
+std::string lattice_catalogue(int n) {
+    std::string text = "ra,dec,s\n";
+    for (int k = 0; k < n; ++k) {
+        const double z = (2.0 * k + 1.0) / n - 1.0;
+        const double turn = k * 0.6180339887498949;
+        const double lon = 360.0 * (turn - std::floor(turn));
+        text += std::to_string(lon) + ',' + std::to_string(std::asin(z) * 57.29577951308232) +
+                ',' + (k % 2 == 0 ? "1.5" : "3.0") + '\n';
+    }
+    return text;
+}
+
+ProcessResult run_job(const TemporaryFolder& folder, const std::vector<std::string>& more) {
+    std::vector<std::string> words = {DEVIASCOPE_PROGRAM,
+                                      "run",
+                                      (folder / "job.toml").string(),
+                                      "-o",
+                                      (folder / "out").string()};
+    words.insert(words.end(), more.begin(), more.end());
+    return test::run_process(words);
+}
+
+nlohmann::json summary_in(const std::filesystem::path& folder) {
+    std::ifstream file(folder / "summary.json");
+    return nlohmann::json::parse(file);
+}
+
+constexpr const char* quick = "effective_draws = 500\n";
+
+}  // namespace
+
+TEST_CASE("one command turns a catalogue into counts, chain and summary", "[app]") {
+    const TemporaryFolder folder;
+    folder.write("binnacle.csv", lattice_catalogue(20000));
+    folder.write("job.toml", small_job(bins(3.75, 6.0), quick));
+    const ProcessResult first = run_job(folder, {});
+    INFO(first.err);
+    REQUIRE(first.exit_code == 0);
+    CHECK_THAT(first.out, Catch::Contains("velocity") && Catch::Contains("binnacle"));
+    const nlohmann::json summary = summary_in(folder / "out");
+    CHECK(summary["schema"] == 1);
+    CHECK(summary["bins"][0]["sources"] == 10000);
+    CHECK(summary["sampling"]["converged"] == true);
+
+    SECTION("nothing existing is overwritten without --replace") {
+        const ProcessResult second = run_job(folder, {});
+        CHECK(second.exit_code == 5);
+        CHECK_THAT(second.err, Catch::Contains("chains.h5") && Catch::Contains("--replace"));
+    }
+    SECTION("the chain file alone gives the same summary") {
+        std::filesystem::remove(folder / "binnacle.csv");
+        std::filesystem::copy(folder / "out" / "chains.h5", folder / "chains.h5");
+        const ProcessResult again = test::run_process(
+            {DEVIASCOPE_PROGRAM, "summarise", (folder / "chains.h5").string(), "--quiet"});
+        INFO(again.err);
+        REQUIRE(again.exit_code == 0);
+        CHECK(again.out.empty());
+        CHECK(summary_in(folder.path()) == summary);
+    }
+    SECTION("another number of threads gives the same bits") {
+        const Chain one = read_chain(folder / "out" / "chains.h5");
+        for (const char* threads : {"1", "3"}) {
+            REQUIRE(run_job(folder, {"--replace", "--threads", threads}).exit_code == 0);
+            const Chain other = read_chain(folder / "out" / "chains.h5");
+            CHECK(one.draws.value == other.draws.value);
+            CHECK(one.draws.log_posterior == other.draws.log_posterior);
+        }
+    }
+    SECTION("sample uses the counts that are there, and refuses those of another job") {
+        std::filesystem::remove(folder / "out" / "chains.h5");
+        const auto sample_job = [&] {
+            return test::run_process({DEVIASCOPE_PROGRAM,
+                                      "sample",
+                                      (folder / "job.toml").string(),
+                                      "-o",
+                                      (folder / "out").string()});
+        };
+        const ProcessResult sampled = sample_job();
+        CHECK(sampled.exit_code == 0);
+        CHECK_THAT(sampled.out, Catch::Contains("inputs are unchanged"));
+        std::filesystem::remove(folder / "out" / "chains.h5");
+        folder.write("binnacle.csv", lattice_catalogue(30000));
+        CHECK(sample_job().exit_code == 5);
+    }
+}
+
+TEST_CASE("equal weights are called not separated, and doubtful under --strict", "[app]") {
+    const TemporaryFolder folder;
+    folder.write("binnacle.csv", lattice_catalogue(20000));
+    folder.write("job.toml", small_job(bins(4.16, 4.16), quick));
+    const ProcessResult result = run_job(folder, {"--strict"});
+    INFO(result.err);
+    CHECK(result.exit_code == 6);
+    const nlohmann::json summary = summary_in(folder / "out");
+    CHECK_THAT(summary["separation"]["joint"]["verdict"].get<std::string>(),
+               Catch::StartsWith("not separated"));
+    CHECK(summary["separation"]["binnacle"]["weight_spread"].get<double>() ==
+          Approx(0.0).margin(1e-12));
+    CHECK_THAT(result.out, Catch::Contains("not separated"));
+}
+
+TEST_CASE("a run that cannot converge says so in every output", "[app]") {
+    const TemporaryFolder folder;
+    folder.write("binnacle.csv", lattice_catalogue(20000));
+    folder.write("job.toml",
+                 small_job(bins(3.75, 6.0), "max_steps = 1000\neffective_draws = 1e9\n"));
+    const ProcessResult result = run_job(folder, {});
+    CHECK(result.exit_code == 0);
+    CHECK_THAT(result.out, Catch::Contains("NOT converged"));
+    const nlohmann::json summary = summary_in(folder / "out");
+    CHECK(summary["sampling"]["converged"] == false);
+    REQUIRE(!summary["warnings"].empty());
+}
+
+TEST_CASE("Ctrl-C ends a run with exit code 130 and a chain that can be read", "[app]") {
+    const TemporaryFolder folder;
+    folder.write("binnacle.csv", lattice_catalogue(20000));
+    folder.write("job.toml",
+                 small_job(bins(3.75, 6.0), "effective_draws = 1e9\nmax_steps = 100000000\n"));
+    Process process({DEVIASCOPE_PROGRAM,
+                     "run",
+                     (folder / "job.toml").string(),
+                     "-o",
+                     (folder / "out").string()});
+    std::this_thread::sleep_for(std::chrono::seconds(4));
+    process.send(SIGINT);
+    const ProcessResult result = process.wait();
+    INFO(result.err);
+    CHECK(result.exit_code == 130);
+    CHECK_THAT(result.out, Catch::Contains("interrupted"));
+    const Chain chain = read_chain(folder / "out" / "chains.h5");
+    CHECK(chain.draws.n_rows > 0);
+    CHECK(chain.outcome.end == Outcome::End::interrupted);
+}
+
+TEST_CASE("results do not depend on the order of the catalogue's rows", "[app]") {
+    const TemporaryFolder folder;
+    std::string text = lattice_catalogue(20000);
+    folder.write("binnacle.csv", text);
+    folder.write("job.toml", small_job(bins(3.75, 6.0), quick));
+    REQUIRE(run_job(folder, {}).exit_code == 0);
+    const Chain forward = read_chain(folder / "out" / "chains.h5");
+
+    std::vector<std::string> lines;
+    std::istringstream in(text);
+    for (std::string line; std::getline(in, line);) lines.push_back(line + '\n');
+    std::reverse(lines.begin() + 1, lines.end());
+    std::string backward_text;
+    for (const std::string& line : lines) backward_text += line;
+    folder.write("binnacle.csv", backward_text);
+    REQUIRE(run_job(folder, {"--replace"}).exit_code == 0);
+    CHECK(read_chain(folder / "out" / "chains.h5").draws.value == forward.draws.value);
+}
