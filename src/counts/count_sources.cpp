@@ -12,22 +12,12 @@
 #include "counts/map_counter.h"
 #include "counts/row_counter.h"
 #include "deviascope/core/error.h"
+#include "deviascope/core/grouped_number.h"
 #include "deviascope/core/physical_constants.h"
 
 namespace deviascope {
 
 namespace {
-
-/// 12600000 as `12 600 000`.
-std::string grouped(std::int64_t number) {
-    const std::string digits = fmt::format("{}", number);
-    std::string out;
-    for (std::size_t i = 0; i < digits.size(); ++i) {
-        if (i > 0 && (digits.size() - i) % 3 == 0) out += ' ';
-        out += digits[i];
-    }
-    return out;
-}
 
 /// How far the reading of a survey's files is.
 class RowProgress {

@@ -6,6 +6,8 @@
 #include <algorithm>
 #include <cmath>
 
+#include "deviascope/core/grouped_number.h"
+
 namespace deviascope {
 
 namespace {
@@ -27,13 +29,6 @@ std::string duration(double seconds) {
 }
 
 }  // namespace
-
-std::string grouped(std::int64_t number) {
-    std::string text = fmt::format("{}", number);
-    const std::size_t first = number < 0 ? 1 : 0;
-    for (std::size_t at = text.size(); at > first + 3;) text.insert(at -= 3, 1, ' ');
-    return text;
-}
 
 std::string progress_line(const Standing& standing) {
     std::string line = "step " + grouped(standing.step);

@@ -23,7 +23,4 @@ struct Standing {
 /// `step 12 400 · worst R-hat 1.04 · 2 100 of 10 000 effective draws · about 3 min left`.
 std::string progress_line(const Standing& standing);
 
-/// Digits in groups of three, parted by spaces.
-std::string grouped(std::int64_t number);
-
 }  // namespace deviascope

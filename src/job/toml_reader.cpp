@@ -20,7 +20,7 @@ bool is_bare(std::string_view key) {
     });
 }
 
-std::string quoted(std::string_view text) {
+std::string in_quotes(std::string_view text) {
     constexpr std::size_t longest = 80;
     if (text.size() <= longest) return fmt::format("\"{}\"", text);
     return fmt::format("\"{}…\"", text.substr(0, longest));
@@ -40,7 +40,7 @@ std::string shown_array(const toml::array& array) {
 
 /// A value as a person wrote it, near enough to recognise it.
 std::string shown(const toml::node& node) {
-    if (const auto* text = node.as_string()) return quoted(text->get());
+    if (const auto* text = node.as_string()) return in_quotes(text->get());
     if (const auto* integer = node.as_integer()) return fmt::format("{}", integer->get());
     if (const auto* number = node.as_floating_point())
         return fmt::format("{:#}", number->get());
@@ -181,7 +181,7 @@ void TomlDocument::report_unknown_keys() {
         for (const auto& [key, value] : *table) {
             const std::string name(key.str());
             if (std::find(asked.begin(), asked.end(), name) != asked.end()) continue;
-            const std::string shown_key = is_bare(name) ? name : quoted(name);
+            const std::string shown_key = is_bare(name) ? name : in_quotes(name);
             add(key.source().begin,
                 visit.path.empty() ? shown_key : visit.path + "." + shown_key,
                 "unknown key",
@@ -218,7 +218,7 @@ const toml::node* TomlTable::find(const std::string& key) const {
 }
 
 std::string TomlTable::path_of(const std::string& key) const {
-    const std::string last = is_bare(key) ? key : quoted(key);
+    const std::string last = is_bare(key) ? key : in_quotes(key);
     return path_.empty() ? last : path_ + "." + last;
 }
 

@@ -1,4 +1,5 @@
 // SPDX-License-Identifier: GPL-2.0-or-later
+#include "deviascope/core/grouped_number.h"
 #include "summary/cautions.h"
 
 #include <fmt/format.h>
@@ -87,8 +88,9 @@ void add_sampling(const Summary& summary,
                   std::vector<std::string>& cautions) {
     const SamplingSummary& sampling = summary.sampling;
     if (!sampling.converged) {
-        std::string text = "Not converged: " + why_it_ended(sampling.outcome) +
-                           " before its stopping rule was met. Do not quote these numbers.";
+        std::string text = fmt::format(
+            "Not converged: {} before its stopping rule was met. Do not quote these numbers.",
+            why_it_ended(sampling.outcome));
         const auto lacks = shortfalls_of(sampling, options.effective_draws_wanted);
         if (!lacks.empty()) text += " Still lacking: " + joined(lacks) + ".";
         cautions.push_back(text);

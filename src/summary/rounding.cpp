@@ -1,4 +1,5 @@
 // SPDX-License-Identifier: GPL-2.0-or-later
+#include "deviascope/core/grouped_number.h"
 #include "summary/rounding.h"
 
 #include <fmt/format.h>
@@ -20,13 +21,6 @@ int decimals_for(double size, int digits) {
     return std::min(carries ? decimals - 1 : decimals, most_decimals);
 }
 
-std::string set_apart(std::string digits) {
-    const std::size_t end = std::min(digits.find('.'), digits.size());
-    const std::size_t begin = digits.starts_with('-') ? 1 : 0;
-    for (std::size_t place = end; place > begin + 3;) digits.insert(place -= 3, " ");
-    return digits;
-}
-
 std::string with_decimals(double value, int decimals) {
     if (decimals < 0) {
         const double unit = std::pow(10.0, -decimals);
@@ -35,7 +29,7 @@ std::string with_decimals(double value, int decimals) {
     std::string digits = fmt::format("{:.{}f}", value, std::max(decimals, 0));
     if (digits.starts_with('-') && digits.find_first_not_of("-0.") == std::string::npos)
         digits.erase(0, 1);
-    return set_apart(digits);
+    return grouped_digits(digits);
 }
 
 }  // namespace
@@ -59,10 +53,6 @@ std::string rounded(const Interval& interval, double uncertainty) {
 
 double half_width(const Interval& interval) {
     return 0.5 * (interval[1] - interval[0]);
-}
-
-std::string grouped(std::int64_t number) {
-    return set_apart(fmt::format("{}", number));
 }
 
 }  // namespace deviascope

@@ -23,7 +23,4 @@ std::string rounded(const Interval& interval, double uncertainty);
 /// Half the width of an interval: the uncertainty by which its numbers are rounded.
 double half_width(const Interval& interval);
 
-/// 1234567 as `1 234 567`.
-std::string grouped(std::int64_t number);
-
 }  // namespace deviascope

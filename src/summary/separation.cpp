@@ -68,7 +68,8 @@ struct Block {
 
 Eigen::MatrixXd spread(const std::vector<Block>& blocks, Eigen::Index n) {
     Eigen::MatrixXd whole = Eigen::MatrixXd::Zero(n, n);
-    for (const Block& block : blocks) whole(block.numbers, block.numbers) += block.information;
+    for (const Block& block : blocks)
+        if (!block.numbers.empty()) whole(block.numbers, block.numbers) += block.information;
     return whole;
 }
 
@@ -87,6 +88,7 @@ Block add_weights(const ParameterSpace& space, std::size_t survey, CoordinateLis
         sampled.push_back(bin);
         block.numbers.push_back(list.add(term.weight, Eigen::MatrixXd::Ones(1, 1)).front());
     }
+    if (sampled.empty()) return block;
     const Eigen::MatrixXd covariance = prior.covariance(sampled, sampled);
     block.information = covariance.completeOrthogonalDecomposition().pseudoInverse();
     return block;

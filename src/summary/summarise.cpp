@@ -312,9 +312,15 @@ Summary summarise(const Chain& chain,
 
     std::vector<VectorSummary> vectors(space.vectors().size());
     parallel_for(vectors.size(), options.threads, [&](std::size_t index) {
-        const double effective =
-            effective_directions(space.vectors()[index], monitored, diagnostics, chain.draws);
-        vectors[index] = vector_of(rows, space, index, summary.frame, effective, options.seed);
+        const VectorParameter& vector = space.vectors()[index];
+        vectors[index] = vector_of(rows, space, index, options.seed);
+        if (vector.direction_free)
+            find_direction(directions_of(rows, vector.first),
+                           summary.frame,
+                           effective_directions(vector, monitored, diagnostics, chain.draws),
+                           vectors[index]);
+        else if (!vectors[index].mean.isZero(0.0))
+            place(vectors[index].mean, summary.frame, vectors[index]);
     });
     summary.velocity = std::move(vectors.front());
     summary.intrinsic.assign(std::make_move_iterator(vectors.begin() + 1),

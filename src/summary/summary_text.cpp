@@ -4,6 +4,7 @@
 #include <algorithm>
 #include <cmath>
 
+#include "deviascope/core/grouped_number.h"
 #include "deviascope/core/physical_constants.h"
 #include "deviascope/summary/summary.h"
 #include "summary/rounding.h"
@@ -119,7 +120,7 @@ std::string region_table(const VectorSummary& vector) {
     table.row({"draws within", "area of sky (sq deg)", "radius about the mean (deg)"});
     region_row(table, "68 %", *vector.region68);
     region_row(table, "95 %", *vector.region95);
-    return "\n" + table.text();
+    return fmt::format("\n{}", table.text());
 }
 
 std::string direction_block(const VectorSummary& vector) {
@@ -220,11 +221,10 @@ std::string separation_block(const Summary& summary) {
 }
 
 std::string cuts_block(const Summary& summary) {
-    std::string text;
+    std::vector<std::string> tables;
     for (std::size_t survey = 0; survey < summary.cuts.size(); ++survey)
-        text += (survey > 0 ? "\n" : "") +
-                cut_table(summary.survey_names[survey], summary.cuts[survey]);
-    return text;
+        tables.push_back(cut_table(summary.survey_names[survey], summary.cuts[survey]));
+    return fmt::format("{}", fmt::join(tables, "\n"));
 }
 
 // ---- sampling ----
@@ -336,7 +336,7 @@ std::string to_text(const Summary& summary) {
     std::vector<std::string> blocks = {head(summary), warnings_block(summary.warnings)};
     blocks.push_back(vector_block(summary.velocity));
     if (summary.offset_from_cmb && summary.velocity.amplitude_free)
-        blocks.back() += "\n" + offset_table(*summary.offset_from_cmb);
+        blocks.back() += fmt::format("\n{}", offset_table(*summary.offset_from_cmb));
     for (const VectorSummary& vector : summary.intrinsic)
         blocks.push_back(vector_block(vector));
     blocks.push_back(bins_block(summary.bins));

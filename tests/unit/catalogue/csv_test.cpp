@@ -90,7 +90,7 @@ TEST_CASE("rows after a quoted line break are placed by their line", "[catalogue
     CHECK_FALSE(broken->n_rows().has_value());
 }
 
-TEST_CASE("blank and nan are missing; numbers may carry blanks and a plus sign",
+TEST_CASE("blank and nan are missing, numbers may carry blanks and a plus sign",
           "[catalogue]") {
     const Columns got = read_csv(
         "S,T\n,1\n  ,1\nnan,1\nNaN,1\n\"\",1\n +1.5 ,1\n\t-.5e-3,1\ninf,1\n-inf,1\n5.,1\n"

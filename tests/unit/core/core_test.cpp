@@ -56,7 +56,7 @@ TEST_CASE("the first draws of a keyed stream are pinned", "[core]") {
     CHECK(std::adjacent_find(first.begin(), first.end()) == first.end());
 }
 
-TEST_CASE("uniform lies in [0, 1) with the moments of a uniform variate", "[core]") {
+TEST_CASE("uniform lies in 0 to 1 with the moments of a uniform variate", "[core]") {
     double sum = 0.0, sum_of_squares = 0.0;
     constexpr int n = 100000;
     for (int draw = 0; draw < n; ++draw) {

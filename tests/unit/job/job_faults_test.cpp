@@ -25,7 +25,7 @@ void check(const std::string& job, const std::vector<Case>& cases) {
 
 }  // namespace
 
-TEST_CASE("faults of [job] are named", "[job]") {
+TEST_CASE("faults of the table job are named", "[job]") {
     check(plain_job,
           {
               {"seed = 1", "", "1:1: job.seed: missing; an integer of at least 0 is required"},
@@ -65,7 +65,7 @@ TEST_CASE("faults of [job] are named", "[job]") {
           });
 }
 
-TEST_CASE("faults of priors are named", "[job]") {
+TEST_CASE("faults of the table priors are named", "[job]") {
     const char* const prior = "prior = { kind = \"uniform-vector\", max = 0.05 }";
     const char* const kind = "kind = \"uniform-vector\", max = 0.05";
     check(
@@ -189,7 +189,7 @@ TEST_CASE("faults of priors are named", "[job]") {
         });
 }
 
-TEST_CASE("faults of [ensemble] are named", "[job]") {
+TEST_CASE("faults of the table ensemble are named", "[job]") {
     check(plain_job + "[ensemble]\nwalkers = 36\n",
           {
               {"walkers = 36",
@@ -246,7 +246,7 @@ TEST_CASE("faults of [ensemble] are named", "[job]") {
           });
 }
 
-TEST_CASE("faults of [[survey]] are named", "[job]") {
+TEST_CASE("faults of the table survey are named", "[job]") {
     const char* const frame = "frame = \"icrs\"";
     const std::string added = std::string(frame) + "\n";
     const auto plus = [&](const char* line) { return added + line; };
@@ -356,7 +356,7 @@ TEST_CASE("faults of [[survey]] are named", "[job]") {
           });
 }
 
-TEST_CASE("faults of [[survey.bin]] are named", "[job]") {
+TEST_CASE("faults of the table survey.bin are named", "[job]") {
     check(
         plain_job,
         {
@@ -429,7 +429,7 @@ TEST_CASE("faults of [[survey.bin]] are named", "[job]") {
         });
 }
 
-TEST_CASE("faults of [[hypothesis]] are named", "[job]") {
+TEST_CASE("faults of the table hypothesis are named", "[job]") {
     const std::string job = plain_job +
                             "[[hypothesis]]\nname = 'still'\nvelocity = { prior = 'no-motion' "
                             "}\nintrinsic = { prior = 'free-intrinsic' }\n"

@@ -135,7 +135,7 @@ TEST_CASE("NESTED and partial maps land on their RING pixels", "[sky]") {
     }
 }
 
-TEST_CASE("UNSEEN in either precision and NaN mean no value; infinities stay", "[sky]") {
+TEST_CASE("UNSEEN in either precision and NaN mean no value, infinities stay", "[sky]") {
     std::vector<double> values = counting(12);
     values[1] = -1.6375e30;
     values[2] = double(-1.6375e30f);

@@ -112,12 +112,13 @@ TEST_CASE("the density integrates to one and peaks where it should", "[summary]"
     const double kappa = GENERATE(2.0, 50.0);
     const Direction centre = direction_of(120.0, 89.0);
     const DirectionDensity density(fisher_draws(centre, kappa, 520), n_draws);
-    const Pixelisation grid(64);
-    double sum = 0.0;
+    const Pixelisation grid(32);
+    double sum = 0.0, highest = 0.0;
     Direction peak = centre;
     for (const Direction& place : grid.centres()) {
-        sum += density.at(place) * grid.solid_angle();
-        if (density.at(place) > density.at(peak)) peak = place;
+        const double value = density.at(place);
+        sum += value * grid.solid_angle();
+        if (value > highest) highest = value, peak = place;
     }
     CHECK(sum == Approx(1.0).epsilon(2e-3));
     CHECK(separation(peak, centre) < 0.5 / std::sqrt(kappa));

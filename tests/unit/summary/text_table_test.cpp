@@ -1,4 +1,5 @@
 // SPDX-License-Identifier: GPL-2.0-or-later
+#include "deviascope/core/grouped_number.h"
 #include "summary/text_table.h"
 
 #include <catch2/catch.hpp>
