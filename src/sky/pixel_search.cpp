@@ -121,7 +121,8 @@ DEVIASCOPE_LANE Found search_one(double nside, double x, double y, double z) {
 
 }  // namespace
 
-#if defined(__x86_64__) && defined(__gnu_linux__)
+// Clones are chosen before main, when GCC's thread sanitizer does not stand yet.
+#if defined(__x86_64__) && defined(__gnu_linux__) && !defined(__SANITIZE_THREAD__)
 __attribute__((target_clones("avx2", "default")))
 #endif
 void search(SearchBlock& block, int nside) {
