@@ -110,8 +110,10 @@ TEST_CASE("an elongated compact posterior keeps its area", "[summary]") {
 
 TEST_CASE("the density integrates to one and peaks where it should", "[summary]") {
     const double kappa = GENERATE(2.0, 50.0);
-    const Direction centre = direction_of(120.0, 89.0);
+    const Direction centre = direction_of(120.0, 50.0);
     const DirectionDensity density(fisher_draws(centre, kappa, 520), n_draws);
+    // Equal weights on HEALPix centres integrate a peak at its pole only to 3e-3 at this nside,
+    // one away from the pole to 1e-4 (compared with nside 16, 64 and 128).
     const Pixelisation grid(32);
     double sum = 0.0, highest = 0.0;
     Direction peak = centre;
@@ -120,7 +122,7 @@ TEST_CASE("the density integrates to one and peaks where it should", "[summary]"
         sum += value * grid.solid_angle();
         if (value > highest) highest = value, peak = place;
     }
-    CHECK(sum == Approx(1.0).epsilon(2e-3));
+    CHECK(sum == Approx(1.0).epsilon(5e-4));
     CHECK(separation(peak, centre) < 0.5 / std::sqrt(kappa));
     // Smoothing lowers a peak by h^2 / (sigma^2 + h^2): 5 % at this number of draws.
     const double true_peak = kappa / (2.0 * pi * -std::expm1(-2.0 * kappa));
