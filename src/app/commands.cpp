@@ -35,7 +35,9 @@ ExitCode count_command(const CommandOptions& options) {
     const Job job = read_job(options.input);
     const fs::path folder = folder_of(options);
     prepare_output(folder, {"counts.h5"}, options.replace);
-    make_counts(job, record_inputs(job, terminal), folder, terminal);
+    const CountsFile file = make_counts(job, record_inputs(job, terminal), folder, terminal);
+    for (const SurveyCounts& survey : file.counts.surveys)
+        terminal.say("\n" + cut_table(survey.name, survey.cuts));
     terminal.say(fmt::format("Written: {}", (folder / "counts.h5").string()));
     return ExitCode::done;
 }

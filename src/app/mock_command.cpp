@@ -4,6 +4,7 @@
 #include "app/commands.h"
 #include "app/interrupt.h"
 #include "app/terminal.h"
+#include "deviascope/core/grouped_number.h"
 #include "deviascope/core/parallel.h"
 #include "deviascope/job/scenario_file.h"
 #include "deviascope/mock/write_mock.h"
@@ -23,10 +24,11 @@ ExitCode mock_command(const CommandOptions& options) {
     for (std::size_t survey = 0; survey < report.tally.size(); ++survey)
         terminal.say(fmt::format("{}: {} sources drawn over the full sky, {} rows kept.",
                                  scenario.surveys[survey].name,
-                                 report.tally[survey].drawn,
-                                 report.tally[survey].rows));
+                                 grouped(report.tally[survey].drawn),
+                                 grouped(report.tally[survey].rows)));
     for (const std::string& warning : report.warnings) terminal.warn(warning);
-    for (const auto& file : report.files) terminal.say(fmt::format("Written: {}", file.string()));
+    for (const auto& file : report.files)
+        terminal.say(fmt::format("Written: {}", file.string()));
     return report.finished ? ExitCode::done : ExitCode::interrupted;
 }
 

@@ -11,6 +11,7 @@
 #include "app/output_folder.h"
 #include "deviascope/chain/chain_file.h"
 #include "deviascope/core/error.h"
+#include "deviascope/core/grouped_number.h"
 #include "deviascope/core/version.h"
 #include "deviascope/counts/count_sources.h"
 #include "deviascope/model/posterior.h"
@@ -76,8 +77,8 @@ void report_outcome(const Outcome& outcome, double seconds, Terminal& terminal) 
     terminal.say(
         fmt::format("Sampled {} steps per walker, the first {} discarded, every {} stored: "
                     "{} ({:.1f} s).",
-                    outcome.steps,
-                    outcome.discarded,
+                    grouped(outcome.steps),
+                    grouped(outcome.discarded),
                     outcome.store_every,
                     end,
                     seconds));
@@ -116,7 +117,12 @@ CountsFile make_counts(const Job& job,
         file.counts.surveys.push_back(
             count_survey(survey, grid, job.frame, terminal.progress()));
         const SurveyCounts& counted = file.counts.surveys.back();
-        terminal.say(cut_table(counted.name, counted.cuts));
+        terminal.say(fmt::format("Counted {}: {} of {} rows and {} of {} pixels kept.",
+                                 counted.name,
+                                 grouped(counted.cuts.rows_kept),
+                                 grouped(counted.cuts.rows_read),
+                                 grouped(counted.cuts.pixels_kept),
+                                 grouped(counted.cuts.pixels_total)));
         for (const std::string& warning : counted.cuts.warnings) terminal.warn(warning);
     }
     write_counts(folder / "counts.h5", file);

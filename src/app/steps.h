@@ -22,7 +22,7 @@ struct InputRecord {
 };
 InputRecord record_inputs(const Job& job, Terminal& terminal);
 
-/// catalogue -> counts: counts every survey, prints its table of cuts, writes counts.h5.
+/// catalogue -> counts: counts every survey and writes counts.h5.
 CountsFile make_counts(const Job& job,
                        const InputRecord& inputs,
                        const std::filesystem::path& folder,

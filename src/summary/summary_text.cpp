@@ -292,7 +292,7 @@ std::string whole(double value) {
 
 std::string scalar_table(const SamplingSummary& sampling) {
     TextTable table("lrrrrr");
-    table.row({"", "R-hat of", "R-hat of", "effective", "effective", "autocorrelation"});
+    table.row({"", "R-hat of", "R-hat of", "effective", "effective", "correlation"});
     table.row(
         {"scalar", "walkers", "replicates", "draws, bulk", "draws, tails", "time (steps)"});
     table.rule();
