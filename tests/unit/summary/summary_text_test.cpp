@@ -48,7 +48,7 @@ TEST_CASE("estimates and diagnostics never share a table", "[summary]") {
     const std::size_t border = text.find("Convergence of the sampler");
     REQUIRE(border != std::string::npos);
     const std::string estimates = text.substr(0, border), sampling = text.substr(border);
-    for (const char* word : {"R-hat", "effective", "autocorrelation", "replicates"})
+    for (const char* word : {"R-hat", "effective", "correlation", "replicates"})
         CHECK(estimates.find(word) == std::string::npos);
     for (const char* word : {"median", "interval", "km/s", "deg"})
         CHECK(sampling.find(word) == std::string::npos);
