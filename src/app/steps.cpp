@@ -194,6 +194,7 @@ Summary summarise_into(const fs::path& chain_path,
         cmb_prior(chain.provenance.companions, chain_path.parent_path()), job.frame);
     options.job_warnings = job.warnings;
     options.threads = threads;
+    options.effective_draws_wanted = job.ensemble.effective_draws;
     const ParameterSpace space(chain.counts, job.model);
     Summary summary = summarise(chain, space, options);
     write_text(folder / "summary.json", to_json(summary));

@@ -85,7 +85,7 @@ class JobReader {
     }
 
     void read_surveys() {
-        NameRule names({"all"});
+        NameRule names({"all", "joint"});
         const auto tables = root_.tables("survey", required);
         for (const TomlTable& table : tables) {
             SurveyReading survey = read_survey(

@@ -44,9 +44,7 @@ table = "SOURCES"
 frame = "icrs"
 columns = { lon = "RA", lat = "DEC", flux = "S", alpha = "ALPHA", redshift = "Z", magnitude = "MAG", size = "THETA", colour = "W12" }
 alpha = { mean = 0.75, sd = 0.2 }
-scatter = { redshift = "0.05*(1+z)",
-                  flux = 0.1
-}
+scatter = { redshift = "0.05*(1+z)", flux = 0.1 }
 exposure = "dunlin-exposure.fits"
 map_frame = "galactic"
 exclude = [ { band = 15.0, frame = "galactic" }, { lon = 83.6, lat = 22.0, radius = 1.5, frame = "icrs" }, { below = -40.0, frame = "icrs" } ]

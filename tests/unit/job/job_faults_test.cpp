@@ -322,7 +322,7 @@ TEST_CASE("faults of the table survey are named", "[job]") {
                "required"},
               {"name = \"dunlin\"",
                "name = \"all\"",
-               "9:8: survey[1].name: found \"all\"; any name but \"all\" is allowed"},
+               "9:8: survey[1].name: found \"all\"; any name but \"all\" or \"joint\" is allowed"},
               {"name = \"dunlin\"",
                "name = \"Dunlin\"",
                "9:8: survey[1].name: found \"Dunlin\"; a name of the characters a-z, 0-9 and - "
