@@ -115,7 +115,8 @@ TEST_CASE("faults of a weights file are reported with those of the job", "[job]"
          "file; it has \"bright\", \"fiant\", \"spare\"; did you mean \"fiant\"?"},
         {"survey",
          "= 1\nsurvey",
-         "w.toml:1:1: not TOML: in key-value pair: expected a bare key name or string, saw "
+         "w.toml:1:1: not TOML: in root table: expected keys, tables, whitespace or comments, "
+         "saw "
          "'='; a text in TOML 1.0 is allowed"},
     };
     for (const Case& c : cases) {
