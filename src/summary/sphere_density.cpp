@@ -14,7 +14,7 @@ constexpr int coarsest_nside = 8, coarsest_table_nside = 32, finest_nside = 64;
 constexpr int block_nside = 4;
 constexpr double kernel_reach = 5.0;  // bandwidths; what lies beyond is 4e-6 of the mass
 constexpr double lobe_cut = 0.5 * 2.5 * 2.5;
-constexpr double gaussian_lobe = 0.7506;  // t = 1 - x / (exp(x) - 1), x = lobe_cut t
+constexpr double gaussian_lobe = 0.7525;  // t = 1 - x / (exp(x) - 1), x = lobe_cut t
 constexpr int rounds_of_scale = 3;
 constexpr int steps_to_peak = 20;
 

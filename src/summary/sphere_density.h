@@ -73,7 +73,7 @@ class SphereKernel {
 ///   - the scale of all draws, 1/sigma^2 = R (3 - R^2) / (1 - R^2) (R: length of their mean);
 ///   - the scale of the densest lobe: with s = 1 - cos(distance from the peak), the mean of s
 ///     over draws with s < 2.5^2 s_mean / 2, solved for itself; a Gaussian lobe gives
-///     0.7506 sigma^2 (derived in DEVELOPERS.md).
+///     0.7525 sigma^2 (derived in DEVELOPERS.md).
 ///
 /// h is at least a cell of nside 64 (0.92 deg). Values and gradients are tabulated on a HEALPix
 /// grid of nside 32 or 64 (cells below h/4) for levels and areas; `at` is the kernel sum
