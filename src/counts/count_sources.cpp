@@ -160,7 +160,7 @@ SurveyCounts count_survey(const SurveyInput& survey,
     if (!rows.selecting_bins.empty()) {
         count_rows(selection, cuts, tallies, progress);
     } else if (!survey.catalogue.empty()) {
-        cuts.report.warnings.push_back(
+        cuts.report.warnings.emplace_back(
             "the catalogue is not read for counting: every bin has a count map");
     }
     for (std::size_t bin = 0; bin < survey.bins.size(); ++bin)
