@@ -12,6 +12,12 @@
 
 namespace deviascope {
 
+/// A Gaussian in the coordinates of a target: N(mean, factor factor^T).
+struct CoordinateGaussian {
+    Eigen::VectorXd mean;    ///< n_coordinates
+    Eigen::MatrixXd factor;  ///< n_coordinates x n_coordinates, lower triangular, diagonal > 0
+};
+
 /// A density to sample. The sampler knows no astronomy: it moves *coordinates* (n_coordinates
 /// doubles a walker) and stores *parameters* (one row a walker).
 ///
@@ -51,6 +57,10 @@ class Target {
     /// One attempt at a starting point, over-dispersed about the expected posterior. It may lie
     /// outside the support; the caller tries again with the next attempt's stream.
     virtual void draw_start(Stream& stream, Eigen::Ref<Eigen::VectorXd> coordinates) const = 0;
+
+    /// A Gaussian that stands for the target in the independence kernel; null where the target
+    /// offers none. Fixed: the same at every call.
+    virtual const CoordinateGaussian* approximation() const { return nullptr; }
 };
 
 }  // namespace deviascope
