@@ -6,17 +6,13 @@
 #include "app/output_folder.h"
 #include "app/steps.h"
 #include "app/terminal.h"
-#include "deviascope/core/parallel.h"
+#include "deviascope/chain/chain_file.h"
 
 namespace deviascope {
 
 namespace fs = std::filesystem;
 
 namespace {
-
-int threads_of(const CommandOptions& options) {
-    return options.threads > 0 ? options.threads : default_threads();
-}
 
 /// Where a command on a job file writes by default: a folder named after the job, here.
 fs::path folder_of(const CommandOptions& options) {
@@ -50,7 +46,7 @@ ExitCode sample_command(const CommandOptions& options) {
     const InputRecord inputs = record_inputs(job, terminal);
     const CountsFile file = obtain_counts(job, inputs, folder, options.replace, terminal);
     const Outcome outcome =
-        sample_into_chain(job, inputs, file.counts, folder, threads_of(options), terminal);
+        sample_into_chain(job, inputs, file.counts, folder, options, terminal);
     if (outcome.end == Outcome::End::interrupted) return ExitCode::interrupted;
     const bool doubtful = outcome.end != Outcome::End::converged;
     return doubtful && options.strict ? ExitCode::doubtful : ExitCode::done;
@@ -58,12 +54,11 @@ ExitCode sample_command(const CommandOptions& options) {
 
 ExitCode summarise_command(const CommandOptions& options) {
     Terminal terminal(options.quiet);
-    const fs::path folder =
-        options.output.empty() ? options.input.parent_path() : options.output;
-    prepare_output(
-        folder.empty() ? "." : folder, {"summary.json", "summary.txt"}, options.replace);
-    return verdict(summarise_into(options.input, folder, threads_of(options), terminal),
-                   options);
+    const Chain chain = read_chain(options.input);
+    const fs::path beside = options.input.has_parent_path() ? options.input.parent_path() : ".";
+    const fs::path folder = options.output.empty() ? beside : options.output;
+    prepare_output(folder, {"summary.json", "summary.txt"}, options.replace);
+    return verdict(summarise_into(chain, folder, options.n_threads(), terminal), options);
 }
 
 ExitCode run_command(const CommandOptions& options) {
@@ -75,10 +70,10 @@ ExitCode run_command(const CommandOptions& options) {
     const InputRecord inputs = record_inputs(job, terminal);
     const CountsFile file = make_counts(job, inputs, folder, terminal);
     const Outcome outcome =
-        sample_into_chain(job, inputs, file.counts, folder, threads_of(options), terminal);
+        sample_into_chain(job, inputs, file.counts, folder, options, terminal);
     if (outcome.end == Outcome::End::interrupted) return ExitCode::interrupted;
-    return verdict(summarise_into(folder / "chains.h5", folder, threads_of(options), terminal),
-                   options);
+    const Chain chain = read_chain(folder / "chains.h5");
+    return verdict(summarise_into(chain, folder, options.n_threads(), terminal), options);
 }
 
 }  // namespace deviascope

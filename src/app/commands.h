@@ -5,6 +5,7 @@
 #include <filesystem>
 
 #include "deviascope/core/error.h"
+#include "deviascope/core/parallel.h"
 
 namespace deviascope {
 
@@ -16,6 +17,9 @@ struct CommandOptions {
     bool quiet = false;
     bool replace = false;
     bool strict = false;
+
+    /// Threads to use.
+    int n_threads() const { return threads > 0 ? threads : default_threads(); }
 };
 
 /// One function a command; each returns the exit code of a run that did not fail.

@@ -8,6 +8,9 @@ namespace deviascope {
 /// closed pipe on standard output no longer kills the program.
 void watch_for_interrupts();
 
+/// What a step throws that ends because a clean end was asked for and leaves nothing behind.
+struct Interrupted {};
+
 /// Whether a clean end was asked for.
 bool interrupt_requested();
 

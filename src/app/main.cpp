@@ -1,13 +1,21 @@
 // SPDX-License-Identifier: GPL-2.0-or-later
 // APP: the command line, and the one place that turns errors into exit codes
+#include <fmt/format.h>
+#include <fmt/ranges.h>
+
 #include <CLI/CLI.hpp>
+#include <algorithm>
 #include <cstdio>
 #include <exception>
 #include <functional>
+#include <new>
+#include <stdexcept>
 #include <string>
 
 #include "app/commands.h"
 #include "app/interrupt.h"
+#include "deviascope/core/error.h"
+#include "deviascope/core/nearest_name.h"
 #include "deviascope/core/version.h"
 
 namespace {
@@ -20,7 +28,7 @@ using Action = std::function<ExitCode(const CommandOptions&)>;
 struct Command {
     const char* name;
     const char* description;
-    const char* input;  ///< name of its argument in the help
+    const char* input;  ///< name of its argument
     const char* input_description;
     const char* output_description;
     bool strict;  ///< takes --strict
@@ -74,9 +82,9 @@ void add_command(CLI::App& program,
                  CommandOptions& options,
                  Action& chosen) {
     CLI::App* sub = program.add_subcommand(command.name, command.description);
-    sub->add_option("input", options.input, command.input_description)
+    sub->add_option(command.input, options.input, command.input_description)
         ->required()
-        ->option_text(command.input);
+        ->option_text(" ");
     sub->add_option("-o,--output", options.output, command.output_description)
         ->option_text("DIR");
     sub->add_option(
@@ -95,6 +103,21 @@ int fail(ExitCode code, const std::string& text) {
     return static_cast<int>(code);
 }
 
+/// Refuses a first word that is no command, with the nearest one: the parser would only say
+/// that a command is missing.
+void check_command(int argc, char** argv) {
+    if (argc < 2 || argv[1][0] == '-') return;
+    std::vector<std::string> known;
+    for (const Command& command : commands()) known.emplace_back(command.name);
+    if (std::find(known.begin(), known.end(), argv[1]) != known.end()) return;
+    const std::string nearest = deviascope::nearest_name(argv[1], known);
+    throw deviascope::UsageError(
+        {"command line",
+         fmt::format("there is no command \"{}\"", argv[1]),
+         fmt::format("the commands are {}", fmt::join(known, ", ")),
+         nearest.empty() ? "see deviascope --help" : fmt::format("did you mean {}?", nearest)});
+}
+
 int parse_and_act(int argc, char** argv) {
     CLI::App program{
         "Tells the observer's velocity and an intrinsic dipole apart in counts of distant "
@@ -106,6 +129,7 @@ int parse_and_act(int argc, char** argv) {
         "Exit codes: 0 done; 2 wrong command line or job file; 3 bad input data; 4 numerics "
         "cannot\n"
         "go on; 5 cannot write; 6 doubtful (--strict); 70 a fault of ours; 130 interrupted.");
+    check_command(argc, argv);
     CommandOptions options;
     Action chosen;
     for (const Command& command : commands()) add_command(program, command, options, chosen);
@@ -119,6 +143,12 @@ int parse_and_act(int argc, char** argv) {
     return static_cast<int>(chosen(options));
 }
 
+int not_enough_memory() {
+    return fail(ExitCode::numerics,
+                "memory: there is not enough; a lower nside, fewer replicates or fewer walkers "
+                "need less");
+}
+
 }  // namespace
 
 int main(int argc, char** argv) {
@@ -127,9 +157,13 @@ int main(int argc, char** argv) {
         return parse_and_act(argc, argv);
     } catch (const deviascope::Error& error) {
         return fail(error.exit_code(), error.what());
+    } catch (const deviascope::Interrupted&) {
+        return fail(ExitCode::interrupted,
+                    "interrupted while files were read; nothing is kept");
     } catch (const std::bad_alloc&) {
-        return fail(ExitCode::numerics,
-                    "memory: there is not enough; a lower nside or fewer walkers need less");
+        return not_enough_memory();
+    } catch (const std::length_error&) {
+        return not_enough_memory();
     } catch (const std::exception& error) {
         return fail(ExitCode::internal,
                     std::string("an unexpected fault: ") + error.what() +

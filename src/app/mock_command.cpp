@@ -5,7 +5,6 @@
 #include "app/interrupt.h"
 #include "app/terminal.h"
 #include "deviascope/core/grouped_number.h"
-#include "deviascope/core/parallel.h"
 #include "deviascope/job/scenario_file.h"
 #include "deviascope/mock/write_mock.h"
 
@@ -15,7 +14,7 @@ ExitCode mock_command(const CommandOptions& options) {
     Terminal terminal(options.quiet);
     const Scenario scenario = read_scenario(options.input);
     MockOptions mock;
-    mock.threads = options.threads > 0 ? options.threads : default_threads();
+    mock.threads = options.n_threads();
     mock.stop_requested = interrupt_requested;
     mock.progress = terminal.progress();
     const std::filesystem::path folder =

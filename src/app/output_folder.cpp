@@ -2,9 +2,9 @@
 #include "app/output_folder.h"
 
 #include <fmt/format.h>
+#include <fmt/ranges.h>
 
 #include <cerrno>
-#include <cstring>
 #include <fstream>
 #include <system_error>
 
@@ -19,12 +19,37 @@ namespace {
 void make_folder(const fs::path& folder) {
     std::error_code failure;
     fs::create_directories(folder, failure);
-    if (fs::is_directory(folder)) return;
+    std::error_code ignored;
+    if (fs::is_directory(folder, ignored)) return;
     const std::string reason = failure ? failure.message() : "a file of that name is there";
     throw OutputError({folder.string(),
                        fmt::format("the folder cannot be made ({})", reason),
                        "a folder that can be made or written to",
                        "name another one with -o"});
+}
+
+/// Those of the files that are in the folder.
+std::vector<std::string> present_in(const fs::path& folder,
+                                    const std::vector<std::string>& files) {
+    std::vector<std::string> present;
+    for (const std::string& file : files) {
+        std::error_code failure;
+        const fs::file_status status = fs::symlink_status(folder / file, failure);
+        if (fs::is_directory(status))
+            throw OutputError({(folder / file).string(),
+                               "a folder stands where a result goes",
+                               "",
+                               "move it away, or name another folder with -o"});
+        if (fs::exists(status)) present.push_back(file);
+    }
+    return present;
+}
+
+OutputError cannot_write(const fs::path& path, const std::string& reason) {
+    return OutputError({path.string(),
+                        fmt::format("cannot be written ({})", reason),
+                        "a writable folder with room",
+                        ""});
 }
 
 }  // namespace
@@ -33,20 +58,20 @@ void prepare_output(const fs::path& folder,
                     const std::vector<std::string>& files,
                     bool replace) {
     make_folder(folder);
-    std::string existing;
-    for (const std::string& file : files) {
-        if (!fs::exists(folder / file)) continue;
-        if (replace) {
-            fs::remove(folder / file);
-        } else {
-            existing += (existing.empty() ? "" : ", ") + file;
-        }
-    }
-    if (existing.empty()) return;
+    const std::vector<std::string> present = present_in(folder, files);
+    if (replace || present.empty()) return;
     throw OutputError({folder.string(),
-                       fmt::format("already holds {}", existing),
+                       fmt::format("already holds {}", fmt::join(present, ", ")),
                        "nothing that exists is overwritten unasked",
                        "give --replace, or another folder with -o"});
+}
+
+void remove_results(const fs::path& folder, const std::vector<std::string>& files) {
+    for (const std::string& file : present_in(folder, files)) {
+        std::error_code failure;
+        fs::remove(folder / file, failure);
+        if (failure) throw cannot_write(folder / file, failure.message());
+    }
 }
 
 void write_text(const fs::path& path, const std::string& text) {
@@ -54,15 +79,12 @@ void write_text(const fs::path& path, const std::string& text) {
     std::ofstream file(temporary, std::ios::binary);
     file << text;
     file.close();
-    const int reason = errno;
-    std::error_code failure;
+    std::error_code failure(errno, std::generic_category());
     if (file) fs::rename(temporary, path, failure);
     if (file && !failure) return;
-    fs::remove(temporary, failure);
-    throw OutputError({path.string(),
-                       fmt::format("cannot be written ({})", std::strerror(reason)),
-                       "a writable folder with room",
-                       ""});
+    std::error_code ignored;
+    fs::remove(temporary, ignored);
+    throw cannot_write(path, failure.message());
 }
 
 }  // namespace deviascope

@@ -9,11 +9,16 @@
 namespace deviascope {
 
 /// Makes the folder if it is not there and checks that none of `files` is in it already.
-/// With `replace`, existing ones are removed instead.
-/// Errors: OutputError (cannot be made; a file stands there; names all files that exist).
+/// With `replace` they may be there; they stay until new ones take their place, so that a run
+/// that fails on its way costs nothing.
+/// Errors: OutputError (cannot be made; a file stands there; names all files that exist; a
+/// folder stands in the place of one).
 void prepare_output(const std::filesystem::path& folder,
                     const std::vector<std::string>& files,
                     bool replace);
+
+/// Removes those of `files` that are in the folder. Errors: OutputError.
+void remove_results(const std::filesystem::path& folder, const std::vector<std::string>& files);
 
 /// Writes a text file under a temporary name and puts it in place. Errors: OutputError.
 void write_text(const std::filesystem::path& path, const std::string& text);

@@ -84,6 +84,15 @@ void report_outcome(const Outcome& outcome, double seconds, Terminal& terminal) 
                     seconds));
 }
 
+/// Readers of long files ask nobody whether to go on; where they tell how far they are, a
+/// request to end can be heard.
+Progress ending_on_request(Progress show) {
+    return [show = std::move(show)](const std::string& line) {
+        if (interrupt_requested()) throw Interrupted();
+        if (show) show(line);
+    };
+}
+
 Job job_of(const Chain& chain) {
     const auto finder = [&](const std::string& name) -> std::optional<Companion> {
         for (const Companion& companion : chain.provenance.companions)
@@ -98,7 +107,7 @@ Job job_of(const Chain& chain) {
 InputRecord record_inputs(const Job& job, Terminal& terminal) {
     for (const std::string& warning : job.warnings) terminal.warn(warning);
     InputRecord record;
-    record.files = digests_of_inputs(job);
+    record.files = digests_of_inputs(job, ending_on_request(terminal.progress()));
     record.counts_digest = digest_of_inputs(job, record.files);
     return record;
 }
@@ -115,7 +124,7 @@ CountsFile make_counts(const Job& job,
     const Pixelisation grid(job.nside);
     for (const SurveyInput& survey : job.surveys) {
         file.counts.surveys.push_back(
-            count_survey(survey, grid, job.frame, terminal.progress()));
+            count_survey(survey, grid, job.frame, ending_on_request(terminal.progress())));
         const SurveyCounts& counted = file.counts.surveys.back();
         terminal.say(fmt::format("Counted {}: {} of {} rows and {} of {} pixels kept.",
                                  counted.name,
@@ -123,7 +132,8 @@ CountsFile make_counts(const Job& job,
                                  grouped(counted.cuts.rows_read),
                                  grouped(counted.cuts.pixels_kept),
                                  grouped(counted.cuts.pixels_total)));
-        for (const std::string& warning : counted.cuts.warnings) terminal.warn(warning);
+        for (const std::string& warning : counted.cuts.warnings)
+            terminal.warn(fmt::format("{}: {}", counted.name, warning));
     }
     write_counts(folder / "counts.h5", file);
     return file;
@@ -155,14 +165,15 @@ Outcome sample_into_chain(const Job& job,
                           const InputRecord& inputs,
                           const Counts& counts,
                           const fs::path& folder,
-                          int threads,
+                          const CommandOptions& command,
                           Terminal& terminal) {
     const Posterior posterior(counts, job.model);
     EnsembleOptions options = job.ensemble;
     options.seed = job.seed;
-    options.threads = threads;
+    options.threads = command.n_threads();
     options.stop_requested = interrupt_requested;
     options.progress = terminal.progress();
+    if (command.replace) remove_results(folder, {"chains.h5", "summary.json", "summary.txt"});
     terminal.say(fmt::format("Sampling {} coordinates with {} ensembles of {} walkers.",
                              posterior.n_coordinates(),
                              options.replicates,
@@ -181,17 +192,16 @@ Outcome sample_into_chain(const Job& job,
     return outcome;
 }
 
-Summary summarise_into(const fs::path& chain_path,
+Summary summarise_into(const Chain& chain,
                        const fs::path& folder,
                        int threads,
                        Terminal& terminal) {
-    const Chain chain = read_chain(chain_path);
     const Job job = job_of(chain);
     SummaryOptions options;
     options.title = job.title;
     options.seed = job.seed;
-    options.cmb_velocity = cmb_velocity(
-        cmb_prior(chain.provenance.companions, chain_path.parent_path()), job.frame);
+    options.cmb_velocity =
+        cmb_velocity(cmb_prior(chain.provenance.companions, folder), job.frame);
     options.job_warnings = job.warnings;
     options.threads = threads;
     options.effective_draws_wanted = job.ensemble.effective_draws;

@@ -4,6 +4,7 @@
 
 #include <filesystem>
 
+#include "app/commands.h"
 #include "app/terminal.h"
 #include "deviascope/chain/chain.h"
 #include "deviascope/counts/counts_file.h"
@@ -20,9 +21,11 @@ struct InputRecord {
     std::vector<InputDigest> files;
     std::string counts_digest;
 };
+/// Errors: Interrupted while files are read.
 InputRecord record_inputs(const Job& job, Terminal& terminal);
 
 /// catalogue -> counts: counts every survey and writes counts.h5.
+/// Errors: Interrupted while catalogues are read.
 CountsFile make_counts(const Job& job,
                        const InputRecord& inputs,
                        const std::filesystem::path& folder,
@@ -36,16 +39,18 @@ CountsFile obtain_counts(const Job& job,
                          bool replace,
                          Terminal& terminal);
 
-/// counts -> model -> ensemble -> chain: samples the posterior into chains.h5.
+/// counts -> model -> ensemble -> chain: samples the posterior into chains.h5. With
+/// `options.replace`, a chain that is there gives way once all is ready for the new one, and
+/// its summary with it.
 Outcome sample_into_chain(const Job& job,
                           const InputRecord& inputs,
                           const Counts& counts,
                           const std::filesystem::path& folder,
-                          int threads,
+                          const CommandOptions& options,
                           Terminal& terminal);
 
-/// chain -> summary: reads a chain and writes summary.json and summary.txt into the folder.
-Summary summarise_into(const std::filesystem::path& chain,
+/// chain -> summary: writes summary.json and summary.txt of a chain into the folder.
+Summary summarise_into(const Chain& chain,
                        const std::filesystem::path& folder,
                        int threads,
                        Terminal& terminal);

@@ -11,6 +11,7 @@
 #include <vector>
 
 #include "deviascope/core/error.h"
+#include "deviascope/core/grouped_number.h"
 
 namespace deviascope {
 
@@ -123,7 +124,7 @@ std::string digest_of(std::string_view text) {
     return digest.hex();
 }
 
-std::string digest_of_file(const std::filesystem::path& path) {
+std::string digest_of_file(const std::filesystem::path& path, const Progress& progress) {
     const auto cannot = [&](const char* reason) {
         return InputError({path.string(),
                            fmt::format("cannot be read ({})", reason),
@@ -134,9 +135,12 @@ std::string digest_of_file(const std::filesystem::path& path) {
     if (!file) throw cannot(std::strerror(errno));
     Digest digest;
     std::vector<char> buffer(std::size_t{1} << 20U);
-    while (file) {
+    for (std::int64_t megabytes = 1; file; ++megabytes) {
         file.read(buffer.data(), static_cast<std::streamsize>(buffer.size()));
         digest.add(std::string_view(buffer.data(), static_cast<std::size_t>(file.gcount())));
+        if (progress)
+            progress(fmt::format(
+                "{}: {} MiB digested", path.filename().string(), grouped(megabytes)));
     }
     if (file.bad()) throw cannot(std::strerror(errno));
     return digest.hex();

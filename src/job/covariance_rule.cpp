@@ -28,7 +28,7 @@ bool is_positive_definite(const Eigen::MatrixXd& covariance, bool constants) {
     const Eigen::VectorXd eigenvalues =
         Eigen::SelfAdjointEigenSolver<Eigen::MatrixXd>(correlation, Eigen::EigenvaluesOnly)
             .eigenvalues();
-    return eigenvalues.minCoeff() > 1e-14 * eigenvalues.maxCoeff();
+    return eigenvalues.minCoeff() > 1e-12 * eigenvalues.maxCoeff();
 }
 
 }  // namespace

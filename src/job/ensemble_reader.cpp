@@ -11,7 +11,7 @@ namespace deviascope {
 
 namespace {
 
-constexpr std::int64_t any_integer = std::numeric_limits<std::int64_t>::max();
+constexpr std::int64_t most_steps = 1'000'000'000'000;
 
 KernelFractions read_kernels(const TomlTable& table) {
     KernelFractions fractions;
@@ -61,6 +61,14 @@ int read_walkers(const TomlTable& table, const std::optional<Eigen::Index>& n_co
     return static_cast<int>(*walkers);
 }
 
+std::int64_t read_store_every(const TomlTable& table, std::int64_t max_steps) {
+    const auto store_every = table.integer("store_every", 0, most_steps);
+    if (!store_every) return 0;
+    if (*store_every > max_steps)
+        table.wrong("store_every", fmt::format("0, or at most max_steps ({})", max_steps));
+    return *store_every;
+}
+
 }  // namespace
 
 Eigen::Index n_coordinates_of(const ModelOptions& model) {
@@ -83,9 +91,8 @@ EnsembleOptions read_ensemble(const TomlTable& table,
     options.walkers = read_walkers(table, n_coordinates);
     options.effective_draws =
         table.number("effective_draws", at_least(1)).value_or(options.effective_draws);
-    options.max_steps = table.integer("max_steps", 2, any_integer).value_or(options.max_steps);
-    options.store_every =
-        table.integer("store_every", 0, any_integer).value_or(options.store_every);
+    options.max_steps = table.integer("max_steps", 2, most_steps).value_or(options.max_steps);
+    options.store_every = read_store_every(table, options.max_steps);
     options.kernels = read_kernels(table);
     return options;
 }

@@ -113,13 +113,13 @@ std::string digest_of_inputs(const Job& job, const std::vector<InputDigest>& inp
     return text.digest();
 }
 
-std::vector<InputDigest> digests_of_inputs(const Job& job) {
+std::vector<InputDigest> digests_of_inputs(const Job& job, const Progress& progress) {
     std::vector<InputDigest> digests;
     for (const InputFile& input : job.inputs) {
         std::error_code failure;
         const auto bytes = std::filesystem::file_size(input.path, failure);
         digests.push_back({input.written,
-                           digest_of_file(input.path),
+                           digest_of_file(input.path, progress),
                            failure ? 0 : static_cast<std::int64_t>(bytes)});
     }
     return digests;

@@ -20,15 +20,20 @@ namespace {
 
 constexpr std::int64_t largest_integer = std::numeric_limits<std::int64_t>::max();
 
-/// Hypotheses that every comparison knows already (design section 6).
+/// Hypotheses that every comparison knows already.
 const std::vector<std::string> built_in_hypotheses = {
     "reference", "reference-intrinsic", "free", "free-intrinsic"};
 
 int read_nside(const TomlTable& table) {
-    const auto nside = table.integer("nside", 1, largest_integer, required);
+    const std::string allowed = "a power of two from 1 to 1024";
+    if (!table.has("nside")) {
+        table.fault("nside", "missing", allowed + " is required");
+        return 0;
+    }
+    const auto nside = table.integer("nside", 1, largest_integer);
     if (!nside) return 0;
     if (*nside <= 1024 && Pixelisation::is_valid_nside(*nside)) return static_cast<int>(*nside);
-    table.wrong("nside", "a power of two from 1 to 1024");
+    table.wrong("nside", allowed);
     return 0;
 }
 

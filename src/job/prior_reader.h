@@ -12,7 +12,7 @@
 namespace deviascope {
 
 /// The prior that a table (inline, or a whole prior file) describes, in the job's frame; the
-/// keys of each kind are those of design section 4.
+/// keys of each kind are those of the README.
 /// @param name  of the prior file; empty: the kind's
 std::optional<VectorPrior> read_vector_prior(const TomlTable& table,
                                              const std::string& name,

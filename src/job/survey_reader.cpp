@@ -140,6 +140,16 @@ BinModel read_bin_model(const TomlTable& bin) {
     return model;
 }
 
+/// A fixed dipole times the bias of a bin must stay shorter than 1.
+void check_wall(const TomlTable& bin, double bias, const std::optional<VectorPrior>& prior) {
+    const auto* fixed = prior ? std::get_if<FixedPrior>(&prior->kind()) : nullptr;
+    if (fixed != nullptr && bias * fixed->value.norm() >= 1.0)
+        bin.wrong(
+            "bias",
+            fmt::format("a number below {:.6g}, the inverse of the fixed intrinsic dipole,",
+                        1.0 / fixed->value.norm()));
+}
+
 /// The survey's own intrinsic prior, else the job's.
 std::optional<VectorPrior> read_own_prior(const TomlTable& survey,
                                           const std::optional<VectorPrior>& intrinsic,
@@ -154,17 +164,6 @@ std::optional<VectorPrior> read_own_prior(const TomlTable& survey,
         return intrinsic;
     }
     return surroundings.read_prior(survey, "prior", job_frame, required);
-}
-
-void warn_of_idle_catalogue(SurveyReading& reading) {
-    const auto& bins = reading.input.bins;
-    const bool idle = !reading.input.catalogue.empty() && !bins.empty() &&
-                      std::all_of(bins.begin(), bins.end(), [](const BinInput& bin) {
-                          return bin.counts.has_value();
-                      });
-    if (!idle) return;
-    reading.warnings.push_back(fmt::format(
-        "survey {}: no bin selects from its catalogue, all have counts", reading.input.name));
 }
 
 }  // namespace
@@ -187,13 +186,13 @@ SurveyReading read_survey(const TomlTable& table,
         reading.input.bins.push_back(
             read_bin_input(bin, reading.input, table.has("catalogue"), bin_rule, surroundings));
         reading.model.bins.push_back(read_bin_model(bin));
+        check_wall(bin, reading.model.bins.back().bias_ratio, prior);
         bin_names.push_back(reading.input.bins.back().name);
     }
     WeightReading weights =
         read_weights(table, reading.input.name, bins, bin_names, surroundings);
     if (weights.prior) reading.model.weights = *weights.prior;
     reading.warnings = std::move(weights.warnings);
-    warn_of_idle_catalogue(reading);
     reading.model_complete = prior && weights.prior && !bins.empty();
     return reading;
 }

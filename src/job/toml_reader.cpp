@@ -197,8 +197,15 @@ void TomlDocument::finish() {
     std::stable_sort(faults_.begin(), faults_.end(), [](const Fault& a, const Fault& b) {
         return std::tie(a.place.line, a.place.column) < std::tie(b.place.line, b.place.column);
     });
+    // Two readers may look at one key: each fault is told once.
     std::vector<Message> messages;
-    for (const Fault& fault : faults_) messages.push_back(fault.message);
+    for (const Fault& fault : faults_) {
+        const std::string text = fault.message.text();
+        const bool told = std::any_of(messages.begin(), messages.end(), [&](const Message& m) {
+            return m.text() == text;
+        });
+        if (!told) messages.push_back(fault.message);
+    }
     throw UsageError(std::move(messages));
 }
 

@@ -17,7 +17,7 @@ struct WeightsFile {
     WeightPrior weights;
 };
 
-/// Errors: UsageError with all faults (design section 4; keys: see `read_weights`).
+/// Errors: UsageError with all faults (keys: see `read_weights`).
 WeightsFile parse_weights(const Companion& companion, const std::string& survey);
 
 }  // namespace deviascope

@@ -43,6 +43,12 @@ TEST_CASE("a wrong command line is one message and exit code 2", "[app]") {
     }
 }
 
+TEST_CASE("a word that is no command is answered with the nearest one", "[app]") {
+    CHECK(deviascope_with({"sumarise", "chains.h5"}).err ==
+          "deviascope: command line: there is no command \"sumarise\"; the commands are run, "
+          "count, sample, summarise, mock; did you mean summarise?\n");
+}
+
 TEST_CASE("a job file that is not there is exit code 2 and names the path", "[app]") {
     const ProcessResult result = deviascope_with({"run", "/nonexistent/dunlin.toml"});
     CHECK(result.exit_code == 2);
@@ -70,4 +76,8 @@ TEST_CASE("something that is no chain is exit code 3", "[app]") {
     const ProcessResult result = deviascope_with({"summarise", file.string()});
     CHECK(result.exit_code == 3);
     CHECK_THAT(result.err, Catch::Contains("chains.h5"));
+    CHECK(
+        deviascope_with({"summarise", (folder / "nowhere" / "chains.h5").string()}).exit_code ==
+        3);
+    CHECK_FALSE(std::filesystem::exists(folder / "nowhere"));
 }

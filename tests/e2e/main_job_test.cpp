@@ -93,6 +93,19 @@ TEST_CASE("one command turns a catalogue into counts, chain and summary", "[app]
         CHECK(second.exit_code == 5);
         CHECK_THAT(second.err, Catch::Contains("chains.h5") && Catch::Contains("--replace"));
     }
+    SECTION("a run with --replace that fails on its way costs nothing") {
+        folder.write("binnacle.csv", "ra,dec,s\n10,,1.5\n");
+        CHECK(run_job(folder, {"--replace"}).exit_code == 3);
+        CHECK(summary_in(folder / "out") == summary);
+        CHECK(read_chain(folder / "out" / "chains.h5").draws.n_rows > 0);
+    }
+    SECTION("what stands where a result goes is an output error") {
+        std::filesystem::remove(folder / "out" / "summary.txt");
+        std::filesystem::create_directories(folder / "out" / "summary.txt" / "inside");
+        const ProcessResult blocked = run_job(folder, {"--replace"});
+        CHECK(blocked.exit_code == 5);
+        CHECK_THAT(blocked.err, Catch::Contains("summary.txt"));
+    }
     SECTION("the chain file alone gives the same summary") {
         std::filesystem::remove(folder / "binnacle.csv");
         std::filesystem::copy(folder / "out" / "chains.h5", folder / "chains.h5");

@@ -8,8 +8,8 @@
 #include <vector>
 
 #include "deviascope/counts/count_map.h"
-#include "deviascope/model/model_options.h"
 #include "deviascope/sky/pixelisation.h"
+#include "survey_model.h"
 
 namespace even {
 
@@ -46,27 +46,6 @@ inline deviascope::Counts counts_of(int nside, const std::vector<Survey>& survey
     return counts;
 }
 
-inline deviascope::ModelOptions model_of(const std::vector<Survey>& surveys,
-                                         const deviascope::VectorPrior& velocity,
-                                         const deviascope::VectorPrior& intrinsic) {
-    deviascope::ModelOptions options;
-    options.velocity = velocity;
-    options.intrinsic = intrinsic;
-    for (const Survey& given : surveys) {
-        const auto n = static_cast<Eigen::Index>(given.bins.size());
-        deviascope::SurveyModel survey;
-        survey.weights.mean.resize(n);
-        survey.weights.covariance = Eigen::MatrixXd::Zero(n, n);
-        for (Eigen::Index b = 0; b < n; ++b) {
-            const Bin& bin = given.bins[static_cast<std::size_t>(b)];
-            survey.weights.mean[b] = bin.weight;
-            survey.weights.covariance(b, b) = bin.weight_sd * bin.weight_sd;
-            survey.bins.push_back({bin.bias_ratio, bin.dispersion});
-        }
-        survey.intrinsic = intrinsic;
-        options.surveys.push_back(std::move(survey));
-    }
-    return options;
-}
+using deviascope::test::make_model;
 
 }  // namespace even

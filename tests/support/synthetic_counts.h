@@ -12,8 +12,8 @@
 
 #include "deviascope/core/random.h"
 #include "deviascope/counts/count_map.h"
-#include "deviascope/model/model_options.h"
 #include "deviascope/sky/pixelisation.h"
+#include "survey_model.h"
 
 namespace synthetic {
 
@@ -107,29 +107,6 @@ inline deviascope::Counts make_counts(int nside,
     return counts;
 }
 
-/// The model that goes with such counts: one prior for the velocity, one for every intrinsic
-/// vector, weights Gaussian about the truth.
-inline deviascope::ModelOptions make_model(const std::vector<Survey>& surveys,
-                                           const deviascope::VectorPrior& velocity,
-                                           const deviascope::VectorPrior& intrinsic) {
-    deviascope::ModelOptions options;
-    options.velocity = velocity;
-    options.intrinsic = intrinsic;
-    for (const Survey& survey : surveys) {
-        deviascope::SurveyModel model;
-        const auto n = static_cast<Eigen::Index>(survey.bins.size());
-        model.weights.mean.resize(n);
-        model.weights.covariance = Eigen::MatrixXd::Zero(n, n);
-        for (Eigen::Index b = 0; b < n; ++b) {
-            const Bin& bin = survey.bins[static_cast<std::size_t>(b)];
-            model.weights.mean[b] = bin.weight;
-            model.weights.covariance(b, b) = bin.weight_sd * bin.weight_sd;
-            model.bins.push_back({bin.bias_ratio, bin.dispersion});
-        }
-        model.intrinsic = intrinsic;
-        options.surveys.push_back(std::move(model));
-    }
-    return options;
-}
+using deviascope::test::make_model;
 
 }  // namespace synthetic

@@ -9,6 +9,8 @@
 #include <string>
 #include <string_view>
 
+#include "deviascope/core/progress.h"
+
 namespace deviascope {
 
 /// SHA-256 (FIPS 180-4) of bytes that arrive in pieces.
@@ -32,7 +34,7 @@ class Digest {
 /// Digest of a text.
 std::string digest_of(std::string_view text);
 
-/// Digest of a file's bytes. Errors: InputError if it cannot be read.
-std::string digest_of_file(const std::filesystem::path& path);
+/// Digest of a file's bytes. Errors: InputError if it cannot be read; what `progress` throws.
+std::string digest_of_file(const std::filesystem::path& path, const Progress& progress = {});
 
 }  // namespace deviascope

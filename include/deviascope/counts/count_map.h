@@ -20,7 +20,7 @@ struct Footprint {
 
     /// Sky fraction: kept pixels over all pixels of the grid.
     double sky_fraction(const Pixelisation& grid) const;
-    /// Sum of exposures times the pixel solid angle: E0 of design section 3, steradian.
+    /// Sum of exposures times the pixel solid angle: E0 of the likelihood, steradian.
     double exposed_solid_angle(const Pixelisation& grid) const;
 };
 

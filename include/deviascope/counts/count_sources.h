@@ -28,7 +28,7 @@ namespace deviascope {
 /// Errors: InputError: bad positions (unless skipped), a source in two bins (count, first five
 /// rows), a map that does not fit, an exposure outside 0 … 1, a count map in another frame or
 /// coarser, with a value that is no count or none where the bin is exposed; no pixel left; more
-/// than 2^32 - 1 sources in a pixel. Memory: one chunk of rows, the maps, the counts.
+/// than 2^32 - 1 sources in a pixel; what `progress` throws. Memory: one chunk, maps, counts.
 /// Threads: main thread only.
 SurveyCounts count_survey(const SurveyInput& survey,
                           const Pixelisation& grid,

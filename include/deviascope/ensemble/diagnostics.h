@@ -44,8 +44,8 @@ struct EffectiveDraws {
 };
 EffectiveDraws effective_draws(const Eigen::Ref<const Eigen::MatrixXd>& chains);
 
-/// Convergence numbers of one scalar, as design section 5 defines them. All NaN where the
-/// scalar is constant or has fewer than 4 rows.
+/// Convergence numbers of one scalar (DEVELOPERS.md, "Warm-up, looks and the end"). All NaN
+/// where the scalar is constant or has fewer than 4 rows.
 struct ScalarDiagnostics {
     static constexpr double unknown = std::numeric_limits<double>::quiet_NaN();
     std::string name;

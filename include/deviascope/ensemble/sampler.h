@@ -20,7 +20,7 @@ struct Outcome {
     KernelTally tally;
 };
 
-/// Samples a target: warm-up, looks and stopping rule of design section 5.
+/// Samples a target: warm-up, looks and stopping rule as in DEVELOPERS.md.
 ///
 /// Two halves, each moved using the other (Goodman & Weare 2010, CAMCoS 5, 65, parallel
 /// variant), kernels drawn per walker and step: stretch (same source), differential-evolution

@@ -40,7 +40,7 @@ struct Job {
 };
 
 /// Finds the text of a prior (by name) or weights file (by path as written); empty where there
-/// is none. The default searches the disk (design section 4); a chain answers from what it
+/// is none. The default searches the disk (README, "Priors"); a chain answers from what it
 /// keeps.
 using CompanionFinder = std::function<std::optional<Companion>(const std::string& name)>;
 
@@ -68,7 +68,7 @@ VectorPrior parse_prior(const Companion& companion, Frame job_frame);
 std::string digest_of_inputs(const Job& job, const std::vector<InputDigest>& inputs);
 
 /// Digests of all input files of a job, in the order of `Job::inputs`.
-/// Errors: InputError if one cannot be read.
-std::vector<InputDigest> digests_of_inputs(const Job& job);
+/// Errors: InputError if one cannot be read; what `progress` throws.
+std::vector<InputDigest> digests_of_inputs(const Job& job, const Progress& progress = {});
 
 }  // namespace deviascope

@@ -14,8 +14,8 @@ namespace deviascope {
 /// at given parameters, in all parameters of a row (ParameterSpace order; monopoles as ln M),
 /// constants and redrawn ones included:
 ///
-///   score       = sum_p (n_p - lambda_p) g_p / phi,   information = sum_p lambda_p g_p g_p^T /
-///   phi g = d ln lambda / d theta:  velocity B n / (1 - beta.n) - B gamma^2 beta,
+///   score = sum_p (n_p - lambda_p) g_p / phi,  information = sum_p lambda_p g_p g_p^T / phi,
+///   g = d ln lambda / d theta:  velocity B n / (1 - beta.n) - B gamma^2 beta,
 ///       intrinsic r n / (1 + r D.n),  weight -ln gamma - ln(1 - beta.n),  ln M 1
 struct Derivatives {
     Eigen::VectorXd score;        ///< n_parameters
@@ -25,7 +25,7 @@ struct Derivatives {
 /// @param parameters   a full row, inside the walls; a monopole that is NaN is taken as
 ///                     N_b / E_b at the rest (its maximum)
 /// @param only_survey  terms of that survey alone; all where negative
-/// Source: design section 6; McCullagh & Nelder 1989 for the dispersion.
+/// Source: the derivatives of the README's lambda; McCullagh & Nelder 1989 for the dispersion.
 Derivatives derivatives(const Counts& counts,
                         const ParameterSpace& space,
                         const Eigen::Ref<const Eigen::VectorXd>& parameters,

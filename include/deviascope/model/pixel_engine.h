@@ -11,7 +11,7 @@
 namespace deviascope {
 
 /// The reference engine: sums over pixels. With y_p = ln(lambda_p / lambda0_p)
-///   = -B ln gamma - B log1p(-beta.n_p) + log1p(r D.n_p)      (all in design section 3)
+///   = -B ln gamma - B log1p(-beta.n_p) + log1p(r D.n_p)      (symbols of the README)
 /// it gives, for a bin, X_b = sum_p n_p y_p and ln(E_b / E0_b),
 ///   E_b = Omega sum_p w_p exp(y_p),  E0_b = Omega sum_p w_p.
 /// E_b / E0_b - 1 is summed as sum_p w_p expm1(y_p + B ln gamma) / sum_p w_p, so that a small

@@ -16,8 +16,8 @@ namespace deviascope {
 ///   ln L_b = [X_b - (N_b + a) ln((E_b + b) / (E0_b + b))]   with N_b, X_b, E_b divided by
 ///   phi_b,
 /// or sampled: X_b + N_b [u - expm1(u + ln(E_b/E0_b))], u = ln(M_b E0_b / N_b), likewise over
-/// phi_b (N_b = 0: -M_b E_b + ... see the source). Log posterior: plus the normalised log prior
-/// density in the coordinates. Errors (constructor): InputError where a bin is empty under a
+/// phi_b; -M_b E_b where N_b = 0. Log posterior: plus the normalised log prior density
+/// in the coordinates. Errors (constructor): InputError where a bin is empty under a
 /// prior of shape 0.
 class Posterior : public Target {
   public:

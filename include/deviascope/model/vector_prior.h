@@ -56,7 +56,7 @@ GaussianPrior gaussian_of(const MeasuredVelocity& measured, Frame job_frame);
 /// unit.
 ///
 /// Every density has |v| < 1 as a hard wall (log density -inf outside).
-/// The sampler moves *coordinates* (design section 4): the vector itself, except
+/// The sampler moves *coordinates* (DEVELOPERS.md): the vector itself, except
 ///   uniform-amplitude: u with v = u |u|^2 / max^2, flat in the ball |u| < max;
 ///   axis: one coordinate, the amplitude;   fixed: none.
 class VectorPrior {
@@ -100,7 +100,7 @@ class VectorPrior {
     /// of 100,000 keyed draws of (seed, prior_draw; 0, draw, 0).
     double median_amplitude(std::uint64_t seed) const;
 
-    /// Covariance of the vector as design section 6 counts it for the separation:
+    /// Covariance of the vector as the separation of the summary counts it:
     /// uniform-vector max^2/5, uniform-amplitude max^2/9 a component, gaussian its own, axis
     /// max^2/12 along the axis, fixed 0.
     Eigen::Matrix3d covariance() const;

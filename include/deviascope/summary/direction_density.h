@@ -12,7 +12,7 @@
 namespace deviascope {
 
 /// The posterior density of a direction on the sphere, estimated from draws; one estimate
-/// serves summary and figures (figures.md of the design, "On the sphere").
+/// serves summary and figures.
 ///
 /// Compact posteriors (the draws' 95.45 % radius about the mean direction below 40 deg and mean
 /// length >= 0.2): Gaussian kernel in whitened Lambert equal-area tangent coordinates about the

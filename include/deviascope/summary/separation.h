@@ -13,7 +13,7 @@
 namespace deviascope {
 
 /// How far the bins, rather than the priors, separate velocity and intrinsic dipole.
-/// Definitions: design section 6, "Separation".
+/// Definitions: README, "The summary, number by number".
 struct SeparationEntry {
     std::optional<double> weight_spread;  ///< per survey only
     std::optional<double>

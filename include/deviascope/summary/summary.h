@@ -90,7 +90,7 @@ struct SummaryOptions {
     int threads = 1;
 };
 
-/// Numbers from draws; definitions in design section 6.
+/// Numbers from draws; definitions in the README, "The summary, number by number".
 ///
 /// Evaluations: every proposal is one evaluation of the log density, by the pixel engine.
 /// Errors: InputError where the chain holds no stored draws.
@@ -99,7 +99,7 @@ Summary summarise(const Chain& chain,
                   const ParameterSpace& space,
                   const SummaryOptions& options);
 
-/// summary.json, schema 1: keys and nesting of design section 6. A number, interval, vector or
+/// summary.json, schema 1: keys as in the README, "Files". A number, interval, vector or
 /// verdict that is undefined, or whose quantity is constant (fixed by a prior), is null;
 /// objects always have all their keys. Doubles are printed so that reading them back gives the
 /// same bits. Ends with a new line.

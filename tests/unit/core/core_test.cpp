@@ -10,6 +10,7 @@
 #include "deviascope/core/nearest_name.h"
 #include "deviascope/core/parallel.h"
 #include "deviascope/core/random.h"
+#include "temporary_folder.h"
 
 using namespace deviascope;
 
@@ -110,4 +111,17 @@ TEST_CASE("SHA-256 gives the published digests", "[core]") {
     CHECK(digest_of(std::string(1000000, 'a')) ==
           "cdc76e5c9914fb9281a1c7e284d73e67f1809a48a497200e046d39ccc7112cd0");
     CHECK_THROWS_AS(digest_of_file("/nonexistent/dunlin.fits"), InputError);
+}
+
+TEST_CASE("the digest of a file says how far it is, and ends where it is told to", "[core]") {
+    const test::TemporaryFolder folder;
+    const auto path = folder.write("dunlin.csv", std::string(3 << 20, 'a'));
+    std::vector<std::string> lines;
+    const auto tell = [&](const std::string& line) { lines.push_back(line); };
+    CHECK(digest_of_file(path, tell) == digest_of(std::string(3 << 20, 'a')));
+    REQUIRE(lines.size() >= 3);
+    CHECK(lines[2] == "dunlin.csv: 3 MiB digested");
+    struct Enough {};
+    const auto stop = [](const std::string&) { throw Enough(); };
+    CHECK_THROWS_AS(digest_of_file(path, stop), Enough);
 }

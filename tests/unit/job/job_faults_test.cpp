@@ -41,6 +41,9 @@ TEST_CASE("faults of the table job are named", "[job]") {
                "j.toml:2:1: job.sede: unknown key; known here: \"title\", \"seed\", \"nside\", "
                "\"frame\", \"deduplicate\", \"match_arcsec\"; did you mean \"seed\"?"},
               {"nside = 64",
+               "",
+               "1:1: job.nside: missing; a power of two from 1 to 1024 is required"},
+              {"nside = 64",
                "nside = 60",
                "3:9: job.nside: found 60; a power of two from 1 to 1024 is allowed"},
               {"nside = 64",
@@ -219,10 +222,16 @@ TEST_CASE("faults of the table ensemble are named", "[job]") {
                "allowed"},
               {"walkers = 36",
                "max_steps = 1",
-               "22:13: ensemble.max_steps: found 1; an integer of at least 2 is allowed"},
+               "22:13: ensemble.max_steps: found 1; an integer from 2 to 1000000000000 is "
+               "allowed"},
               {"walkers = 36",
                "store_every = -1",
-               "22:15: ensemble.store_every: found -1; an integer of at least 0 is allowed"},
+               "22:15: ensemble.store_every: found -1; an integer from 0 to 1000000000000 is "
+               "allowed"},
+              {"walkers = 36",
+               "store_every = 200001",
+               "22:15: ensemble.store_every: found 200001; 0, or at most max_steps (200000) is "
+               "allowed"},
               {"walkers = 36",
                "kernels = { stretch = 0.4, differential-evolution = 0.5 }",
                "22:11: ensemble.kernels: the fractions add to 0.9; fractions that add to 1 are "
@@ -322,7 +331,8 @@ TEST_CASE("faults of the table survey are named", "[job]") {
                "required"},
               {"name = \"dunlin\"",
                "name = \"all\"",
-               "9:8: survey[1].name: found \"all\"; any name but \"all\" or \"joint\" is allowed"},
+               "9:8: survey[1].name: found \"all\"; any name but \"all\" or \"joint\" is "
+               "allowed"},
               {"name = \"dunlin\"",
                "name = \"Dunlin\"",
                "9:8: survey[1].name: found \"Dunlin\"; a name of the characters a-z, 0-9 and - "

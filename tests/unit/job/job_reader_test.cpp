@@ -202,13 +202,26 @@ TEST_CASE("bins that quote one spectral index are warned of", "[job]") {
     CHECK(job_with("0.75", "0").empty());
 }
 
-TEST_CASE("a catalogue that no bin selects from is warned of", "[job]") {
-    std::string text = with(plain_job, "select = { flux = [10.0, 20.0] }", "counts = 'a.fits'");
-    CHECK(parsed(text).warnings.empty());
-    text = with(text, "select = { flux = [20.0, inf] }", "counts = 'b.fits'");
-    CHECK(parsed(text).warnings ==
-          std::vector<std::string>{
-              "survey dunlin: no bin selects from its catalogue, all have counts"});
+TEST_CASE("a bias that takes a fixed dipole beyond its wall is a fault of the job", "[job]") {
+    const std::string fixed = with(plain_job,
+                                   "{ kind = \"gaussian\", sd = 0.01 }",
+                                   "{ kind = 'fixed', value = [0, 0, 0.5] }");
+    const auto with_bias = [&](const std::string& text, const std::string& bias) {
+        return faults_of(with(text,
+                              "[[survey.bin]]\nname = \"bright\"",
+                              "bias = " + bias + "\n[[survey.bin]]\nname = \"bright\""));
+    };
+    const std::string fault =
+        "j.toml:17:8: survey[1].bin[1].bias: found 2.0; a number below 2, the inverse of the "
+        "fixed intrinsic dipole, is allowed";
+    CHECK(with_bias(fixed, "1.99").empty());
+    CHECK(with_bias(fixed, "2.0") == fault);
+    CHECK(with_bias(plain_job, "2.0").empty());
+}
+
+TEST_CASE("a fault that two readers meet is told once", "[job]") {
+    CHECK(faults_of(with(plain_job, "lon = \"RA\"", "lon = 3")) ==
+          "j.toml:12:19: survey[1].columns.lon: found 3; a text that is not empty is allowed");
 }
 
 TEST_CASE("a survey of count maps needs neither catalogue nor frame", "[job]") {

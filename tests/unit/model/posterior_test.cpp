@@ -104,7 +104,7 @@ TEST_CASE("a walker's density is the same bits alone, in a pair and in any batch
 }
 
 TEST_CASE("the posterior agrees with an 80-bit sum over pixels", "[model]") {
-    // Truth: the definition of design and README, summed in long double.
+    // Truth: the definition of the README, summed in long double.
     Case job;
     job.options.monopole = {2.0, 0.3, false};
     const Posterior target(job.counts, job.options);

@@ -77,7 +77,7 @@ Eigen::Matrix3d isotropic(double sd) {
 
 TEST_CASE("one survey against the closed form of the separation", "[summary]") {
     const double intrinsic_sd = 0.003;
-    const auto options = even::model_of({four_bins}, free_velocity, gaussian(intrinsic_sd));
+    const auto options = even::make_model({four_bins}, free_velocity, gaussian(intrinsic_sd));
     const double n = 810.0 * 12.0 * nside * nside;
     // Printed for 10^7 sources (worked out from the formula): 4.9537740462e-04.
     const double sigma = std::sqrt(3.0 / (n * 1.2225));
@@ -105,7 +105,7 @@ TEST_CASE("one survey against the closed form of the separation", "[summary]") {
 }
 
 TEST_CASE("a second survey adds its own information", "[summary]") {
-    const auto options = even::model_of({four_bins, two_bins}, free_velocity, gaussian(0.01));
+    const auto options = even::make_model({four_bins, two_bins}, free_velocity, gaussian(0.01));
     // Printed for 10^7 sources in each (same formula): 4.6583064700e-04.
     const double n = 810.0 * 12.0 * nside * nside;
     const double sigma = 4.6583064700e-04 * std::sqrt(1e7 / n);
@@ -116,7 +116,7 @@ TEST_CASE("a second survey adds its own information", "[summary]") {
 }
 
 TEST_CASE("a shared intrinsic dipole is eliminated once", "[summary]") {
-    auto options = even::model_of({four_bins, two_bins}, free_velocity, gaussian(0.01));
+    auto options = even::make_model({four_bins, two_bins}, free_velocity, gaussian(0.01));
     options.intrinsic_shared = true;
     // Both surveys as one: N <K> and N <K^2> add; Kbar = (3.55 + 2.6) / 2.
     const double n = 2.0 * 810.0 * 12.0 * nside * nside;
@@ -129,7 +129,7 @@ TEST_CASE("a shared intrinsic dipole is eliminated once", "[summary]") {
 
 TEST_CASE("bins of equal weight separate nothing", "[summary]") {
     const even::Survey equal{"dunlin", {{"faint", 400, 4.16}, {"bright", 200, 4.16}}};
-    const auto options = even::model_of({equal}, free_velocity, gaussian(0.01));
+    const auto options = even::make_model({equal}, free_velocity, gaussian(0.01));
     // The intrinsic prior narrows the velocity to 0.01 / 4.16 although the counts cannot tell.
     const Case degenerate({equal}, options, isotropic(0.01 / 4.16));
     CHECK(*degenerate.result.surveys[0].weight_spread == 0.0);
@@ -145,7 +145,7 @@ TEST_CASE("without an intrinsic dipole the bins determine the velocity", "[summa
     const double sigma = std::sqrt(3.0 / (n * (3.55 * 3.55 + 1.2225)));
     CHECK(sigma * std::sqrt(n / 1e7) == Approx(1.4730858484e-04).epsilon(1e-10));
     const Case known({four_bins},
-                     even::model_of({four_bins}, free_velocity, none),
+                     even::make_model({four_bins}, free_velocity, none),
                      isotropic(sigma / std::sqrt(2.0)));
     CHECK(*known.result.joint.velocity_prior_share == Approx(0.5).margin(pixel_error));
     CHECK(known.result.surveys[0].verdict == separated);
@@ -156,20 +156,21 @@ TEST_CASE("a velocity along an axis has one free coordinate, a fixed one none", 
     const double n = 810.0 * 12.0 * nside * nside;
     const double variance = 3.0 / (n * 1.2225);
     const Case axis({four_bins},
-                    even::model_of({four_bins}, along, gaussian(0.01)),
+                    even::make_model({four_bins}, along, gaussian(0.01)),
                     Eigen::MatrixXd::Constant(1, 1, 0.5 * variance));
     CHECK(*axis.result.joint.velocity_prior_share == Approx(0.5).margin(pixel_error));
     CHECK(free_velocity_coordinates(axis.space).isApprox(direction_of(30.0, 40.0)));
 
     const VectorPrior fixed("no-motion", FixedPrior{});
-    const Case none(
-        {four_bins}, even::model_of({four_bins}, fixed, gaussian(0.01)), Eigen::MatrixXd(0, 0));
+    const Case none({four_bins},
+                    even::make_model({four_bins}, fixed, gaussian(0.01)),
+                    Eigen::MatrixXd(0, 0));
     CHECK_FALSE(none.result.joint.velocity_prior_share);
     CHECK_FALSE(none.result.surveys[0].velocity_prior_share);
     CHECK(none.result.surveys[0].weight_spread);
 
     CHECK_THROWS_AS(
-        Case({four_bins}, even::model_of({four_bins}, along, gaussian(0.01)), isotropic(1.0)),
+        Case({four_bins}, even::make_model({four_bins}, along, gaussian(0.01)), isotropic(1.0)),
         InternalError);
 }
 
@@ -178,7 +179,7 @@ TEST_CASE("a dispersion takes its part of the information", "[summary]") {
     for (even::Bin& bin : scattered.bins) bin.dispersion = 2.0;
     const double n = 810.0 * 12.0 * nside * nside;
     const Case doubled({scattered},
-                       even::model_of({scattered}, free_velocity, gaussian(0.01)),
+                       even::make_model({scattered}, free_velocity, gaussian(0.01)),
                        isotropic(std::sqrt(3.0 / (n * 1.2225))));
     CHECK(*doubled.result.joint.velocity_prior_share == Approx(0.5).margin(pixel_error));
 }
@@ -188,7 +189,7 @@ TEST_CASE("uncertain weights against the inverse of the whole matrix", "[summary
     survey.bins[1].weight_sd = 0.3;
     survey.bins[3].weight_sd = 0.6;
     survey.bins[2].bias_ratio = 1.4;
-    auto options = even::model_of({survey}, free_velocity, gaussian(0.004));
+    auto options = even::make_model({survey}, free_velocity, gaussian(0.004));
     options.surveys[0].weights.covariance(1, 3) = 0.05;
     options.surveys[0].weights.covariance(3, 1) = 0.05;
     const Counts counts = even::counts_of(8, {survey});

@@ -42,7 +42,7 @@ struct Run {
     explicit Run(const Fill& fill,
                  const VectorPrior& velocity = free_velocity,
                  const VectorPrior& intrinsic = wide_dipole)
-        : space(counts, even::model_of(surveys, velocity, intrinsic)) {
+        : space(counts, even::make_model(surveys, velocity, intrinsic)) {
         options.title = "example";
         options.cmb_velocity = cmb_speed * cmb_direction;
         chain.counts = counts;
