@@ -33,7 +33,7 @@ ExitCode count_command(const CommandOptions& options) {
     prepare_output(folder, {"counts.h5"}, options.replace);
     const CountsFile file = make_counts(job, record_inputs(job, terminal), folder, terminal);
     for (const SurveyCounts& survey : file.counts.surveys)
-        terminal.say("\n" + cut_table(survey.name, survey.cuts));
+        terminal.say(fmt::format("\n{}", cut_table(survey.name, survey.cuts)));
     terminal.say(fmt::format("Written: {}", (folder / "counts.h5").string()));
     return ExitCode::done;
 }

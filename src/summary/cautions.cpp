@@ -96,7 +96,7 @@ void add_sampling(const Summary& summary,
         cautions.push_back(text);
     }
     if (!sampling.outcome.warm_up_settled)
-        cautions.push_back(
+        cautions.emplace_back(
             "The warm-up did not settle: walkers still disagreed when half of max_steps was "
             "used up. Draws may remember where the walkers started.");
     if (sampling.effective_draws_min < few_effective_draws)
