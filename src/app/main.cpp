@@ -159,7 +159,7 @@ int main(int argc, char** argv) {
         return fail(error.exit_code(), error.what());
     } catch (const deviascope::Interrupted&) {
         return fail(ExitCode::interrupted,
-                    "interrupted while files were read; nothing is kept");
+                    "interrupted before sampling began; no chain was written");
     } catch (const std::bad_alloc&) {
         return not_enough_memory();
     } catch (const std::length_error&) {

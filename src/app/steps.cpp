@@ -173,6 +173,7 @@ Outcome sample_into_chain(const Job& job,
     options.threads = command.n_threads();
     options.stop_requested = interrupt_requested;
     options.progress = terminal.progress();
+    if (interrupt_requested()) throw Interrupted();
     if (command.replace) remove_results(folder, {"chains.h5", "summary.json", "summary.txt"});
     terminal.say(fmt::format("Sampling {} coordinates with {} ensembles of {} walkers.",
                              posterior.n_coordinates(),
