@@ -8,7 +8,7 @@ namespace deviascope {
 /// closed pipe on standard output no longer kills the program.
 void watch_for_interrupts();
 
-/// What a step throws that ends because a clean end was asked for and leaves nothing behind.
+/// Thrown by a step before sampling where a clean end was asked for; nothing is left half made.
 struct Interrupted {};
 
 /// Whether a clean end was asked for.

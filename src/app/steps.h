@@ -39,9 +39,9 @@ CountsFile obtain_counts(const Job& job,
                          bool replace,
                          Terminal& terminal);
 
-/// counts -> model -> ensemble -> chain: samples the posterior into chains.h5. With
-/// `options.replace`, a chain that is there gives way once all is ready for the new one, and
-/// its summary with it.
+/// counts -> model -> ensemble -> chain: samples the posterior into chains.h5. Errors:
+/// Interrupted where a request to end came before. With `options.replace`, a chain that is
+/// there gives way once all is ready for the new one, and its summary with it.
 Outcome sample_into_chain(const Job& job,
                           const InputRecord& inputs,
                           const Counts& counts,

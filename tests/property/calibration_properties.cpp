@@ -24,7 +24,7 @@ namespace {
 constexpr int n_ranked = 99;  // L: ranks 0 … 99
 constexpr std::uint64_t calibration_seed = 20260817;
 
-/// Two surveys of two bins each, unlike weights, every kind of proper prior.
+/// Two surveys of two bins each, unlike weights, all priors proper.
 ModelOptions calibration_model() {
     ModelOptions model;
     model.velocity = VectorPrior("uniform-vector", UniformVectorPrior{0.1});
