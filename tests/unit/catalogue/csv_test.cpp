@@ -153,8 +153,9 @@ TEST_CASE("what is no CSV text is refused by its content", "[catalogue]") {
                Catch::Contains("gzip") && Catch::Contains("not yet available"));
     CHECK_THAT(refusal("\x89HDF\r\n\x1a\n rest"s, {"RA"}),
                Catch::Contains("HDF5") && Catch::Contains("not yet available"));
-    CHECK_THAT(refusal(std::string(512, '\0') + "\x89HDF\r\n\x1a\n", {"RA"}),
-               Catch::Contains("HDF5"));
+    std::string behind_a_user_block(512, '\0');
+    behind_a_user_block += "\x89HDF\r\n\x1a\n";
+    CHECK_THAT(refusal(behind_a_user_block, {"RA"}), Catch::Contains("HDF5"));
     CHECK_THAT(refusal("RA,S\0\n"s, {"RA"}), Catch::Contains("neither a FITS file nor"));
     CHECK_THAT(refusal("", {"RA"}), Catch::Contains("the file is empty"));
 }
