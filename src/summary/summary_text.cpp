@@ -17,7 +17,7 @@ constexpr double thousandth = 1e-3;  // amplitudes are printed in this unit
 
 std::string heading(const std::string& text, char line = '-') {
     const std::string folded_text = folded(text, 0);
-    const std::size_t longest = std::min(text.size(), page_width);
+    const std::size_t longest = std::min(width_of(text), page_width);
     return folded_text + std::string(longest, line) + "\n";
 }
 

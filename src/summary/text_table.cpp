@@ -15,11 +15,6 @@ bool begins_letter(char byte) {
     return (static_cast<unsigned char>(byte) & 0xC0u) != 0x80u;
 }
 
-/// Letters (UTF-8 code points), not bytes.
-std::size_t width_of(const std::string& text) {
-    return static_cast<std::size_t>(std::count_if(text.begin(), text.end(), begins_letter));
-}
-
 std::string blanks(std::size_t n) {
     return std::string(n, ' ');
 }
@@ -65,6 +60,10 @@ void append_lines(const std::string& text, std::vector<std::string>& lines) {
 }
 
 }  // namespace
+
+std::size_t width_of(const std::string& text) {
+    return static_cast<std::size_t>(std::count_if(text.begin(), text.end(), begins_letter));
+}
 
 std::string folded(const std::string& text, std::size_t indent, const std::string& lead) {
     std::string result;

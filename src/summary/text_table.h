@@ -10,6 +10,9 @@ namespace deviascope {
 /// Columns of a page of plain text.
 inline constexpr std::size_t page_width = 100;
 
+/// Letters (UTF-8 code points) of a text, not bytes.
+std::size_t width_of(const std::string& text);
+
 /// Text folded at blanks to the page, every line after `indent` blanks; words longer than a
 /// line are cut. The first line begins with `lead` in place of the last blanks of its indent.
 std::string folded(const std::string& text, std::size_t indent, const std::string& lead = "");

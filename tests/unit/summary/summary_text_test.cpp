@@ -76,6 +76,8 @@ TEST_CASE("long names and titles keep to the page", "[summary]") {
     summary.warnings[0] = std::string(250, 'w');
     CHECK(longest_line(to_text(summary)) <= 100);
     CHECK(longest_line(to_text(example::summary())) <= 100);
+    summary.job = "\u00e9t\u00e9";
+    CHECK_THAT(to_text(summary), Catch::StartsWith("\u00e9t\u00e9\n===\n"));
 }
 
 TEST_CASE("a fixed vector, a fixed direction and one nowhere in particular", "[summary]") {
