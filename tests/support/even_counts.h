@@ -46,6 +46,11 @@ inline deviascope::Counts counts_of(int nside, const std::vector<Survey>& survey
     return counts;
 }
 
-using deviascope::test::make_model;
+/// The model that goes with such counts.
+inline deviascope::ModelOptions make_model(const std::vector<Survey>& surveys,
+                                           const deviascope::VectorPrior& velocity,
+                                           const deviascope::VectorPrior& intrinsic) {
+    return deviascope::test::model_of_surveys(surveys, velocity, intrinsic);
+}
 
 }  // namespace even

@@ -15,9 +15,9 @@ namespace deviascope::test {
 /// @param surveys  each with `bins` of a weight, weight_sd (0: not sampled), bias_ratio and
 ///                 dispersion
 template <class Survey>
-ModelOptions make_model(const std::vector<Survey>& surveys,
-                        const VectorPrior& velocity,
-                        const VectorPrior& intrinsic) {
+ModelOptions model_of_surveys(const std::vector<Survey>& surveys,
+                              const VectorPrior& velocity,
+                              const VectorPrior& intrinsic) {
     ModelOptions options;
     options.velocity = velocity;
     options.intrinsic = intrinsic;
