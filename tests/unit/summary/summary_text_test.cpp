@@ -9,8 +9,8 @@ using namespace deviascope;
 
 namespace {
 
-std::string text_of(const std::string& path) {
-    std::ifstream file(std::string(DEVIASCOPE_TEST_DATA) + "/" + path);
+std::string expected_text() {
+    std::ifstream file(DEVIASCOPE_TEST_DATA "/unit/summary/expected-summary.txt");
     std::ostringstream text;
     text << file.rdbuf();
     return text.str();
@@ -40,7 +40,7 @@ bool has_line_with(const std::string& text,
 }  // namespace
 
 TEST_CASE("the text of a summary as a whole", "[summary]") {
-    CHECK(to_text(example::summary()) == text_of("unit/summary/expected-summary.txt"));
+    CHECK(to_text(example::summary()) == expected_text());
 }
 
 TEST_CASE("estimates and diagnostics never share a table", "[summary]") {
@@ -66,7 +66,8 @@ TEST_CASE("warnings stand before every estimate", "[summary]") {
 
 TEST_CASE("long names and titles keep to the page", "[summary]") {
     Summary summary = example::summary();
-    summary.job = std::string(150, 'T') + " \u00e9t\u00e9";
+    summary.job.assign(150, 'T');
+    summary.job += " \u00e9t\u00e9";
     summary.survey_names[0] = std::string(90, 's');
     summary.intrinsic[0].name = summary.survey_names[0];
     summary.intrinsic[0].prior = std::string(130, 'p');
