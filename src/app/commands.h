@@ -16,7 +16,9 @@ struct CommandOptions {
     int threads = 0;               ///< 0: as many as the machine offers
     bool quiet = false;
     bool replace = false;
+    bool resume = false;
     bool strict = false;
+    int rows_per_block = 0;  ///< rows stored at a time; 0: by the clock
 
     /// Threads to use.
     int n_threads() const { return threads > 0 ? threads : default_threads(); }

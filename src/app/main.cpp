@@ -31,6 +31,7 @@ struct Command {
     const char* input;  ///< name of its argument
     const char* input_description;
     const char* output_description;
+    bool resume;  ///< takes --resume
     bool strict;  ///< takes --strict
     Action action;
 };
@@ -45,12 +46,14 @@ std::vector<Command> commands() {
          job,
          folder,
          true,
+         true,
          deviascope::run_command},
         {"count",
          "Counts the sources of every survey into counts.h5",
          "JOB.toml",
          job,
          folder,
+         false,
          false,
          deviascope::count_command},
         {"sample",
@@ -59,12 +62,14 @@ std::vector<Command> commands() {
          job,
          folder,
          true,
+         true,
          deviascope::sample_command},
         {"summarise",
          "Summarises a chain into summary.json and summary.txt",
          "chains.h5",
          "chain file",
          "folder for the summary; default: beside the chain",
+         false,
          true,
          deviascope::summarise_command},
         {"mock",
@@ -72,6 +77,7 @@ std::vector<Command> commands() {
          "SCENARIO.toml",
          "scenario file (TOML)",
          "folder for the catalogues; default: the scenario's name, here",
+         false,
          false,
          deviascope::mock_command},
     };
@@ -92,7 +98,18 @@ void add_command(CLI::App& program,
         ->check(CLI::Range(1, 4096))
         ->option_text("N");
     sub->add_flag("--quiet", options.quiet, "no progress and no report; warnings remain");
-    sub->add_flag("--replace", options.replace, "overwrite results that exist");
+    CLI::Option* replace =
+        sub->add_flag("--replace", options.replace, "overwrite results that exist");
+    if (command.resume) {
+        sub->add_flag("--resume",
+                      options.resume,
+                      "go on with a run that was cut off; it ends as if it had not been")
+            ->excludes(replace);
+        // For tests, and left out of the help: blocks that do not end by the clock.
+        sub->add_option("--rows-per-block", options.rows_per_block)
+            ->check(CLI::Range(1, 1'000'000))
+            ->group("");
+    }
     if (command.strict)
         sub->add_flag("--strict", options.strict, "exit with 6 where the result is doubtful");
     sub->callback([&chosen, action = command.action] { chosen = action; });
@@ -128,7 +145,8 @@ int parse_and_act(int argc, char** argv) {
     program.footer(
         "Exit codes: 0 done; 2 wrong command line or job file; 3 bad input data; 4 numerics "
         "cannot\n"
-        "go on; 5 cannot write; 6 doubtful (--strict); 70 a fault of ours; 130 interrupted.");
+        "go on; 5 cannot write; 6 doubtful (--strict); 70 a fault of ours; 130 interrupted\n"
+        "(go on with --resume).");
     check_command(argc, argv);
     CommandOptions options;
     Action chosen;
@@ -159,7 +177,7 @@ int main(int argc, char** argv) {
         return fail(error.exit_code(), error.what());
     } catch (const deviascope::Interrupted&) {
         return fail(ExitCode::interrupted,
-                    "interrupted before sampling began; no chain was written");
+                    "interrupted before sampling began; nothing was stored");
     } catch (const std::bad_alloc&) {
         return not_enough_memory();
     } catch (const std::length_error&) {

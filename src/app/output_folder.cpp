@@ -16,18 +16,6 @@ namespace fs = std::filesystem;
 
 namespace {
 
-void make_folder(const fs::path& folder) {
-    std::error_code failure;
-    fs::create_directories(folder, failure);
-    std::error_code ignored;
-    if (fs::is_directory(folder, ignored)) return;
-    const std::string reason = failure ? failure.message() : "a file of that name is there";
-    throw OutputError({folder.string(),
-                       fmt::format("the folder cannot be made ({})", reason),
-                       "a folder that can be made or written to",
-                       "name another one with -o"});
-}
-
 /// Those of the files that are in the folder.
 std::vector<std::string> present_in(const fs::path& folder,
                                     const std::vector<std::string>& files) {
@@ -46,24 +34,39 @@ std::vector<std::string> present_in(const fs::path& folder,
 }
 
 OutputError cannot_write(const fs::path& path, const std::string& reason) {
-    return OutputError({path.string(),
-                        fmt::format("cannot be written ({})", reason),
-                        "a writable folder with room",
-                        ""});
+    return OutputError(
+        {path.string(),
+         fmt::format("cannot be written ({})", reason),
+         "a writable folder with room",
+         "free some space; a chain that is there is safe, and `run` goes on with "
+         "--resume, `summarise` with --replace"});
 }
 
 }  // namespace
 
+void make_folder(const fs::path& folder) {
+    std::error_code failure;
+    fs::create_directories(folder, failure);
+    std::error_code ignored;
+    if (fs::is_directory(folder, ignored)) return;
+    const std::string reason = failure ? failure.message() : "a file of that name is there";
+    throw OutputError({folder.string(),
+                       fmt::format("the folder cannot be made ({})", reason),
+                       "a folder that can be made or written to",
+                       "name another one with -o"});
+}
+
 void prepare_output(const fs::path& folder,
                     const std::vector<std::string>& files,
-                    bool replace) {
+                    Existing existing) {
     make_folder(folder);
     const std::vector<std::string> present = present_in(folder, files);
-    if (replace || present.empty()) return;
+    if (existing != Existing::refuse || present.empty()) return;
     throw OutputError({folder.string(),
                        fmt::format("already holds {}", fmt::join(present, ", ")),
                        "nothing that exists is overwritten unasked",
-                       "give --replace, or another folder with -o"});
+                       "give --replace, or another folder with -o; --resume goes on with a run "
+                       "that was cut off"});
 }
 
 void remove_results(const fs::path& folder, const std::vector<std::string>& files) {

@@ -8,14 +8,21 @@
 
 namespace deviascope {
 
-/// Makes the folder if it is not there and checks that none of `files` is in it already.
-/// With `replace` they may be there; they stay until new ones take their place, so that a run
-/// that fails on its way costs nothing.
-/// Errors: OutputError (cannot be made; a file stands there; names all files that exist; a
-/// folder stands in the place of one).
+/// What is to become of results that exist.
+enum class Existing { refuse, replace, keep };
+
+/// Makes the folder if it is not there. Errors: OutputError (cannot be made; a file stands
+/// there).
+void make_folder(const std::filesystem::path& folder);
+
+/// Makes the folder if it is not there and checks that none of `files` is in it already. Where
+/// they may be there, they stay until new ones take their place, so that a run that fails on
+/// its way costs nothing.
+/// Errors: OutputError (as make_folder; names all files that exist; a folder stands in the
+/// place of one).
 void prepare_output(const std::filesystem::path& folder,
                     const std::vector<std::string>& files,
-                    bool replace);
+                    Existing existing);
 
 /// Removes those of `files` that are in the folder. Errors: OutputError.
 void remove_results(const std::filesystem::path& folder, const std::vector<std::string>& files);

@@ -6,15 +6,14 @@
 
 #include <algorithm>
 #include <chrono>
+#include <utility>
 
 #include "app/interrupt.h"
-#include "app/output_folder.h"
 #include "deviascope/chain/chain_file.h"
 #include "deviascope/core/error.h"
 #include "deviascope/core/grouped_number.h"
 #include "deviascope/core/version.h"
 #include "deviascope/counts/count_sources.h"
-#include "deviascope/model/posterior.h"
 
 namespace deviascope {
 
@@ -23,12 +22,6 @@ namespace fs = std::filesystem;
 namespace {
 
 constexpr const char* cmb_prior_name = "cmb-velocity";
-
-std::string time_now() {
-    const std::time_t now =
-        std::chrono::system_clock::to_time_t(std::chrono::system_clock::now());
-    return fmt::format("{:%Y-%m-%dT%H:%M:%SZ}", fmt::gmtime(now));
-}
 
 /// The prior that `offset_from_cmb` refers to: the job's own copy, else the library's.
 Companion cmb_prior(const std::vector<Companion>& companions, const fs::path& folder) {
@@ -53,6 +46,41 @@ Eigen::Vector3d cmb_velocity(const Companion& companion, Frame frame) {
                       ""});
 }
 
+/// Readers of long files ask nobody whether to go on; where they tell how far they are, a
+/// request to end can be heard.
+Progress ending_on_request(Progress show) {
+    return [show = std::move(show)](const std::string& line) {
+        if (interrupt_requested()) throw Interrupted();
+        if (show) show(line);
+    };
+}
+
+[[noreturn]] void refuse_counts(const fs::path& counts, Existing existing) {
+    const Message message{counts.string(),
+                          "was made from other inputs or cuts",
+                          "counts are used again only for the same inputs and cuts",
+                          "give --replace to count anew, or another folder with -o"};
+    if (existing == Existing::keep) throw UsageError(message);
+    throw OutputError(message);
+}
+
+Job job_of(const Chain& chain) {
+    const auto finder = [&](const std::string& name) -> std::optional<Companion> {
+        for (const Companion& companion : chain.provenance.companions)
+            if (companion.name == name) return companion;
+        return std::nullopt;
+    };
+    return parse_job(chain.provenance.job_text, chain.provenance.job_name, finder);
+}
+
+}  // namespace
+
+std::string time_now() {
+    const std::time_t now =
+        std::chrono::system_clock::to_time_t(std::chrono::system_clock::now());
+    return fmt::format("{:%Y-%m-%dT%H:%M:%SZ}", fmt::gmtime(now));
+}
+
 Provenance provenance_of(const Job& job, const InputRecord& inputs) {
     Provenance provenance;
     provenance.job_name = job.name;
@@ -69,40 +97,6 @@ Provenance provenance_of(const Job& job, const InputRecord& inputs) {
     provenance.started = time_now();
     return provenance;
 }
-
-void report_outcome(const Outcome& outcome, double seconds, Terminal& terminal) {
-    const char* end = outcome.end == Outcome::End::converged     ? "converged"
-                      : outcome.end == Outcome::End::interrupted ? "interrupted"
-                                                                 : "NOT converged at max_steps";
-    terminal.say(
-        fmt::format("Sampled {} steps per walker, the first {} discarded, every {} stored: "
-                    "{} ({:.1f} s).",
-                    grouped(outcome.steps),
-                    grouped(outcome.discarded),
-                    outcome.store_every,
-                    end,
-                    seconds));
-}
-
-/// Readers of long files ask nobody whether to go on; where they tell how far they are, a
-/// request to end can be heard.
-Progress ending_on_request(Progress show) {
-    return [show = std::move(show)](const std::string& line) {
-        if (interrupt_requested()) throw Interrupted();
-        if (show) show(line);
-    };
-}
-
-Job job_of(const Chain& chain) {
-    const auto finder = [&](const std::string& name) -> std::optional<Companion> {
-        for (const Companion& companion : chain.provenance.companions)
-            if (companion.name == name) return companion;
-        return std::nullopt;
-    };
-    return parse_job(chain.provenance.job_text, chain.provenance.job_name, finder);
-}
-
-}  // namespace
 
 InputRecord record_inputs(const Job& job, Terminal& terminal) {
     for (const std::string& warning : job.warnings) terminal.warn(warning);
@@ -142,7 +136,7 @@ CountsFile make_counts(const Job& job,
 CountsFile obtain_counts(const Job& job,
                          const InputRecord& inputs,
                          const fs::path& folder,
-                         bool replace,
+                         Existing existing,
                          Terminal& terminal) {
     const fs::path path = folder / "counts.h5";
     if (fs::exists(path)) {
@@ -152,45 +146,9 @@ CountsFile obtain_counts(const Job& job,
                 fmt::format("Counts taken from {}: its inputs are unchanged.", path.string()));
             return file;
         }
-        if (!replace)
-            throw OutputError({path.string(),
-                               "was made from other inputs or cuts",
-                               "counts are used again only for the same inputs and cuts",
-                               "give --replace to count anew, or another folder with -o"});
+        if (existing != Existing::replace) refuse_counts(path, existing);
     }
     return make_counts(job, inputs, folder, terminal);
-}
-
-Outcome sample_into_chain(const Job& job,
-                          const InputRecord& inputs,
-                          const Counts& counts,
-                          const fs::path& folder,
-                          const CommandOptions& command,
-                          Terminal& terminal) {
-    const Posterior posterior(counts, job.model);
-    EnsembleOptions options = job.ensemble;
-    options.seed = job.seed;
-    options.threads = command.n_threads();
-    options.stop_requested = interrupt_requested;
-    options.progress = terminal.progress();
-    if (interrupt_requested()) throw Interrupted();
-    if (command.replace) remove_results(folder, {"chains.h5", "summary.json", "summary.txt"});
-    terminal.say(fmt::format("Sampling {} coordinates with {} ensembles of {} walkers.",
-                             posterior.n_coordinates(),
-                             options.replicates,
-                             options.walkers_for(posterior.n_coordinates())));
-    ChainWriter writer(folder / "chains.h5",
-                       provenance_of(job, inputs),
-                       posterior.parameters(),
-                       posterior.vectors(),
-                       counts,
-                       options);
-    const auto begin = std::chrono::steady_clock::now();
-    const Outcome outcome = sample(posterior, options, writer);
-    writer.finish(outcome, time_now());
-    const std::chrono::duration<double> elapsed = std::chrono::steady_clock::now() - begin;
-    report_outcome(outcome, elapsed.count(), terminal);
-    return outcome;
 }
 
 Summary summarise_into(const Chain& chain,

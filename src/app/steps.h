@@ -4,11 +4,10 @@
 
 #include <filesystem>
 
-#include "app/commands.h"
+#include "app/output_folder.h"
 #include "app/terminal.h"
 #include "deviascope/chain/chain.h"
 #include "deviascope/counts/counts_file.h"
-#include "deviascope/ensemble/sampler.h"
 #include "deviascope/job/job.h"
 #include "deviascope/summary/summary.h"
 
@@ -32,22 +31,19 @@ CountsFile make_counts(const Job& job,
                        Terminal& terminal);
 
 /// The counts.h5 of the folder where it fits the job's inputs; made where there is none.
-/// Errors: OutputError where one is there that does not fit and `replace` is not given.
+/// Errors: where one is there that does not fit, and is not to be replaced: OutputError, or
+/// UsageError where it was to be kept.
 CountsFile obtain_counts(const Job& job,
                          const InputRecord& inputs,
                          const std::filesystem::path& folder,
-                         bool replace,
+                         Existing existing,
                          Terminal& terminal);
 
-/// counts -> model -> ensemble -> chain: samples the posterior into chains.h5. Errors:
-/// Interrupted where a request to end came before. With `options.replace`, a chain that is
-/// there gives way once all is ready for the new one, and its summary with it.
-Outcome sample_into_chain(const Job& job,
-                          const InputRecord& inputs,
-                          const Counts& counts,
-                          const std::filesystem::path& folder,
-                          const CommandOptions& options,
-                          Terminal& terminal);
+/// UTC, ISO 8601.
+std::string time_now();
+
+/// Where a chain of this job comes from, begun now.
+Provenance provenance_of(const Job& job, const InputRecord& inputs);
 
 /// chain -> summary: writes summary.json and summary.txt of a chain into the folder.
 Summary summarise_into(const Chain& chain,

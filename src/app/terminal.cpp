@@ -34,6 +34,11 @@ void Terminal::warn(const std::string& text) {
     std::fprintf(stderr, "Warning: %s\n", text.c_str());
 }
 
+void Terminal::note(const std::string& text) {
+    wipe();
+    std::fprintf(stderr, "deviascope: %s\n", text.c_str());
+}
+
 Progress Terminal::progress() {
     if (quiet_) return {};
     return [this](const std::string& line) { show(line); };

@@ -23,6 +23,8 @@ class Terminal {
     void say(const std::string& text);
     /// A warning; printed with --quiet too.
     void warn(const std::string& text);
+    /// Why the program ends early, though nothing failed; printed with --quiet too.
+    void note(const std::string& text);
     /// Where library stages report progress.
     Progress progress();
 

@@ -22,6 +22,15 @@ inline constexpr std::array<std::pair<Outcome::End, const char*>, 4> ends{
      {Outcome::End::max_steps, "max_steps"},
      {Outcome::End::interrupted, "interrupted"}}};
 
+/// The word of the file for a value of an enumeration.
+template <class Value, std::size_t n>
+const char* word_for(const std::array<std::pair<Value, const char*>, n>& words, Value value) {
+    for (const auto& [candidate, word] : words)
+        if (candidate == value) return word;
+    ensure(false, "each value of an enumeration has a word in the file");
+    return "";
+}
+
 /// Names of the kernels in the order of a KernelTally.
 std::array<std::string, n_kernels> kernel_names();
 

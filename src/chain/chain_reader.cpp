@@ -2,9 +2,11 @@
 #include <fmt/format.h>
 
 #include <algorithm>
+#include <optional>
 #include <utility>
 
 #include "chain/chain_layout.h"
+#include "chain/columns.h"
 #include "counts/counts_group.h"
 #include "deviascope/chain/chain_file.h"
 
@@ -46,22 +48,20 @@ std::int64_t read_number(const Reader& reader,
 std::vector<InputDigest> read_inputs(const Reader& reader) {
     const auto paths = list(reader, "/job/inputs/path");
     const Shape shape{paths.size()};
-    const auto digests = reader.texts("/job/inputs/sha256", shape);
-    const auto sizes = reader.integers("/job/inputs/bytes", shape);
-    std::vector<InputDigest> inputs;
-    for (std::size_t input = 0; input < paths.size(); ++input)
-        inputs.push_back({paths[input], digests[input], sizes[input]});
+    std::vector<InputDigest> inputs(paths.size());
+    set_column(inputs, &InputDigest::path, paths);
+    set_column(inputs, &InputDigest::sha256, reader.texts("/job/inputs/sha256", shape));
+    set_column(inputs, &InputDigest::bytes, reader.integers("/job/inputs/bytes", shape));
     return inputs;
 }
 
 std::vector<Companion> read_companions(const Reader& reader) {
     const auto names = list(reader, "/job/companions/name");
     const Shape shape{names.size()};
-    const auto paths = reader.texts("/job/companions/path", shape);
-    const auto texts = reader.texts("/job/companions/text", shape);
-    std::vector<Companion> companions;
-    for (std::size_t file = 0; file < names.size(); ++file)
-        companions.push_back({names[file], paths[file], texts[file]});
+    std::vector<Companion> companions(names.size());
+    set_column(companions, &Companion::name, names);
+    set_column(companions, &Companion::path, reader.texts("/job/companions/path", shape));
+    set_column(companions, &Companion::text, reader.texts("/job/companions/text", shape));
     return companions;
 }
 
@@ -98,16 +98,14 @@ EnsembleOptions read_options(const Reader& reader, std::uint64_t seed) {
 std::vector<Parameter> read_parameters(const Reader& reader) {
     const auto names = list(reader, "/parameters/name");
     const Shape shape{names.size()};
-    const auto units = reader.texts("/parameters/unit", shape);
-    const auto meanings = reader.texts("/parameters/meaning", shape);
+    std::vector<Parameter> parameters(names.size());
+    set_column(parameters, &Parameter::name, names);
+    set_column(parameters, &Parameter::unit, reader.texts("/parameters/unit", shape));
+    set_column(parameters, &Parameter::meaning, reader.texts("/parameters/meaning", shape));
     const auto roles = reader.texts("/parameters/role", shape);
-    std::vector<Parameter> parameters;
     for (std::size_t column = 0; column < names.size(); ++column)
-        parameters.push_back(
-            {names[column],
-             units[column],
-             meanings[column],
-             value_of(reader, "/parameters/role", roles[column], chain_layout::roles)});
+        parameters[column].role =
+            value_of(reader, "/parameters/role", roles[column], chain_layout::roles);
     return parameters;
 }
 
@@ -152,6 +150,18 @@ Draws read_draws(const Reader& reader, const std::string& prefix, std::size_t n_
     return draws;
 }
 
+std::optional<CoordinateGaussian> read_approximation(const Reader& reader) {
+    const std::string mean = "/state/approximation_mean";
+    if (!reader.has(mean)) return std::nullopt;
+    const std::size_t n = reader.shape(mean, 1)[0];
+    const std::vector<double> values = reader.reals(mean, {n});
+    const std::vector<double> factor = reader.reals("/state/approximation_factor", {n, n});
+    using Rows = Eigen::Matrix<double, Eigen::Dynamic, Eigen::Dynamic, Eigen::RowMajor>;
+    const auto size = static_cast<Eigen::Index>(n);
+    return CoordinateGaussian{Eigen::Map<const Eigen::VectorXd>(values.data(), size),
+                              Eigen::Map<const Rows>(factor.data(), size, size)};
+}
+
 WarmUp read_warm_up(const Reader& reader, std::size_t n_parameters) {
     WarmUp warm_up;
     warm_up.buffer = read_draws(reader, "/warm_up/", n_parameters);
@@ -160,6 +170,7 @@ WarmUp read_warm_up(const Reader& reader, std::size_t n_parameters) {
     warm_up.settled = read_number(reader, "/state", "warm_up_settled") != 0;
     warm_up.discarded = read_number(reader, "/state", "end_of_warm_up");
     warm_up.store_every = read_number(reader, "/state", "store_every");
+    warm_up.approximation = read_approximation(reader);
     return warm_up;
 }
 

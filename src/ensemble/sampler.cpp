@@ -3,6 +3,7 @@
 
 #include <algorithm>
 #include <cmath>
+#include <optional>
 #include <utility>
 
 #include "deviascope/core/error.h"
@@ -21,6 +22,9 @@ namespace {
 
 constexpr std::size_t block_bytes = std::size_t{64} << 20U;
 constexpr double seconds_per_block = 3.0;
+/// A block is not due before this many times the seconds that storing the last one took:
+/// storing costs at most about one per cent.
+constexpr double blocks_apart = 100.0;
 /// Rows that must still fit before max_steps, twice what a stop needs: a badly mixing warm-up
 /// asks for intervals so long that none of the rest would be stored.
 constexpr std::int64_t rows_that_must_fit = 2 * fewest_rows_to_stop;
@@ -56,15 +60,74 @@ std::int64_t interval_for(double autocorrelation_steps, std::int64_t steps_left)
     return std::max<std::int64_t>(1, static_cast<std::int64_t>(half));
 }
 
+std::optional<CoordinateGaussian> approximation_of(const Target& target) {
+    const CoordinateGaussian* offered = target.approximation();
+    if (offered == nullptr) return std::nullopt;
+    return *offered;
+}
+
+/// Rows stored when each walker has made `step` steps.
+std::int64_t n_rows_at(std::int64_t step, std::int64_t discarded, std::int64_t store_every) {
+    return (step - discarded) / store_every;
+}
+
+/// A stored run as it must be to be gone on with.
+class StoredRunCheck {
+  public:
+    StoredRunCheck(const Target& target, const EnsembleShape& shape)
+        : n_parameters_(static_cast<Eigen::Index>(target.parameters().size())), shape_(shape) {}
+
+    void operator()(const StoredRun& stored) const {
+        require(stored.draws.n_replicates == shape_.n_replicates &&
+                    stored.draws.n_walkers == shape_.n_walkers,
+                "its replicates and walkers are not those of the job");
+        require(stored.draws.n_parameters == n_parameters_,
+                "its parameters are not those of the job");
+        const auto n_walkers = static_cast<std::size_t>(shape_.n_replicates * shape_.n_walkers);
+        require(stored.state.log_posterior.size() == n_walkers &&
+                    stored.state.log_likelihood.size() == n_walkers &&
+                    stored.state.coordinates.size() ==
+                        n_walkers * static_cast<std::size_t>(shape_.n_coordinates),
+                "its state is not one of that many walkers and coordinates");
+        require(stored.draws.n_rows > 0 && stored.warm_up.store_every > 0 &&
+                    n_rows_at(stored.state.step,
+                              stored.warm_up.discarded,
+                              stored.warm_up.store_every) == stored.draws.n_rows,
+                "its rows are not as many as its steps make");
+        require(fits(stored.warm_up.approximation), "its Gaussian is of another dimension");
+    }
+
+  private:
+    bool fits(const std::optional<CoordinateGaussian>& gaussian) const {
+        return !gaussian || (gaussian->mean.size() == shape_.n_coordinates &&
+                             gaussian->factor.rows() == shape_.n_coordinates &&
+                             gaussian->factor.cols() == shape_.n_coordinates);
+    }
+    static void require(bool holds, const char* found) {
+        if (!holds)
+            throw InputError({"the stored run",
+                              found,
+                              "a run of the same job, stored by the same version, is needed",
+                              "start anew"});
+    }
+
+    Eigen::Index n_parameters_;
+    EnsembleShape shape_;
+};
+
 /// One run. What it decides depends on `state_`, `outcome_` and the stored rows (`watched_`)
 /// alone, so a run can be taken up again from these.
 class Run {
   public:
-    Run(const Target& target, const EnsembleOptions& options, DrawSink& sink)
+    Run(const Target& target,
+        const EnsembleOptions& options,
+        std::optional<CoordinateGaussian> approximation,
+        DrawSink& sink)
         : options_(options),
           sink_(sink),
           shape_(shape_of(target, options)),
           target_(target),
+          approximation_(std::move(approximation)),
           mover_(target, options, shape_),
           writer_(target, options.seed, shape_),
           watch_(options.threads),
@@ -74,6 +137,19 @@ class Run {
     Outcome from_the_start() {
         state_ = starting_state(target_, options_, shape_);
         if (!warm_up()) return ended(Outcome::End::interrupted);
+        begin_storing();
+        return ended(store_until_the_end());
+    }
+
+    Outcome from(StoredRun stored) {
+        StoredRunCheck(target_, shape_)(stored);
+        outcome_.discarded = stored.warm_up.discarded;
+        outcome_.store_every = stored.warm_up.store_every;
+        outcome_.warm_up_settled = stored.warm_up.settled;
+        outcome_.n_rows = stored.draws.n_rows;
+        watched_.append(stored.draws, 0, stored.draws.n_rows, options_.threads);
+        state_ = std::move(stored.state);
+        stored = {};
         begin_storing();
         return ended(store_until_the_end());
     }
@@ -140,6 +216,7 @@ class Run {
         warm_up.settled = outcome_.warm_up_settled;
         warm_up.discarded = outcome_.discarded;
         warm_up.store_every = outcome_.store_every;
+        warm_up.approximation = approximation_;
         sink_.warm_up(warm_up);
     }
 
@@ -147,24 +224,33 @@ class Run {
 
     void begin_storing() {
         last_look_ = {};
+        began_storing_at_ = state_.step;
+        is_state_stored_ = true;
         storing_since_ = delivered_at_ = seconds_now();
     }
 
     Outcome::End store_until_the_end() {
         for (;;) {
             if (is_look_due()) {
-                deliver();
-                if (look_passes()) return Outcome::End::converged;
+                if (look_passes()) return delivered(Outcome::End::converged);
+                if (state_.step >= options_.max_steps)
+                    return delivered(Outcome::End::max_steps);
                 ++state_.look;
+                is_state_stored_ = false;
             }
-            if (state_.step >= options_.max_steps) return Outcome::End::max_steps;
-            if (stop_is_requested()) break;
+            if (stop_is_requested()) return delivered(Outcome::End::interrupted);
             store_leg();
             if (is_block_due()) deliver();
             tell();
         }
+    }
+
+    /// The last block may hold no rows: where walkers stand at the end is no matter of the
+    /// clock.
+    Outcome::End delivered(Outcome::End end) {
         deliver();
-        return Outcome::End::interrupted;
+        if (outcome_.n_rows > 0 && !is_state_stored_) store_block();
+        return end;
     }
 
     std::int64_t next_look() const {
@@ -183,19 +269,33 @@ class Run {
     }
 
     std::int64_t rows_up_to(std::int64_t step) const {
-        return (step - outcome_.discarded) / outcome_.store_every;
+        return n_rows_at(step, outcome_.discarded, outcome_.store_every);
     }
 
-    /// Steps that fill at most the rest of a block, and never none.
-    std::int64_t steps_to_full_block() const {
-        const auto rows =
-            static_cast<std::int64_t>(block_bytes / row_bytes(pending_)) - pending_.n_rows;
-        return std::max<std::int64_t>(1, rows) * outcome_.store_every;
+    std::int64_t most_rows_in_block() const {
+        if (options_.rows_per_block > 0) return options_.rows_per_block;
+        const auto most = static_cast<std::int64_t>(block_bytes / row_bytes(pending_));
+        const std::int64_t together = sink_.rows_together();
+        return std::max<std::int64_t>(1, most < together ? most : most / together * together);
+    }
+
+    /// Rows that are missing to a number that is good to end a block on; 0 if it is reached.
+    std::int64_t rows_to_good_end() const {
+        const std::int64_t together = sink_.rows_together();
+        const std::int64_t odd = (outcome_.n_rows + pending_.n_rows) % together;
+        return odd == 0 && pending_.n_rows > 0 ? 0 : together - odd;
+    }
+
+    /// Steps up to which the block cannot end.
+    std::int64_t steps_to_block() const {
+        std::int64_t rows = most_rows_in_block() - pending_.n_rows;
+        if (is_time_for_block()) rows = std::min(rows, rows_to_good_end());
+        return rows * outcome_.store_every;
     }
 
     void store_leg() {
         const std::int64_t n_steps =
-            std::min({pace_.steps(), next_look() - state_.step, steps_to_full_block()});
+            std::min({pace_.steps(), next_look() - state_.step, steps_to_block()});
         const std::int64_t delivered = outcome_.n_rows;
         const Eigen::Index first_new = pending_.n_rows;
         resize_rows(pending_, rows_up_to(state_.step + n_steps) - delivered);
@@ -204,20 +304,32 @@ class Run {
             const RowWriter::Place place{replicate, at, rows_up_to(at) - 1 - delivered};
             writer_.write(state_, place, Redrawn::drawn, pending_);
         });
+        is_state_stored_ = false;
         watched_.append(pending_, first_new, pending_.n_rows, options_.threads);
     }
 
     bool is_block_due() const {
-        const auto n_rows = static_cast<std::size_t>(pending_.n_rows);
-        return n_rows * row_bytes(pending_) >= block_bytes ||
-               seconds_now() - delivered_at_ >= seconds_per_block;
+        if (pending_.n_rows >= most_rows_in_block()) return true;
+        return is_time_for_block() && rows_to_good_end() == 0;
+    }
+
+    bool is_time_for_block() const {
+        return options_.rows_per_block == 0 &&
+               seconds_now() - delivered_at_ >=
+                   std::max(seconds_per_block, blocks_apart * seconds_to_store_);
     }
 
     /// Where blocks end has no bearing on draws or decisions.
     void deliver() {
+        if (pending_.n_rows > 0) store_block();
         delivered_at_ = seconds_now();
-        if (pending_.n_rows == 0) return;
+    }
+
+    void store_block() {
+        const double began = seconds_now();
         sink_.block(pending_, state_);
+        seconds_to_store_ = seconds_now() - began;
+        is_state_stored_ = true;
         outcome_.n_rows += pending_.n_rows;
         resize_rows(pending_, 0);
     }
@@ -266,7 +378,7 @@ class Run {
     /// At the pace so far, up to the look at which there should be draws enough.
     double seconds_left() const {
         const double found = last_look_.fewest_effective_draws;
-        const std::int64_t stored = state_.step - outcome_.discarded;
+        const std::int64_t stored = state_.step - began_storing_at_;
         if (std::isnan(found) || stored == 0) return Standing::unknown;
         const double needed = static_cast<double>(last_look_step_ - outcome_.discarded) *
                               options_.effective_draws / found;
@@ -283,27 +395,40 @@ class Run {
     DrawSink& sink_;
     EnsembleShape shape_;
     const Target& target_;
+    std::optional<CoordinateGaussian> approximation_;
     Mover mover_;
     RowWriter writer_;
     Watch watch_;
     Pace pace_;
 
     EnsembleState state_;
-    Outcome outcome_;        ///< what is decided so far; n_rows: delivered
-    WatchedSeries watched_;  ///< of all stored rows
-    Draws pending_;          ///< rows not yet delivered
+    Outcome outcome_;               ///< what is decided so far; n_rows: delivered
+    WatchedSeries watched_;         ///< of all stored rows
+    Draws pending_;                 ///< rows not yet delivered
+    bool is_state_stored_ = false;  ///< by the last block
 
     LookResult last_look_;  ///< for progress only, like the rest
     std::int64_t last_look_step_ = 0;
+    std::int64_t began_storing_at_ = 0;
     double storing_since_ = 0.0;
     double delivered_at_ = 0.0;
+    double seconds_to_store_ = 0.0;  ///< the last block
 };
 
 }  // namespace
 
 Outcome sample(const Target& target, const EnsembleOptions& options, DrawSink& sink) {
     require_options(options, target.n_coordinates());
-    return Run(target, options, sink).from_the_start();
+    return Run(target, options, approximation_of(target), sink).from_the_start();
+}
+
+Outcome resume_sampling(const Target& target,
+                        const EnsembleOptions& options,
+                        StoredRun stored,
+                        DrawSink& sink) {
+    require_options(options, target.n_coordinates());
+    std::optional<CoordinateGaussian> approximation = stored.warm_up.approximation;
+    return Run(target, options, std::move(approximation), sink).from(std::move(stored));
 }
 
 }  // namespace deviascope

@@ -29,12 +29,15 @@ TEST_CASE("help and version go to standard output with exit code 0", "[app]") {
 }
 
 TEST_CASE("a wrong command line is one message and exit code 2", "[app]") {
-    const std::vector<std::vector<std::string>> wrong = {{},
-                                                         {"rn", "job.toml"},
-                                                         {"run"},
-                                                         {"run", "job.toml", "--threads", "0"},
-                                                         {"run", "job.toml", "--treads", "2"},
-                                                         {"count", "job.toml", "--strict"}};
+    const std::vector<std::vector<std::string>> wrong = {
+        {},
+        {"rn", "job.toml"},
+        {"run"},
+        {"run", "job.toml", "--threads", "0"},
+        {"run", "job.toml", "--treads", "2"},
+        {"count", "job.toml", "--strict"},
+        {"count", "job.toml", "--resume"},
+        {"run", "job.toml", "--resume", "--replace"}};
     for (const auto& words : wrong) {
         const ProcessResult result = deviascope_with(words);
         CHECK(result.exit_code == 2);

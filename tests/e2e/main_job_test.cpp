@@ -11,50 +11,19 @@
 #include <thread>
 
 #include "deviascope/chain/chain_file.h"
+#include "lattice_job.h"
 #include "run_process.h"
 #include "temporary_folder.h"
 
 using namespace deviascope;
+using deviascope::test::bins;
+using deviascope::test::lattice_catalogue;
 using deviascope::test::Process;
 using deviascope::test::ProcessResult;
+using deviascope::test::small_job;
 using deviascope::test::TemporaryFolder;
 
 namespace {
-
-/// A small survey; its bins carry the weights written in `weights`.
-std::string small_job(const std::string& weights, const std::string& ensemble) {
-    return "[job]\nseed = 20260817\nnside = 8\nframe = \"icrs\"\n"
-           "[velocity]\nprior = \"free-velocity\"\n"
-           "[intrinsic]\nprior = { kind = \"gaussian\", sd = 0.05 }\n"
-           "[ensemble]\n" +
-           ensemble +
-           "[[survey]]\nname = \"binnacle\"\ncatalogue = \"binnacle.csv\"\nframe = \"icrs\"\n"
-           "columns = { lon = \"ra\", lat = \"dec\", flux = \"s\" }\n" +
-           weights;
-}
-
-std::string bins(double faint, double bright) {
-    const auto bin = [](const char* name, const char* range, double weight) {
-        return std::string("[[survey.bin]]\nname = \"") + name +
-               "\"\nselect = { flux = " + range +
-               " }\nweight = { mean = " + std::to_string(weight) + ", sd = 0.0 }\n";
-    };
-    return bin("faint", "[1.0, 2.0]", faint) + bin("bright", "[2.0, inf]", bright);
-}
-
-/// A catalogue of positions on a lattice of golden-ratio steps: no random numbers, nearly
-/// isotropic.
-std::string lattice_catalogue(int n) {
-    std::string text = "ra,dec,s\n";
-    for (int k = 0; k < n; ++k) {
-        const double z = (2.0 * k + 1.0) / n - 1.0;
-        const double turn = k * 0.6180339887498949;
-        const double lon = 360.0 * (turn - std::floor(turn));
-        text += std::to_string(lon) + ',' + std::to_string(std::asin(z) * 57.29577951308232) +
-                ',' + (k % 2 == 0 ? "1.5" : "3.0") + '\n';
-    }
-    return text;
-}
 
 ProcessResult run_job(const TemporaryFolder& folder, const std::vector<std::string>& more) {
     std::vector<std::string> words = {DEVIASCOPE_PROGRAM,
@@ -190,6 +159,7 @@ TEST_CASE("Ctrl-C ends a run with exit code 130 and a chain that can be read", "
     const Chain chain = read_chain(folder / "out" / "chains.h5");
     CHECK(chain.draws.n_rows > 0);
     CHECK(chain.outcome.end == Outcome::End::interrupted);
+    CHECK_THAT(result.err, Catch::Contains("chains.h5") && Catch::Contains("--resume"));
 }
 
 TEST_CASE("results do not depend on the order of the catalogue's rows", "[app]") {

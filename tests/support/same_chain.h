@@ -3,6 +3,7 @@
 #pragma once
 
 #include <algorithm>
+#include <optional>
 
 #include "deviascope/chain/chain.h"
 #include "file_bytes.h"
@@ -56,9 +57,16 @@ inline bool same(const Draws& a, const Draws& b) {
            same_bits(a.log_likelihood, b.log_likelihood);
 }
 
+inline bool same(const std::optional<CoordinateGaussian>& a,
+                 const std::optional<CoordinateGaussian>& b) {
+    if (!a || !b) return !a && !b;
+    return a->mean == b->mean && a->factor == b->factor;
+}
+
 inline bool same(const WarmUp& a, const WarmUp& b) {
     return same(a.buffer, b.buffer) && a.step == b.step && a.settled == b.settled &&
-           a.discarded == b.discarded && a.store_every == b.store_every;
+           a.discarded == b.discarded && a.store_every == b.store_every &&
+           same(a.approximation, b.approximation);
 }
 
 inline bool same(const KernelTally& a, const KernelTally& b) {

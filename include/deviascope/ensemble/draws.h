@@ -5,8 +5,10 @@
 #include <Eigen/Core>
 #include <array>
 #include <cstdint>
+#include <optional>
 #include <vector>
 
+#include "deviascope/core/target.h"
 #include "deviascope/ensemble/options.h"
 
 namespace deviascope {
@@ -55,6 +57,8 @@ struct WarmUp {
     bool settled = false;        ///< false: ended only because half of max_steps was used up
     std::int64_t discarded = 0;  ///< steps per walker
     std::int64_t store_every = 1;
+    /// What the target offered for the independence kernel; a resumed run uses this one.
+    std::optional<CoordinateGaussian> approximation;
 };
 
 /// Where draws go. Calls come from the main thread: warm_up once, then blocks in order.
@@ -62,9 +66,13 @@ class DrawSink {
   public:
     virtual ~DrawSink() = default;
     virtual void warm_up(const WarmUp& warm_up) = 0;
-    /// Rows since the last block (at least one), and the state at or after the last of them but
-    /// before the next row. Where blocks end depends on the clock; rows do not.
+    /// Rows since the last block (at least one, but for the block at the end of the run), and
+    /// the state at or after the last of them but before the next row. Where blocks end depends
+    /// on the clock; rows do not.
     virtual void block(const Draws& rows, const EnsembleState& state) = 0;
+    /// Rows that are best stored together: where the clock may choose, blocks after the first
+    /// end on a multiple of this number of all rows.
+    virtual std::int64_t rows_together() const { return 1; }
 };
 
 }  // namespace deviascope

@@ -39,6 +39,9 @@ struct EnsembleOptions {
     std::int64_t store_every = 0;
     KernelFractions kernels;
     int threads = 1;  ///< never changes a bit of the result
+    /// Rows handed to the sink at a time; 0: as many as a few seconds bring, so that storing
+    /// costs a small share of the time. Never changes a bit of the result.
+    std::int64_t rows_per_block = 0;
     /// Asked on the main thread between steps, several times a second where a step is short;
     /// empty: never.
     std::function<bool()> stop_requested;

@@ -30,4 +30,21 @@ struct Outcome {
 /// works on `options.threads`. Same bits for any number.
 Outcome sample(const Target& target, const EnsembleOptions& options, DrawSink& sink);
 
+/// What a run that did not come to its end has stored; enough to go on from.
+struct StoredRun {
+    WarmUp warm_up;
+    Draws draws;          ///< all rows, at least one
+    EnsembleState state;  ///< after the last block
+};
+
+/// Goes on where a stored run stands, and ends as `sample` would have: same rows, same
+/// decisions, same bits, for any number of threads. The sink receives the blocks that follow.
+/// @param options  those of the stored run, apart from what never changes a bit
+/// Errors: as `sample`; InputError where sizes or steps do not fit the target, the options or
+/// each other.
+Outcome resume_sampling(const Target& target,
+                        const EnsembleOptions& options,
+                        StoredRun stored,
+                        DrawSink& sink);
+
 }  // namespace deviascope

@@ -183,6 +183,18 @@ Shape Reader::shape(const std::string& dataset, std::size_t rank) const {
     return found;
 }
 
+Shape Reader::chunk(const std::string& dataset) const {
+    const std::size_t rank = find(dataset).shape.size();
+    return translated(
+        [&] {
+            const H5::DataSet set = parts_->file.openDataSet(dataset);
+            std::vector<hsize_t> found(rank);
+            set.getCreatePlist().getChunk(static_cast<int>(rank), found.data());
+            return Shape(found.begin(), found.end());
+        },
+        [&](const std::string& reason) { return failure(dataset, reason); });
+}
+
 void Reader::check(const std::string& dataset, const Shape& expected, Kind kind) const {
     const Found found = find(dataset);
     if (found.kind != kind)

@@ -37,6 +37,9 @@ class Reader {
     /// Extents of a dataset that must have `rank` axes.
     Shape shape(const std::string& dataset, std::size_t rank) const;
 
+    /// Extents of the chunks of a chunked dataset.
+    Shape chunk(const std::string& dataset) const;
+
     /// Whole datasets of exactly that shape, in row order.
     std::vector<double> reals(const std::string& dataset, const Shape& expected) const;
     std::vector<std::int64_t> integers(const std::string& dataset, const Shape& expected) const;

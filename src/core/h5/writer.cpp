@@ -4,7 +4,7 @@
 #include <algorithm>
 #include <limits>
 
-#include "core/h5/memory_file.h"
+#include "core/h5/draft_file.h"
 
 namespace deviascope::h5 {
 
@@ -45,8 +45,8 @@ struct Writer::Layout {
 };
 
 struct Writer::Parts {
-    std::unique_ptr<MemoryFile> memory;
-    H5::H5File& file() { return memory->file(); }
+    std::unique_ptr<DraftFile> draft;
+    H5::H5File& file() { return draft->file(); }
 };
 
 namespace {
@@ -123,9 +123,9 @@ auto Writer::attempt(const std::string& object, Call&& call) const {
                       [&](const std::string& reason) { return failure(object, reason); });
 }
 
-Writer::Writer(const std::filesystem::path& path, const std::string& image)
+Writer::Writer(const std::filesystem::path& path, const Descriptor* base)
     : path_(path), parts_(std::make_unique<Parts>()) {
-    attempt("", [&] { parts_->memory = std::make_unique<MemoryFile>(image); });
+    attempt("", [&] { parts_->draft = std::make_unique<DraftFile>(base); });
 }
 
 Writer::~Writer() = default;
@@ -296,8 +296,8 @@ void Writer::append(const std::string& path, std::span<const std::int64_t> value
     append_elements(path, Elements(values));
 }
 
-std::string Writer::close() {
-    return attempt("", [&] { return parts_->memory->close(); });
+Draft Writer::close() {
+    return attempt("", [&] { return parts_->draft->close(); });
 }
 
 }  // namespace deviascope::h5

@@ -12,15 +12,20 @@
 #include "core/h5/dataset.h"
 #include "deviascope/core/error.h"
 
+namespace deviascope {
+class Descriptor;
+}
+
 namespace deviascope::h5 {
 
-/// An HDF5 file that is being made or changed, in memory. Objects are named by their absolute
-/// path inside it.
+struct Draft;
+
+/// An HDF5 file that is being made or changed. Objects are named by their absolute path inside
+/// it.
 ///
-/// In memory, because the library keeps no order of its books when the system refuses to write:
-/// with a file of its own on a full disk it ends in a crash, at the latest when the program
-/// ends. So the library never meets the disk; whoever wants the file there writes the bytes
-/// that `close` gives.
+/// What is written stays in memory (DraftFile), because the library keeps no order of its books
+/// when the system refuses to write: on a full disk it ends in a crash, at the latest when the
+/// program ends. Whoever wants the changes on the disk writes what `close` gives.
 ///
 /// Numbers are little-endian, in chunks, shuffled, deflated (level 1: higher levels cost time
 /// and gain little on draws) and checksummed; texts are UTF-8 of fixed length. No times are
@@ -29,9 +34,9 @@ namespace deviascope::h5 {
 /// Errors of all members: OutputError with file, object and reason.
 class Writer {
   public:
-    /// A new file, or, where `image` is not empty, that file to be changed.
     /// @param path  for messages only
-    explicit Writer(const std::filesystem::path& path, const std::string& image = {});
+    /// @param base  the file to change, longer alive than this; null: a new file
+    explicit Writer(const std::filesystem::path& path, const Descriptor* base = nullptr);
     ~Writer();
     Writer(const Writer&) = delete;
     Writer& operator=(const Writer&) = delete;
@@ -79,8 +84,8 @@ class Writer {
     void append(const std::string& path, std::span<const double> values);
     void append(const std::string& path, std::span<const std::int64_t> values);
 
-    /// Closes the file and gives its bytes; the last call.
-    std::string close();
+    /// Closes the file and gives what has changed; the last call.
+    Draft close();
 
   private:
     struct Parts;

@@ -2,7 +2,10 @@
 #include "deviascope/chain/chain_file.h"
 
 #include <catch2/catch.hpp>
+#include <fstream>
+#include <set>
 
+#include "core/h5/reader.h"
 #include "core/h5/replaced_file.h"
 #include "deviascope/core/error.h"
 #include "deviascope/counts/counts_file.h"
@@ -41,6 +44,22 @@ fs::path spoilt(const TemporaryFolder& folder, const h5::Edit& edit) {
     test::write_example_chain(folder / "chains.h5");
     h5::change_file(folder / "chains.h5", edit);
     return folder / "chains.h5";
+}
+
+std::set<std::string> files_in(const TemporaryFolder& folder) {
+    std::set<std::string> names;
+    for (const auto& entry : fs::directory_iterator(folder.path()))
+        names.insert(entry.path().filename().string());
+    return names;
+}
+
+/// Bytes this process has written so far (proc(5), /proc/pid/io).
+std::int64_t bytes_written() {
+    std::ifstream io("/proc/self/io");
+    std::string name;
+    for (std::int64_t number = 0; io >> name >> number;)
+        if (name == "wchar:") return number;
+    return -1;
 }
 
 std::span<const std::int64_t> one(const std::int64_t& number) {
@@ -112,7 +131,7 @@ TEST_CASE("a chain that is continued equals one that never stopped, byte for byt
         writer.warm_up(example_warm_up());
         writer.block(example_draws(0, 3), example_state(3));
     }
-    ChainWriter again(folder / "stopped.h5");
+    ChainWriter again(folder / "stopped.h5", read_chain(folder / "stopped.h5"));
     again.block(example_draws(3, 0), example_state(3));
     again.block(example_draws(3, 2), example_state(5));
     again.finish(example_outcome(5), "2026-08-17T11:30:00Z");
@@ -123,7 +142,7 @@ TEST_CASE("a chain that is continued equals one that never stopped, byte for byt
 TEST_CASE("a chain that is continued after its end is unfinished again", "[chain]") {
     const TemporaryFolder folder;
     test::write_example_chain(folder / "chains.h5");
-    ChainWriter writer(folder / "chains.h5");
+    ChainWriter writer(folder / "chains.h5", read_chain(folder / "chains.h5"));
     writer.block(example_draws(5, 1), example_state(6));
     const Chain chain = read_chain(folder / "chains.h5");
     CHECK(chain.outcome.end == Outcome::End::not_run);
@@ -133,8 +152,8 @@ TEST_CASE("a chain that is continued after its end is unfinished again", "[chain
 TEST_CASE("a chain without a block cannot be continued", "[chain]") {
     const TemporaryFolder folder;
     test::begin_example(folder / "chains.h5").warm_up(example_warm_up());
-    CHECK_THROWS_WITH(ChainWriter(folder / "chains.h5"), Catch::Contains("no block"));
-    CHECK_THROWS_AS(ChainWriter(folder / "none.h5"), InputError);
+    const Chain stored = read_chain(folder / "chains.h5");
+    CHECK_THROWS_WITH(ChainWriter(folder / "chains.h5", stored), Catch::Contains("no block"));
 }
 
 TEST_CASE("an empty list of libraries is filled in", "[chain]") {
@@ -178,13 +197,86 @@ TEST_CASE("a disk that fills up costs nothing that was stored", "[chain]") {
         CHECK_THROWS_WITH(writer.block(example_draws(3, 2), example_state(5)),
                           Catch::Contains("the block up to step 207") &&
                               Catch::Contains("File too large") &&
-                              Catch::Contains("3 rows up to step 201 are safe"));
+                              Catch::Contains("24 draws (3 rows, up to step 201) are safe"));
         CHECK_THROWS_AS(writer.finish(example_outcome(3), "now"), OutputError);
     }
     CHECK(bytes_of(path) == before);
-    CHECK(std::distance(fs::directory_iterator(folder.path()), {}) == 1);
+    CHECK(files_in(folder) == std::set<std::string>{"chains.h5", "chains.h5.lock"});
     writer.block(example_draws(3, 2), example_state(5));
     CHECK(same(read_chain(path).draws, example_draws(0, 5)));
+}
+
+TEST_CASE("a chain has one writer at a time", "[chain]") {
+    const TemporaryFolder folder;
+    const fs::path path = folder / "chains.h5";
+    {
+        const ChainWriter writer = test::begin_example(path);
+        const ChainLock another(folder / "other.h5");
+        CHECK_THROWS_WITH(ChainLock(path),
+                          Catch::Contains("chains.h5.lock") &&
+                              Catch::Contains("another process is writing this chain"));
+    }
+    CHECK(files_in(folder) == std::set<std::string>{"chains.h5"});
+    const ChainLock lock(path);
+    ChainWriter writer(lock, {}, {}, {}, {}, {});
+}
+
+TEST_CASE("what an earlier writer left beside a chain is removed", "[chain]") {
+    const TemporaryFolder folder;
+    folder.write("chains.h5.next", "half a block");
+    folder.write("chains.h5.old", "half an exchange");
+    folder.write("chains.h5.tmp", "half a beginning");
+    folder.write("chains.h5.lock", "");
+    test::write_example_chain(folder / "chains.h5");
+    CHECK(files_in(folder) == std::set<std::string>{"chains.h5"});
+    CHECK(same(read_chain(folder / "chains.h5").draws, example_draws(0, 5)));
+}
+
+TEST_CASE("storing a block takes what the block holds, not what the file holds", "[chain]") {
+    const TemporaryFolder folder;
+    ChainWriter writer = test::begin_example(folder / "chains.h5");
+    writer.warm_up(example_warm_up());
+    std::vector<std::int64_t> cost;
+    for (Eigen::Index block = 0; block < 60; ++block) {
+        CHECK(writer.rows_together() == (block == 0 ? 1 : 25));
+        const std::int64_t before = bytes_written();
+        writer.block(example_draws(25 * block, 25), example_state(25 * (block + 1)));
+        cost.push_back(bytes_written() - before);
+    }
+    REQUIRE(cost[10] > 0);
+    CHECK(static_cast<double>(cost[59]) < 1.5 * static_cast<double>(cost[10]));
+    CHECK(static_cast<double>(cost[59]) <
+          0.2 * static_cast<double>(fs::file_size(folder / "chains.h5")));
+    const Chain stored = read_chain(folder / "chains.h5");
+    CHECK(same(stored.draws, example_draws(0, 60 * 25)));
+}
+
+TEST_CASE("a reader that keeps the chain open keeps what it opened", "[chain]") {
+    const TemporaryFolder folder;
+    const fs::path path = folder / "chains.h5";
+    ChainWriter writer = test::begin_example(path);
+    writer.warm_up(example_warm_up());
+    writer.block(example_draws(0, 3), example_state(3));
+    const h5::Reader reader(path);
+    Eigen::Index n_rows = 3;
+    for (; n_rows < 9; ++n_rows)
+        writer.block(example_draws(n_rows, 1), example_state(n_rows + 1));
+    CHECK(test::same_bits(reader.reals("/draws", {3, 2, 4, 7}), example_draws(0, 3).value));
+    CHECK(same(read_chain(path).draws, example_draws(0, 9)));
+}
+
+TEST_CASE("the Gaussian of the independence kernel is kept with the warm-up", "[chain]") {
+    const TemporaryFolder folder;
+    ChainWriter writer = test::begin_example(folder / "chains.h5");
+    WarmUp warm_up = example_warm_up();
+    warm_up.approximation =
+        CoordinateGaussian{Eigen::Vector2d(1.0 / 3.0, -0.0),
+                           (Eigen::Matrix2d() << 2.0, 0.0, 0.1, 5e-324).finished()};
+    writer.warm_up(warm_up);
+    const auto found = read_chain(folder / "chains.h5").warm_up.approximation;
+    REQUIRE(found.has_value());
+    CHECK(found->mean == warm_up.approximation->mean);
+    CHECK(found->factor == warm_up.approximation->factor);
 }
 
 TEST_CASE("a chain that vanished while it is written is an output error", "[chain]") {

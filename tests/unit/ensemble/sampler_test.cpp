@@ -269,6 +269,7 @@ TEST_CASE("an interrupted run has delivered the first rows of the whole run", "[
     const Result whole = run(VectorTarget(), quick());
     Result part;
     EnsembleOptions options = quick();
+    options.rows_per_block = 3;
     options.stop_requested = [&] { return part.sink.draws.n_rows > 0; };
     part.outcome = sample(VectorTarget(), options, part.sink);
     REQUIRE(part.outcome.end == Outcome::End::interrupted);

@@ -1,0 +1,54 @@
+// SPDX-License-Identifier: GPL-2.0-or-later
+// CORE (private): an HDF5 file that is changed in memory only
+#pragma once
+
+#include <array>
+#include <cstdint>
+#include <map>
+#include <memory>
+
+#include "core/descriptor.h"
+#include "core/h5/session.h"
+
+namespace deviascope::h5 {
+
+inline constexpr std::uint64_t page_bytes = 4096;
+using Page = std::array<char, page_bytes>;
+
+/// How a file differs from the one it was made from: pages by number (offset / page_bytes), and
+/// the length. Bytes of a page beyond the length are zero or mean nothing.
+struct Draft {
+    std::map<std::uint64_t, Page> pages;
+    std::uint64_t length = 0;
+};
+
+/// Reads a page of a file; bytes beyond its end are zero. Errors: OutputError.
+Page read_page(const Descriptor& file, std::uint64_t number);
+
+/// An HDF5 file of which the library sees the content on the disk, while what it writes stays
+/// in memory, page by page: memory and time go with what changes, not with the size of the
+/// file. So the library, which keeps no order of its books once a write has failed, never meets
+/// one. Made with a file driver of our own (H5FDregister).
+class DraftFile {
+  public:
+    /// @param base  the file to change, only read, and longer alive than this; null: a new file
+    /// Errors: H5::Exception.
+    explicit DraftFile(const Descriptor* base);
+    ~DraftFile();
+    DraftFile(const DraftFile&) = delete;
+    DraftFile& operator=(const DraftFile&) = delete;
+
+    H5::H5File& file() { return file_; }
+    /// Closes the file and gives what has changed. Errors: H5::Exception; OutputError where the
+    /// base could not be read; std::bad_alloc.
+    Draft close();
+
+    /// What the driver works on.
+    struct Parts;
+
+  private:
+    std::unique_ptr<Parts> parts_;
+    H5::H5File file_;
+};
+
+}  // namespace deviascope::h5
