@@ -296,6 +296,7 @@ class Run {
     void store_leg() {
         const std::int64_t n_steps =
             std::min({pace_.steps(), next_look() - state_.step, steps_to_block()});
+        if (n_steps == 0) return;  // a block has come due this instant
         const std::int64_t delivered = outcome_.n_rows;
         const Eigen::Index first_new = pending_.n_rows;
         resize_rows(pending_, rows_up_to(state_.step + n_steps) - delivered);
