@@ -217,8 +217,9 @@ TEST_CASE("a chain has one writer at a time", "[chain]") {
                               Catch::Contains("another process is writing this chain"));
     }
     CHECK(files_in(folder) == std::set<std::string>{"chains.h5"});
+    fs::remove(path);
     const ChainLock lock(path);
-    ChainWriter writer(lock, {}, {}, {}, {}, {});
+    const ChainWriter shares_it(lock, {}, {}, {}, {}, {});
 }
 
 TEST_CASE("what an earlier writer left beside a chain is removed", "[chain]") {
@@ -237,18 +238,18 @@ TEST_CASE("storing a block takes what the block holds, not what the file holds",
     ChainWriter writer = test::begin_example(folder / "chains.h5");
     writer.warm_up(example_warm_up());
     std::vector<std::int64_t> cost;
-    for (Eigen::Index block = 0; block < 60; ++block) {
+    for (Eigen::Index block = 0; block < 120; ++block) {
         CHECK(writer.rows_together() == (block == 0 ? 1 : 25));
         const std::int64_t before = bytes_written();
         writer.block(example_draws(25 * block, 25), example_state(25 * (block + 1)));
         cost.push_back(bytes_written() - before);
     }
     REQUIRE(cost[10] > 0);
-    CHECK(static_cast<double>(cost[59]) < 1.5 * static_cast<double>(cost[10]));
-    CHECK(static_cast<double>(cost[59]) <
+    CHECK(static_cast<double>(cost.back()) < 1.5 * static_cast<double>(cost[10]));
+    CHECK(static_cast<double>(cost.back()) <
           0.2 * static_cast<double>(fs::file_size(folder / "chains.h5")));
     const Chain stored = read_chain(folder / "chains.h5");
-    CHECK(same(stored.draws, example_draws(0, 60 * 25)));
+    CHECK(same(stored.draws, example_draws(0, 120 * 25)));
 }
 
 TEST_CASE("a reader that keeps the chain open keeps what it opened", "[chain]") {

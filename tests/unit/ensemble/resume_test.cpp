@@ -18,9 +18,9 @@ EnsembleOptions in_small_blocks() {
     EnsembleOptions options;
     options.seed = 20260817;
     options.replicates = 3;
-    options.effective_draws = 600;
+    options.effective_draws = 2000;
     options.max_steps = 3000;
-    options.rows_per_block = 3;
+    options.rows_per_block = 2;
     return options;
 }
 
