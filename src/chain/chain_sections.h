@@ -21,8 +21,8 @@ void write_warm_up(h5::Writer& writer, const WarmUp& warm_up);
 
 /// Errors: InternalError where the sizes of rows and state do not fit each other.
 void ensure_block(const Draws& rows, const EnsembleState& state);
-/// Rows of a chunk where blocks have about so many rows, and end with a chunk.
-std::int64_t good_rows_a_chunk(Eigen::Index rows_a_block);
+/// Rows of a chunk, at most 100, so that this many rows fill whole chunks, or nearly so.
+std::int64_t good_rows_a_chunk(Eigen::Index n_rows);
 /// The datasets that grow, for blocks like this one.
 void create_growing(h5::Writer& writer,
                     const Draws& rows,

@@ -53,8 +53,8 @@ class ChainWriter : public DrawSink {
     void warm_up(const WarmUp& warm_up) override;
     /// Appends rows (none is allowed) and the state after the last of them.
     void block(const Draws& rows, const EnsembleState& state) override;
-    /// Rows of a chunk of the file: as many as the first block had, 100 at most. A chunk that
-    /// is not full is written again, elsewhere in the file, when it is added to.
+    /// Rows of a chunk of the file: as many as the first block had, or an even part of them. A
+    /// chunk that is not full is written again, elsewhere in the file, when it is added to.
     std::int64_t rows_together() const override;
     /// Marks the end: outcome and end time.
     void finish(const Outcome& outcome, const std::string& ended);

@@ -42,6 +42,7 @@ struct Writer::Layout {
     Shape shape;
     Shape chunk;
     bool grows = false;
+    Packing packing = Packing::deflated;
 };
 
 struct Writer::Parts {
@@ -76,12 +77,14 @@ Shape fitted(Shape chunk, const Shape& shape, bool grows) {
     return chunk;
 }
 
-H5::DSetCreatPropList storage(const Shape& chunk) {
+H5::DSetCreatPropList storage(const Shape& chunk, bool deflated) {
     auto list = without_times(H5::DSetCreatPropList());
     if (chunk.empty()) return list;
     list.setChunk(static_cast<int>(chunk.size()), extents(chunk).data());
-    list.setShuffle();
-    list.setDeflate(deflate_level);
+    if (deflated) {
+        list.setShuffle();
+        list.setDeflate(deflate_level);
+    }
     list.setFletcher32();
     return list;
 }
@@ -188,7 +191,10 @@ void Writer::attribute(const std::string& object, const std::string& name, doubl
 void Writer::create(const std::string& path, const About& about, const Layout& layout) {
     attempt(path, [&] {
         parts_->file().createDataSet(
-            path, layout.type, space_of(layout.shape, layout.grows), storage(layout.chunk));
+            path,
+            layout.type,
+            space_of(layout.shape, layout.grows),
+            storage(layout.chunk, layout.packing == Packing::deflated));
     });
     attribute(path, "meaning", about.meaning);
     if (!about.unit.empty()) attribute(path, "unit", about.unit);
@@ -253,10 +259,13 @@ void Writer::dataset(const std::string& path,
 void Writer::growing_reals(const std::string& path,
                            const About& about,
                            const Shape& entry,
-                           const Shape& chunk) {
+                           const Shape& chunk,
+                           Packing packing) {
     Shape shape{0};
     shape.insert(shape.end(), entry.begin(), entry.end());
-    create(path, about, {H5::PredType::IEEE_F64LE, shape, fitted(chunk, shape, true), true});
+    create(path,
+           about,
+           {H5::PredType::IEEE_F64LE, shape, fitted(chunk, shape, true), true, packing});
 }
 
 void Writer::growing_integers(const std::string& path,

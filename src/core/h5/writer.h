@@ -28,12 +28,14 @@ struct Draft;
 /// program ends. Whoever wants the changes on the disk writes what `close` gives.
 ///
 /// Numbers are little-endian, in chunks, shuffled, deflated (level 1: higher levels cost time
-/// and gain little on draws) and checksummed; texts are UTF-8 of fixed length. No times are
-/// stored, so that the same content gives the same bytes. The file format is that of HDF5 1.10,
-/// whose checksums turn damage into errors.
-/// Errors of all members: OutputError with file, object and reason.
+/// and gain little on draws; growing ones on request only) and checksummed; texts are UTF-8 of
+/// fixed length. No times are stored, so that the same content gives the same bytes. The file
+/// format is that of HDF5 1.10, whose checksums turn damage into errors. Errors of all members:
+/// OutputError with file, object and reason.
 class Writer {
   public:
+    enum class Packing { plain, deflated };
+
     /// @param path  for messages only
     /// @param base  the file to change, longer alive than this; null: a new file
     explicit Writer(const std::filesystem::path& path, const Descriptor* base = nullptr);
@@ -72,10 +74,12 @@ class Writer {
                  const std::vector<std::string>& texts);
 
     /// A new empty dataset that grows along its first axis: shape 0 x `entry`.
+    /// @param packing  noise takes ten times as long to deflate as to write, and stays as long
     void growing_reals(const std::string& path,
                        const About& about,
                        const Shape& entry,
-                       const Shape& chunk);
+                       const Shape& chunk,
+                       Packing packing = Packing::deflated);
     void growing_integers(const std::string& path,
                           const About& about,
                           const Shape& entry,
