@@ -1,0 +1,30 @@
+# SPDX-License-Identifier: GPL-2.0-or-later
+# Completion of deviascope for bash.
+_deviascope() {
+    local word=${COMP_WORDS[COMP_CWORD]} previous=${COMP_WORDS[COMP_CWORD-1]} command=${COMP_WORDS[1]}
+    COMPREPLY=()
+    if [ "$COMP_CWORD" -eq 1 ]; then
+        mapfile -t COMPREPLY < <(compgen -W "run check count sample summarise mock --help --version" -- "$word")
+        return
+    fi
+    case $previous in
+        -o|--output) mapfile -t COMPREPLY < <(compgen -d -- "$word"); return ;;
+        --threads) return ;;
+    esac
+    if [[ $word == -* ]]; then
+        local options="--help --threads --quiet"
+        case $command in
+            check) options+=" --strict" ;;
+            run|sample) options+=" --output --replace --resume --strict" ;;
+            summarise) options+=" --output --replace --strict" ;;
+            count) options+=" --output --replace --maps" ;;
+            mock) options+=" --output --replace" ;;
+        esac
+        mapfile -t COMPREPLY < <(compgen -W "$options" -- "$word")
+        return
+    fi
+    local ending=toml
+    [ "$command" = summarise ] && ending=h5
+    mapfile -t COMPREPLY < <(compgen -d -- "$word"; compgen -f -X "!*.$ending" -- "$word")
+}
+complete -o filenames -F _deviascope deviascope

@@ -1,0 +1,33 @@
+#compdef deviascope
+# SPDX-License-Identifier: GPL-2.0-or-later
+# Completion of deviascope for zsh.
+local -a commands everywhere writes
+commands=(
+    'run:the whole job: counts, samples and summarises'
+    'check:checks a job and its inputs; writes nothing'
+    'count:counts the sources of every survey'
+    'sample:samples the posterior'
+    'summarise:summarises a chain'
+    'mock:makes mock catalogues with known truth'
+)
+everywhere=('--help[help]' '--threads[threads to use]:number:' '--quiet[no progress and no report]')
+writes=('(-o --output)'{-o,--output}'[folder for the results]:folder:_files -/'
+    '--replace[overwrite results that exist]')
+local resume='--resume[go on with a run that was cut off]'
+local strict='--strict[exit with 6 where the result is doubtful]'
+
+if (( CURRENT == 2 )); then
+    _describe command commands
+    _arguments '--help[help]' '--version[version]'
+    return
+fi
+local command=$words[2]
+shift words
+(( CURRENT-- ))
+case $command in
+    check) _arguments $everywhere $strict '1:job:_files -g "*.toml"' ;;
+    run|sample) _arguments $everywhere $writes $strict $resume '1:job:_files -g "*.toml"' ;;
+    count) _arguments $everywhere $writes '--maps[write maps too]' '1:job:_files -g "*.toml"' ;;
+    summarise) _arguments $everywhere $writes $strict '1:chain:_files -g "*.h5"' ;;
+    mock) _arguments $everywhere $writes '1:scenario:_files -g "*.toml"' ;;
+esac
