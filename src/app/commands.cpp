@@ -10,6 +10,7 @@
 #include "app/steps.h"
 #include "app/terminal.h"
 #include "deviascope/chain/chain_file.h"
+#include "deviascope/counts/count_maps.h"
 
 namespace deviascope {
 
@@ -62,6 +63,18 @@ ExitCode verdict(const Summary& summary, const CommandOptions& options) {
     return options.strict && !summary.warnings.empty() ? ExitCode::doubtful : ExitCode::done;
 }
 
+constexpr const char* maps_folder = "maps";
+
+/// The files that --maps would write must not be there unasked.
+void prepare_maps(const Job& job, const fs::path& folder, Existing existing) {
+    std::vector<std::string> names;
+    for (const SurveyInput& survey : job.surveys)
+        for (const BinInput& bin : survey.bins)
+            for (const fs::path& name : names_of_count_maps(survey.name, bin.name))
+                names.push_back((maps_folder / name).string());
+    prepare_output(folder, names, existing);
+}
+
 }  // namespace
 
 ExitCode count_command(const CommandOptions& options) {
@@ -69,10 +82,16 @@ ExitCode count_command(const CommandOptions& options) {
     const Job job = read_job(options.input);
     const fs::path folder = folder_of(options);
     prepare_output(folder, {"counts.h5"}, existing_of(options));
+    if (options.maps) prepare_maps(job, folder, existing_of(options));
     const CountsFile file = make_counts(job, record_inputs(job, terminal), folder, terminal);
     for (const SurveyCounts& survey : file.counts.surveys)
         terminal.say(fmt::format("\n{}", cut_table(survey.name, survey.cuts)));
     terminal.say(fmt::format("Written: {}", (folder / "counts.h5").string()));
+    if (options.maps) {
+        write_count_maps(file.counts, folder / maps_folder);
+        terminal.say(fmt::format("Written: counts and exposure of every bin as maps in {}",
+                                 (folder / maps_folder).string()));
+    }
     return ExitCode::done;
 }
 

@@ -18,6 +18,7 @@ struct CommandOptions {
     bool replace = false;
     bool resume = false;
     bool strict = false;
+    bool maps = false;
     int rows_per_block = 0;  ///< rows stored at a time; 0: by the clock
 
     /// Threads to use.
@@ -26,6 +27,7 @@ struct CommandOptions {
 
 /// One function a command; each returns the exit code of a run that did not fail.
 ExitCode run_command(const CommandOptions& options);
+ExitCode check_command(const CommandOptions& options);
 ExitCode count_command(const CommandOptions& options);
 ExitCode sample_command(const CommandOptions& options);
 ExitCode summarise_command(const CommandOptions& options);

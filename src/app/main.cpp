@@ -5,7 +5,9 @@
 
 #include <CLI/CLI.hpp>
 #include <algorithm>
+#include <cerrno>
 #include <cstdio>
+#include <cstring>
 #include <exception>
 #include <functional>
 #include <new>
@@ -14,6 +16,10 @@
 
 #include "app/commands.h"
 #include "app/interrupt.h"
+#include "app/terminal.h"
+#include "core/fits/fits_file.h"
+#include "core/gzip/byte_source.h"
+#include "deviascope/chain/chain.h"
 #include "deviascope/core/error.h"
 #include "deviascope/core/nearest_name.h"
 #include "deviascope/core/version.h"
@@ -30,9 +36,10 @@ struct Command {
     const char* description;
     const char* input;  ///< name of its argument
     const char* input_description;
-    const char* output_description;
-    bool resume;  ///< takes --resume
-    bool strict;  ///< takes --strict
+    const char* output_description;  ///< null where it writes nothing
+    bool resume;                     ///< takes --resume
+    bool strict;                     ///< takes --strict
+    bool maps;                       ///< takes --maps
     Action action;
 };
 
@@ -47,7 +54,17 @@ std::vector<Command> commands() {
          folder,
          true,
          true,
+         false,
          deviascope::run_command},
+        {"check",
+         "Checks a job and its inputs, and says what would be done; writes nothing",
+         "JOB.toml",
+         job,
+         nullptr,
+         false,
+         true,
+         false,
+         deviascope::check_command},
         {"count",
          "Counts the sources of every survey into counts.h5",
          "JOB.toml",
@@ -55,6 +72,7 @@ std::vector<Command> commands() {
          folder,
          false,
          false,
+         true,
          deviascope::count_command},
         {"sample",
          "Samples the posterior into chains.h5, from the folder's counts.h5 if it fits",
@@ -63,6 +81,7 @@ std::vector<Command> commands() {
          folder,
          true,
          true,
+         false,
          deviascope::sample_command},
         {"summarise",
          "Summarises a chain into summary.json and summary.txt",
@@ -71,12 +90,14 @@ std::vector<Command> commands() {
          "folder for the summary; default: beside the chain",
          false,
          true,
+         false,
          deviascope::summarise_command},
         {"mock",
          "Makes mock catalogues with known truth",
          "SCENARIO.toml",
          "scenario file (TOML)",
          "folder for the catalogues; default: the scenario's name, here",
+         false,
          false,
          false,
          deviascope::mock_command},
@@ -91,15 +112,17 @@ void add_command(CLI::App& program,
     sub->add_option(command.input, options.input, command.input_description)
         ->required()
         ->option_text(" ");
-    sub->add_option("-o,--output", options.output, command.output_description)
-        ->option_text("DIR");
+    CLI::Option* replace = nullptr;
+    if (command.output_description != nullptr) {
+        sub->add_option("-o,--output", options.output, command.output_description)
+            ->option_text("DIR");
+        replace = sub->add_flag("--replace", options.replace, "overwrite results that exist");
+    }
     sub->add_option(
            "--threads", options.threads, "threads to use; the results do not depend on it")
         ->check(CLI::Range(1, 4096))
         ->option_text("N");
     sub->add_flag("--quiet", options.quiet, "no progress and no report; warnings remain");
-    CLI::Option* replace =
-        sub->add_flag("--replace", options.replace, "overwrite results that exist");
     if (command.resume) {
         sub->add_flag("--resume",
                       options.resume,
@@ -110,6 +133,10 @@ void add_command(CLI::App& program,
             ->check(CLI::Range(1, 1'000'000))
             ->group("");
     }
+    if (command.maps)
+        sub->add_flag("--maps",
+                      options.maps,
+                      "write the counts and exposure of every bin as HEALPix maps too");
     if (command.strict)
         sub->add_flag("--strict", options.strict, "exit with 6 where the result is doubtful");
     sub->callback([&chosen, action = command.action] { chosen = action; });
@@ -120,9 +147,20 @@ int fail(ExitCode code, const std::string& text) {
     return static_cast<int>(code);
 }
 
+/// What was said must have arrived, unless its reader chose to leave.
+int after_last_word(int code) {
+    const int reason = deviascope::Terminal::output_failure();
+    if (reason == 0 || reason == EPIPE || code != 0) return code;
+    return fail(
+        ExitCode::output,
+        fmt::format("standard output: cannot be written ({}); an open terminal, file or "
+                    "pipe; results are complete, their report is not",
+                    std::strerror(reason)));
+}
+
 /// Refuses a first word that is no command, with the nearest one: the parser would only say
 /// that a command is missing.
-void check_command(int argc, char** argv) {
+void refuse_unknown_command(int argc, char** argv) {
     if (argc < 2 || argv[1][0] == '-') return;
     std::vector<std::string> known;
     for (const Command& command : commands()) known.emplace_back(command.name);
@@ -141,13 +179,19 @@ int parse_and_act(int argc, char** argv) {
         "sources.",
         "deviascope"};
     program.require_subcommand(1);
-    program.set_version_flag("--version", "deviascope " + deviascope::version());
+    program.set_version_flag("--version", [] {
+        return fmt::format("deviascope {}\nwith {}, {}, {}",
+                           deviascope::version(),
+                           deviascope::library_versions(),
+                           deviascope::fits::library_version(),
+                           deviascope::gzip_library_version());
+    });
     program.footer(
         "Exit codes: 0 done; 2 wrong command line or job file; 3 bad input data; 4 numerics "
         "cannot\n"
         "go on; 5 cannot write; 6 doubtful (--strict); 70 a fault of ours; 130 interrupted\n"
         "(go on with --resume).");
-    check_command(argc, argv);
+    refuse_unknown_command(argc, argv);
     CommandOptions options;
     Action chosen;
     for (const Command& command : commands()) add_command(program, command, options, chosen);
@@ -172,7 +216,7 @@ int not_enough_memory() {
 int main(int argc, char** argv) {
     deviascope::watch_for_interrupts();
     try {
-        return parse_and_act(argc, argv);
+        return after_last_word(parse_and_act(argc, argv));
     } catch (const deviascope::Error& error) {
         return fail(error.exit_code(), error.what());
     } catch (const deviascope::Interrupted&) {

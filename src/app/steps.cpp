@@ -14,6 +14,7 @@
 #include "deviascope/core/grouped_number.h"
 #include "deviascope/core/version.h"
 #include "deviascope/counts/count_sources.h"
+#include "deviascope/model/forecast.h"
 
 namespace deviascope {
 
@@ -64,6 +65,13 @@ Progress ending_on_request(Progress show) {
     throw OutputError(message);
 }
 
+bool has_empty_bin(const Counts& counts) {
+    for (const SurveyCounts& survey : counts.surveys)
+        for (const BinCounts& bin : survey.bins)
+            if (bin.total() == 0) return true;
+    return false;
+}
+
 Job job_of(const Chain& chain) {
     const auto finder = [&](const std::string& name) -> std::optional<Companion> {
         for (const Companion& companion : chain.provenance.companions)
@@ -106,29 +114,53 @@ InputRecord record_inputs(const Job& job, Terminal& terminal) {
     return record;
 }
 
-CountsFile make_counts(const Job& job,
-                       const InputRecord& inputs,
-                       const fs::path& folder,
-                       Terminal& terminal) {
-    CountsFile file;
-    file.counts.nside = job.nside;
-    file.counts.frame = job.frame;
-    file.digest = inputs.counts_digest;
-    file.version = version();
+Counts count_surveys(const Job& job, Terminal& terminal) {
+    Counts counts;
+    counts.nside = job.nside;
+    counts.frame = job.frame;
     const Pixelisation grid(job.nside);
     for (const SurveyInput& survey : job.surveys) {
-        file.counts.surveys.push_back(
+        counts.surveys.push_back(
             count_survey(survey, grid, job.frame, ending_on_request(terminal.progress())));
-        const SurveyCounts& counted = file.counts.surveys.back();
+        const SurveyCounts& counted = counts.surveys.back();
         terminal.say(fmt::format("Counted {}: {} of {} rows and {} of {} pixels kept.",
                                  counted.name,
                                  grouped(counted.cuts.rows_kept),
                                  grouped(counted.cuts.rows_read),
                                  grouped(counted.cuts.pixels_kept),
                                  grouped(counted.cuts.pixels_total)));
-        for (const std::string& warning : counted.cuts.warnings)
-            terminal.warn(fmt::format("{}: {}", counted.name, warning));
     }
+    return counts;
+}
+
+std::size_t warn_of_counts_and_priors(const Counts& counts,
+                                      const ParameterSpace& space,
+                                      Terminal& terminal) {
+    std::vector<std::string> warnings;
+    for (const SurveyCounts& survey : counts.surveys)
+        for (const std::string& warning : survey.cuts.warnings)
+            warnings.push_back(fmt::format("{}: {}", survey.name, warning));
+    const auto forecasts =
+        has_empty_bin(counts) ? std::vector<VectorForecast>{} : forecast(counts, space);
+    for (const VectorForecast& vector : forecasts)
+        if (vector.prior_rules)
+            warnings.push_back(
+                fmt::format("{}: its prior (sd {:.2g} a component) is narrower than the noise "
+                            "of the counts "
+                            "(sd {:.2g} without it): the result will be mostly the prior",
+                            vector.name,
+                            vector.prior_sd,
+                            vector.counts_sd));
+    for (const std::string& warning : warnings) terminal.warn(warning);
+    return warnings.size();
+}
+
+CountsFile make_counts(const Job& job,
+                       const InputRecord& inputs,
+                       const fs::path& folder,
+                       Terminal& terminal) {
+    const CountsFile file{count_surveys(job, terminal), inputs.counts_digest, version()};
+    warn_of_counts_and_priors(file.counts, ParameterSpace(file.counts, job.model), terminal);
     write_counts(folder / "counts.h5", file);
     return file;
 }

@@ -9,6 +9,7 @@
 #include "deviascope/chain/chain.h"
 #include "deviascope/counts/counts_file.h"
 #include "deviascope/job/job.h"
+#include "deviascope/model/parameter_space.h"
 #include "deviascope/summary/summary.h"
 
 namespace deviascope {
@@ -23,7 +24,17 @@ struct InputRecord {
 /// Errors: Interrupted while files are read.
 InputRecord record_inputs(const Job& job, Terminal& terminal);
 
-/// catalogue -> counts: counts every survey and writes counts.h5.
+/// catalogue -> counts: counts every survey; writes nothing.
+/// Errors: Interrupted while catalogues are read.
+Counts count_surveys(const Job& job, Terminal& terminal);
+
+/// What is suspicious about the inputs, and vectors whose prior is narrower than the noise of
+/// the counts; returns how many warnings it gave.
+std::size_t warn_of_counts_and_priors(const Counts& counts,
+                                      const ParameterSpace& space,
+                                      Terminal& terminal);
+
+/// catalogue -> counts: counts every survey, warns, and writes counts.h5.
 /// Errors: Interrupted while catalogues are read.
 CountsFile make_counts(const Job& job,
                        const InputRecord& inputs,

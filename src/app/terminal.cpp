@@ -3,6 +3,7 @@
 
 #include <unistd.h>
 
+#include <cerrno>
 #include <cstdio>
 
 namespace deviascope {
@@ -26,7 +27,15 @@ void Terminal::say(const std::string& text) {
     if (quiet_) return;
     wipe();
     std::fprintf(stdout, "%s\n", text.c_str());
-    std::fflush(stdout);
+    output_failure();
+}
+
+int Terminal::output_failure() {
+    static int first = 0;
+    errno = 0;
+    const bool lost = std::fflush(stdout) != 0 || std::ferror(stdout) != 0;
+    if (lost && first == 0) first = errno != 0 ? errno : EIO;
+    return first;
 }
 
 void Terminal::warn(const std::string& text) {

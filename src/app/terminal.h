@@ -28,6 +28,9 @@ class Terminal {
     /// Where library stages report progress.
     Progress progress();
 
+    /// Why standard output lost a text, as errno tells it; 0 where all has arrived so far.
+    static int output_failure();
+
   private:
     void show(const std::string& line);
     void wipe();

@@ -5,9 +5,11 @@
 
 #include <charconv>
 #include <limits>
+#include <utility>
 
 #include "catalogue/column_match.h"
 #include "catalogue/reading.h"
+#include "deviascope/core/error.h"
 
 namespace deviascope {
 
@@ -48,8 +50,22 @@ CsvReader::CsvReader(const std::filesystem::path& path, const std::vector<std::s
     }
     for (const std::string_view field : fields_)
         names_.push_back(text_of_field(trimmed(field)));
+    refuse_other_separators(columns.size());
     for (const std::string& column : columns)
         wanted_.push_back(match_column(path, column, names_));
+}
+
+/// A file whose only column holds another separator, where several columns are asked for.
+void CsvReader::refuse_other_separators(std::size_t n_wanted) const {
+    if (names_.size() > 1 || n_wanted < 2) return;
+    for (const auto& [separator, name] :
+         {std::pair(';', "semicolons"), std::pair('\t', "tabs")}) {
+        if (names_[0].find(separator) == std::string::npos) continue;
+        throw InputError({path_.string() + ": line 1",
+                          fmt::format("the names are separated by {}", name),
+                          "commas separate the fields",
+                          "write the file with commas and decimal points"});
+    }
 }
 
 bool CsvReader::next(TableChunk& chunk) {

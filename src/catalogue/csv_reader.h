@@ -18,6 +18,7 @@ class CsvReader : public TableReader {
     std::string unit_of(std::size_t) const override { return {}; }
 
   private:
+    void refuse_other_separators(std::size_t n_wanted) const;
     bool read_record();
     double number(std::size_t field) const;
     [[noreturn]] void refuse_ragged() const;

@@ -4,10 +4,10 @@
 #include <fmt/format.h>
 
 #include <algorithm>
-#include <cerrno>
 #include <cstring>
+#include <span>
 
-#include "catalogue/reading.h"
+#include "deviascope/core/error.h"
 
 namespace deviascope {
 
@@ -34,8 +34,7 @@ const char* without_carriage_return(const char* begin, const char* end) {
 }  // namespace
 
 CsvRecords::CsvRecords(const std::filesystem::path& path)
-    : path_(path), file_(path, std::ios::binary), buffer_(block_size) {
-    if (!file_) throw cannot_read(path, std::strerror(errno));
+    : path_(path), file_(path), buffer_(block_size) {
     begin_ = end_ = buffer_.data();
     read_more();
     if (view(begin_, end_).starts_with(byte_order_mark)) begin_ += byte_order_mark.size();
@@ -140,10 +139,10 @@ bool CsvRecords::read_more() {
     std::memmove(buffer_.data(), begin_, kept);
     if (buffer_.size() < kept + block_size + 1)
         buffer_.resize(std::max(2 * buffer_.size(), kept + block_size + 1));
-    file_.read(buffer_.data() + kept, static_cast<std::streamsize>(buffer_.size() - kept - 1));
-    if (file_.bad()) throw cannot_read(path_, std::strerror(errno));
-    auto size = kept + static_cast<std::size_t>(file_.gcount());
-    at_end_of_file_ = file_.eof();
+    const std::size_t wanted = buffer_.size() - kept - 1;
+    const std::size_t got = file_.read(std::span(buffer_).subspan(kept, wanted));
+    std::size_t size = kept + got;
+    at_end_of_file_ = got < wanted;
     if (at_end_of_file_ && size > 0 && buffer_[size - 1] != '\n') buffer_[size++] = '\n';
     begin_ = buffer_.data();
     end_ = begin_ + size;

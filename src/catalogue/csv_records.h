@@ -4,14 +4,16 @@
 
 #include <cstdint>
 #include <filesystem>
-#include <fstream>
 #include <string>
 #include <string_view>
 #include <vector>
 
+#include "core/gzip/byte_source.h"
+
 namespace deviascope {
 
-/// The records of a CSV file, one after the other, read in large blocks.
+/// The records of a CSV file, plain or gzip-compressed, one after the other, read in large
+/// blocks.
 /// Source: RFC 4180 (Shafranovich 2005). Beyond it: LF alone ends a line too, and a UTF-8
 /// byte-order mark at the start is skipped.
 class CsvRecords {
@@ -42,7 +44,7 @@ class CsvRecords {
     [[noreturn]] void refuse_quote(const char* p) const;
 
     std::filesystem::path path_;
-    std::ifstream file_;
+    ByteSource file_;
     std::vector<char> buffer_;
     const char* begin_ = nullptr;  // of what is not yet split
     const char* end_ = nullptr;    // of what was read

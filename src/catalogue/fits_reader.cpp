@@ -8,6 +8,7 @@
 
 #include "catalogue/column_match.h"
 #include "catalogue/reading.h"
+#include "deviascope/core/error.h"
 
 namespace deviascope {
 

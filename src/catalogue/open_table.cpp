@@ -2,15 +2,14 @@
 #include <fmt/format.h>
 
 #include <algorithm>
-#include <cerrno>
-#include <cstring>
-#include <fstream>
 #include <set>
 
 #include "catalogue/csv_reader.h"
 #include "catalogue/fits_reader.h"
-#include "catalogue/reading.h"
+#include "catalogue/hdf5_reader.h"
+#include "core/gzip/byte_source.h"
 #include "deviascope/catalogue/table.h"
+#include "deviascope/core/error.h"
 
 namespace deviascope {
 
@@ -18,16 +17,18 @@ namespace {
 
 enum class Content { fits, csv, gzip, hdf5, binary };
 
-/// The first bytes of a file. Errors: InputError.
-std::string first_bytes(const std::filesystem::path& path) {
-    if (std::filesystem::is_directory(path)) throw cannot_read(path, "it is a folder");
-    std::ifstream file(path, std::ios::binary);
-    if (!file) throw cannot_read(path, std::strerror(errno));
-    std::string bytes(4096, '\0');
-    file.read(bytes.data(), static_cast<std::streamsize>(bytes.size()));
-    if (file.bad()) throw cannot_read(path, std::strerror(errno));
-    bytes.resize(static_cast<std::size_t>(file.gcount()));
-    return bytes;
+/// The beginning of a file, uncompressed. Errors: InputError.
+struct Beginning {
+    bool compressed = false;
+    std::string bytes;
+};
+
+Beginning beginning_of(const std::filesystem::path& path) {
+    ByteSource source(path);
+    Beginning beginning{false, std::string(4096, '\0')};
+    beginning.bytes.resize(source.read(beginning.bytes));
+    beginning.compressed = source.is_compressed();
+    return beginning;
 }
 
 /// Signatures: FITS Standard 4.0 section 4.4.1; RFC 1952 section 2.3.1; HDF5 File Format
@@ -42,19 +43,17 @@ Content content_of(std::string_view bytes) {
     return bytes.find('\0') != std::string_view::npos ? Content::binary : Content::csv;
 }
 
-InputError not_yet_available(const std::filesystem::path& path,
-                             const char* what,
-                             const char* remedy) {
+InputError wrongly_compressed(const std::filesystem::path& path, const char* what) {
     return InputError({path.string(),
-                       fmt::format("this is {}; reading it is not yet available", what),
-                       "a FITS binary table or a CSV file",
-                       remedy});
+                       fmt::format("inside the gzip compression is {}", what),
+                       "FITS and CSV files may be compressed, once",
+                       "uncompress the file first"});
 }
 
 InputError no_tables_in_csv(const std::filesystem::path& path, const std::string& table) {
     return InputError({path.string(),
                        fmt::format("table `{}` was asked for in a CSV file", table),
-                       "a table is named in FITS files only",
+                       "a table is named in FITS and HDF5 files only",
                        "remove `table`"});
 }
 
@@ -65,18 +64,21 @@ std::unique_ptr<TableReader> open_table(const std::filesystem::path& path,
                                         const std::vector<std::string>& columns) {
     ensure(std::set(columns.begin(), columns.end()).size() == columns.size(),
            "a column is asked for once only");
-    switch (content_of(first_bytes(path))) {
+    const Beginning beginning = beginning_of(path);
+    switch (content_of(beginning.bytes)) {
         case Content::fits:
             return std::make_unique<FitsReader>(path, table, columns);
         case Content::gzip:
-            throw not_yet_available(path, "a gzip-compressed file", "uncompress it first");
+            throw wrongly_compressed(path, "another gzip file");
         case Content::hdf5:
-            throw not_yet_available(path, "an HDF5 file", "convert it to FITS or CSV");
+            if (beginning.compressed) throw wrongly_compressed(path, "an HDF5 file");
+            return std::make_unique<Hdf5Reader>(path, table, columns);
         case Content::binary:
-            throw InputError({path.string(),
-                              "the content is neither a FITS file nor plain text",
-                              "a FITS binary table or a CSV file in UTF-8 or ASCII",
-                              "convert the file"});
+            throw InputError(
+                {path.string(),
+                 "the content is neither a FITS or HDF5 file nor plain text",
+                 "a FITS binary table, an HDF5 file, or a CSV file in UTF-8 or ASCII",
+                 "convert the file"});
         case Content::csv:
             break;
     }

@@ -9,6 +9,7 @@
 #include <iterator>
 #include <optional>
 
+#include "counts/lopsided_counts.h"
 #include "counts/map_counter.h"
 #include "counts/row_counter.h"
 #include "deviascope/core/error.h"
@@ -89,6 +90,7 @@ void count_rows(const Selection& selection,
         if (n_rows == 0) cuts.report.warnings.push_back(path.string() + ": it has no rows");
     }
     counter.refuse_offending_rows();
+    std::ranges::move(counter.suspicions(), std::back_inserter(cuts.report.warnings));
 }
 
 /// An exclusion that removes nothing is mostly a disc smaller than the pixels.
@@ -137,6 +139,9 @@ SurveyCounts assembled(const Selection& selection,
                                tallies[bin].on(counts.footprints[footprint])});
     }
     counts.cuts = cuts.finished();
+    if (const auto warning =
+            warning_of_lopsided_counts(counts, selection.grid, selection.frame))
+        counts.cuts.warnings.push_back(*warning);
     return counts;
 }
 

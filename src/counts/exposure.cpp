@@ -4,6 +4,7 @@
 #include <fmt/format.h>
 
 #include <algorithm>
+#include <bit>
 #include <cmath>
 #include <utility>
 
@@ -54,31 +55,66 @@ ExposureMap::ExposureMap(const std::filesystem::path& path,
                          std::optional<Frame> map_frame,
                          Frame job_frame)
     : path_(path), cells_(1) {
-    HealpixMap map = read_healpix_map(path);
-    const Frame frame = frame_of_map(path, map, map_frame);
+    std::optional<MocFile> moc;
+    HealpixMap map;
+    if (is_moc(path)) {
+        moc = read_moc(path);
+        if (!moc->frame && !map_frame) moc->frame = Frame::icrs;
+    } else {
+        map = read_healpix_map(path);
+    }
+    const Frame frame = frame_of_map(path, moc ? moc->frame : map.frame, map_frame);
     in_job_frame_ = frame == job_frame;
     to_map_ = rotation(job_frame, frame);
+    moc ? take_region(*moc) : take_map(std::move(map));
+}
+
+void ExposureMap::take_region(const MocFile& file) {
+    constexpr int largest_order = 10;
+    region_ = file.region;
+    order_ = region_->order();
+    cells_ = Pixelisation(1 << std::min(order_, largest_order));
+}
+
+void ExposureMap::take_map(HealpixMap map) {
     cells_ = Pixelisation(map.nside);
-    value_ = checked(path, std::move(map.value));
+    order_ = std::countr_zero(static_cast<unsigned>(map.nside));
+    value_ = checked(path_, std::move(map.value));
+}
+
+bool ExposureMap::is_finer_than(const Pixelisation& grid) const {
+    return !in_job_frame_ || order_ > std::countr_zero(static_cast<unsigned>(grid.nside()));
+}
+
+Direction ExposureMap::in_map(const Direction& direction) const {
+    return in_job_frame_ ? direction : Direction(to_map_ * direction);
 }
 
 double ExposureMap::at(const Direction& direction) const {
-    const Direction in_map = in_job_frame_ ? direction : Direction(to_map_ * direction);
-    return value_[static_cast<std::size_t>(cells_.pixel_at(in_map))];
+    if (region_) return region_->contains(in_map(direction)) ? 1.0 : 0.0;
+    return value_[static_cast<std::size_t>(cells_.pixel_at(in_map(direction)))];
 }
 
 void ExposureMap::mark_zero(std::span<const Direction> directions, std::span<char> zero) const {
-    std::vector<Direction> in_map(directions.begin(), directions.end());
+    if (region_) {
+        for (std::size_t i = 0; i < directions.size(); ++i)
+            if (!region_->contains(in_map(directions[i]))) zero[i] = 1;
+        return;
+    }
+    std::vector<Direction> rotated(directions.begin(), directions.end());
     if (!in_job_frame_)
-        for (Direction& direction : in_map) direction = to_map_ * direction;
-    std::vector<std::int64_t> cell(in_map.size());
-    cells_.pixels_at(in_map, cell);
+        for (Direction& direction : rotated) direction = to_map_ * direction;
+    std::vector<std::int64_t> cell(rotated.size());
+    cells_.pixels_at(rotated, cell);
     for (std::size_t i = 0; i < cell.size(); ++i)
         if (value_[static_cast<std::size_t>(cell[i])] == 0.0) zero[i] = 1;
 }
 
 double ExposureMap::in_cell(std::int64_t cell, const Pixelisation& cells) const {
     if (!in_job_frame_) return at(cells.centre(cell));
+    if (region_)
+        return region_->share_of(cells.nested_of_ring(cell),
+                                 std::countr_zero(static_cast<unsigned>(cells.nside())));
     const std::int64_t own = cells.nside() == nside() ? cell : cells.parent(cell, cells_);
     return value_[static_cast<std::size_t>(own)];
 }
@@ -98,9 +134,8 @@ std::vector<double> exposure_on_grid(const ExposureProduct& maps, const Pixelisa
 }
 
 bool has_structure_inside_pixels(const ExposureProduct& maps, const Pixelisation& grid) {
-    return std::ranges::any_of(maps, [&](const ExposureMap* map) {
-        return !map->is_in_job_frame() || map->nside() > grid.nside();
-    });
+    return std::ranges::any_of(
+        maps, [&](const ExposureMap* map) { return map->is_finer_than(grid); });
 }
 
 void find_unexposed(const ExposureProduct& maps,

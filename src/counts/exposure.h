@@ -9,37 +9,49 @@
 #include <vector>
 
 #include "deviascope/sky/healpix_map.h"
+#include "deviascope/sky/moc.h"
 #include "deviascope/sky/pixelisation.h"
 
 namespace deviascope {
 
-/// One exposure map, asked in the job's frame. What is absent in the file is exposure 0.
+/// One exposure map, asked in the job's frame: a HEALPix map, in which what is absent is
+/// exposure 0, or a MOC, whose inside is 1 and outside 0.
 class ExposureMap {
   public:
     /// Errors: InputError: a map that cannot be read, that says nothing or two things about its
-    /// frame, or with a value outside 0 … 1.
+    /// frame (a MOC that says nothing is in ICRS), or with a value outside 0 … 1.
     ExposureMap(const std::filesystem::path& path,
                 std::optional<Frame> map_frame,
                 Frame job_frame);
 
     const std::filesystem::path& path() const { return path_; }
+    /// Of its pixels; of a MOC at most 1024, finer pixels of it count by their share.
     int nside() const { return cells_.nside(); }
     bool is_in_job_frame() const { return in_job_frame_; }
+    /// Whether it may change inside a pixel of this grid.
+    bool is_finer_than(const Pixelisation& grid) const;
 
     /// Exposure 0 … 1 of the map's pixel that holds a direction of the job's frame.
     double at(const Direction& direction) const;
     /// Sets `zero` to 1 where the exposure at a direction is 0; leaves the rest.
     void mark_zero(std::span<const Direction> directions, std::span<char> zero) const;
     /// Exposure of pixel `cell` of a grid that is as fine as the map or finer, in the job's
-    /// frame: the value of the map's pixel that holds it, or its centre where frames differ.
+    /// frame: the value of the map's pixel that holds it, or its centre where frames differ; of
+    /// a MOC in the job's frame the share of the cell that it covers.
     double in_cell(std::int64_t cell, const Pixelisation& cells) const;
 
   private:
+    void take_region(const MocFile& file);
+    void take_map(HealpixMap map);
+    Direction in_map(const Direction& direction) const;
+
     std::filesystem::path path_;
     bool in_job_frame_ = true;
     Eigen::Matrix3d to_map_;
     Pixelisation cells_;
-    std::vector<double> value_;  // 12 nside^2, RING
+    std::vector<double> value_;  // 12 nside^2, RING; empty for a MOC
+    std::optional<Moc> region_;
+    int order_ = 0;  // of the MOC, or of the map's pixels
 };
 
 /// Maps whose product is the exposure of a bin, or of a survey. Not owned.

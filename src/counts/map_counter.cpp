@@ -16,8 +16,13 @@ namespace {
 constexpr std::size_t none = static_cast<std::size_t>(-1);
 
 HealpixMap read_count_map(const Selection& selection, const std::filesystem::path& path) {
+    if (is_moc(path))
+        throw InputError({path.string(),
+                          "this is a MOC",
+                          "a HEALPix map of numbers of sources",
+                          "a MOC may be given as exposure"});
     HealpixMap map = read_healpix_map(path);
-    const Frame frame = frame_of_map(path, map, selection.input.map_frame);
+    const Frame frame = frame_of_map(path, map.frame, selection.input.map_frame);
     if (frame != selection.frame) {
         throw InputError({path.string(),
                           fmt::format("the count map is in the {} frame", name_of(frame)),

@@ -5,14 +5,14 @@
 #include <filesystem>
 #include <optional>
 
-#include "deviascope/sky/healpix_map.h"
+#include "deviascope/sky/frame.h"
 
 namespace deviascope {
 
-/// The frame of a map that was read from `path`: its COORDSYS, else `map_frame` of the job.
-/// Errors: InputError: neither is given, or both and unlike.
+/// The frame of a map that was read from `path`: what its COORDSYS says, else `map_frame` of
+/// the job. Errors: InputError: neither is given, or both and unlike.
 Frame frame_of_map(const std::filesystem::path& path,
-                   const HealpixMap& map,
+                   std::optional<Frame> in_file,
                    std::optional<Frame> map_frame);
 
 }  // namespace deviascope

@@ -3,7 +3,10 @@
 
 #include <fmt/format.h>
 
+#include <algorithm>
+
 #include "deviascope/core/error.h"
+#include "sky/many_directions.h"
 
 namespace deviascope {
 
@@ -33,6 +36,7 @@ void RowCounter::add(const TableChunk& chunk,
     path_ = &path;
     reader_ = &reader;
     locate(chunk);
+    find_bins(chunk);
     const auto n_rows = static_cast<std::size_t>(chunk.n_rows());
     for (std::size_t row = 0; row < n_rows; ++row) {
         const std::size_t cut = cut_of(chunk, row);
@@ -52,14 +56,36 @@ void RowCounter::locate(const TableChunk& chunk) {
     direction_.resize(lon.size());
     pixel_.resize(lon.size());
     is_bad_.resize(lon.size());
+    directions_of(lon, lat, to_job_, direction_);
     for (std::size_t row = 0; row < lon.size(); ++row) {
         is_bad_[row] = !is_position(lon[row], lat[row]);
-        direction_[row] = Direction::UnitX();
-        if (!is_bad_[row]) direction_[row] = to_job_ * direction_of(lon[row], lat[row]);
+        if (!is_bad_[row]) positions_.add(lon[row], lat[row]);
     }
     selection_.grid.pixels_at(direction_, pixel_);
     is_hole_.resize(lon.size());
     selection_.sky.find_holes(direction_, is_hole_);
+}
+
+/// Which bins the rows of the chunk fall in, column after column.
+void RowCounter::find_bins(const TableChunk& chunk) {
+    const auto n_rows = static_cast<std::size_t>(chunk.n_rows());
+    n_bins_.assign(n_rows, 0);
+    bin_.assign(n_rows, 0);
+    std::vector<std::int32_t> inside(n_rows);
+    for (const std::size_t bin : selection_.rows.selecting_bins) {
+        std::ranges::fill(inside, 1);
+        for (const ColumnRange& range : selection_.rows.bins[bin]) {
+            const double* value = chunk.column[range.column].data();
+            for (std::size_t row = 0; row < n_rows; ++row)
+                inside[row] &= std::int32_t{value[row] >= range.low} &
+                               std::int32_t{value[row] < range.high};
+        }
+        const auto number = static_cast<std::int32_t>(bin);
+        for (std::size_t row = 0; row < n_rows; ++row) {
+            n_bins_[row] += inside[row];
+            bin_[row] = inside[row] != 0 ? number : bin_[row];
+        }
+    }
 }
 
 /// The line of the table of cuts that removes a row; none: the row is counted.
@@ -86,15 +112,9 @@ std::size_t RowCounter::cut_of(const TableChunk& chunk, std::size_t row) {
 
 /// Counts a row of a kept pixel in its bin; else says what removes it.
 std::size_t RowCounter::cut_by_bins(const TableChunk& chunk, std::size_t row) {
-    std::size_t n_bins = 0;
-    std::size_t bin = none;
-    for (const std::size_t candidate : selection_.rows.selecting_bins) {
-        const bool inside = holds(selection_.rows.bins[candidate], chunk, row);
-        n_bins += inside ? 1 : 0;
-        bin = inside ? candidate : bin;
-    }
-    if (n_bins == 0) return cut_of_homeless(chunk, row);
-    if (n_bins > 1) bin = exposed_bin(chunk, row);
+    if (n_bins_[row] == 0) return cut_of_homeless(chunk, row);
+    const std::size_t bin =
+        n_bins_[row] == 1 ? static_cast<std::size_t>(bin_[row]) : exposed_bin(chunk, row);
     if (!selection_.sky.exposes(bin, pixel_[row], direction_[row]))
         return cuts_.bin_exposure[bin];
     tallies_[bin].add(pixel_[row]);

@@ -9,6 +9,7 @@
 #include "counts/bin_tally.h"
 #include "counts/cut_table.h"
 #include "counts/offending_rows.h"
+#include "counts/position_watch.h"
 
 namespace deviascope {
 
@@ -32,12 +33,16 @@ class RowCounter {
              const std::filesystem::path& path,
              const TableReader& reader);
 
+    /// What is suspicious about the positions, in plain sentences.
+    std::vector<std::string> suspicions() const { return positions_.suspicions(); }
+
     /// Errors: InputError: rows with bad positions (unless they are to be skipped), or in two
     /// bins; count and first five.
     void refuse_offending_rows() const;
 
   private:
     void locate(const TableChunk& chunk);
+    void find_bins(const TableChunk& chunk);
     std::size_t cut_of(const TableChunk& chunk, std::size_t row);
     std::size_t cut_by_bins(const TableChunk& chunk, std::size_t row);
     std::size_t cut_of_homeless(const TableChunk& chunk, std::size_t row) const;
@@ -48,6 +53,7 @@ class RowCounter {
     const Eigen::Matrix3d to_job_;
     CutTable& cuts_;
     std::vector<BinTally>& tallies_;
+    PositionWatch positions_;
     OffendingRows bad_positions_;
     OffendingRows in_two_bins_;
 
@@ -56,6 +62,8 @@ class RowCounter {
     std::vector<std::int64_t> pixel_;
     std::vector<char> is_bad_;
     std::vector<char> is_hole_;
+    std::vector<std::int32_t> n_bins_;  // whose ranges hold the row
+    std::vector<std::int32_t> bin_;     // the last of these
     std::int64_t first_row_ = 0;
     const std::filesystem::path* path_ = nullptr;
     const TableReader* reader_ = nullptr;

@@ -100,7 +100,10 @@ class WeightBuilder {
         for (std::size_t b = 0; b < bins_.size(); ++b) read_bin(b);
         warn_of_shared_alpha();
         warn_of_idle_rows();
-        if (complete_) reading_.prior = joint_prior();
+        if (complete_) {
+            reading_.prior = joint_prior();
+            warn_of_amplitudes();
+        }
         return std::move(reading_);
     }
 
@@ -166,6 +169,20 @@ class WeightBuilder {
                 fmt::join(names, ", "),
                 alpha.first,
                 alpha.second));
+        }
+    }
+
+    /// Amplitudes of dipoles are far below 0.1; kinematic weights seldom are.
+    void warn_of_amplitudes() {
+        for (std::size_t b = 0; b < bins_.size(); ++b) {
+            const double mean = reading_.prior->mean(static_cast<Eigen::Index>(b));
+            if (mean == 0.0 || std::abs(mean) >= 0.1) continue;
+            reading_.warnings.push_back(fmt::format(
+                "survey {}: bin {}: the weight {} looks like the amplitude of a dipole; the "
+                "kinematic weight of a flux-limited sample is 2 + x (1 + alpha), about 4",
+                survey_name_,
+                names_[b],
+                mean));
         }
     }
 

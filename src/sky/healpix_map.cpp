@@ -4,7 +4,6 @@
 #include <fmt/format.h>
 
 #include <algorithm>
-#include <array>
 #include <cmath>
 #include <limits>
 #include <utility>
@@ -12,6 +11,7 @@
 #include "core/fits/fits_file.h"
 #include "deviascope/core/error.h"
 #include "deviascope/sky/pixelisation.h"
+#include "sky/map_card.h"
 
 namespace deviascope {
 
@@ -28,47 +28,6 @@ std::string upper(std::string text) {
     for (char& c : text)
         if (c >= 'a' && c <= 'z') c = char(c - 'a' + 'A');
     return text;
-}
-
-/// A text card without blanks and in capitals; empty where there is none.
-std::string word_card(const fits::Table& table, const std::string& keyword) {
-    std::string word = upper(table.text_card(keyword).value_or(""));
-    std::erase(word, ' ');
-    return word;
-}
-
-InputError card_error(const Path& path,
-                      const std::string& keyword,
-                      const std::string& value,
-                      const std::string& allowed,
-                      const std::string& remedy = "correct the header of the map") {
-    return InputError({path.string() + ": " + keyword,
-                       value.empty() ? "the card is missing" : "its value is " + value,
-                       allowed,
-                       remedy});
-}
-
-/// Spellings met in published maps; C and Q are both in use for celestial coordinates.
-std::optional<Frame> frame_of_card(const Path& path, const std::string& word) {
-    static constexpr std::array<std::pair<std::string_view, Frame>, 10> spellings{
-        {{"G", Frame::galactic},
-         {"GALACTIC", Frame::galactic},
-         {"C", Frame::icrs},
-         {"Q", Frame::icrs},
-         {"CELESTIAL", Frame::icrs},
-         {"EQUATORIAL", Frame::icrs},
-         {"ICRS", Frame::icrs},
-         {"CELESTIAL2000", Frame::icrs},
-         {"E", Frame::ecliptic},
-         {"ECLIPTIC", Frame::ecliptic}}};
-    if (word.empty()) return {};
-    for (const auto& [spelling, frame] : spellings)
-        if (word == spelling) return frame;
-    throw card_error(path,
-                     "COORDSYS",
-                     word,
-                     "G (galactic), C (celestial, ICRS) or E (ecliptic)",
-                     "correct the header, or rotate the map into one of these frames");
 }
 
 /// What the header says about a map.
@@ -111,7 +70,7 @@ Layout read_layout(const fits::Table& table, const Path& path) {
     layout.nside = int(*nside);
     layout.nested = ordering != "RING";
     layout.is_explicit = read_is_explicit(table, path);
-    layout.frame = frame_of_card(path, word_card(table, "COORDSYS"));
+    layout.frame = frame_card(table, path);
     return layout;
 }
 

@@ -38,17 +38,21 @@ class TableReader {
 
 /// Opens a catalogue for reading the named columns. The kind of file is told from its content.
 ///
-/// FITS binary tables (the file begins with `SIMPLE  =`): any numeric column type, scaling and
-/// null values obeyed. CSV (RFC 4180): a header line with names; quoted fields, doubled quotes
-/// and line breaks inside quotes; lines end in LF or CRLF; a byte-order mark is skipped. A
-/// field that is blank or `nan` is missing; blanks around a number and a leading plus sign are
-/// allowed; a number that cannot be read is an error, as are a record with more or fewer fields
-/// than the header and a double quote inside an unquoted field. Empty lines are allowed at the
-/// end only. Names are matched exactly, else, if that is unambiguous, ignoring case.
-/// @param table    HDU name or number (FITS); an error for CSV
+/// FITS binary tables (the file begins with `SIMPLE  =`; gzip-compressed too): any numeric
+/// column type, scaling and null values obeyed. HDF5: one dataset a column, all of a group and
+/// as long as each other, of any integer or real type; missing is NaN. CSV (RFC 4180; gzip-
+/// compressed too): a header line with names; quoted fields, doubled quotes and line breaks
+/// inside quotes; lines end in LF or CRLF; a byte-order mark is skipped. A field that is blank
+/// or `nan` is missing; blanks around a number and a leading plus sign are allowed; a number
+/// that cannot be read is an error, as are a record with more or fewer fields than the header
+/// and a double quote inside an unquoted field. Empty lines are allowed at the end only. Names
+/// are matched exactly, else, if that is unambiguous, ignoring case.
+/// @param table    HDU name or number (FITS; default: the first binary table), group (HDF5;
+///                 default: the root group, or the only group of it where it holds no dataset);
+///                 an error for CSV
 /// @param columns  names in the order wanted; a name may be asked for once only
 /// Errors: InputError (cannot open, no such table or column with the nearest name, vector or
-/// text column, truncated file; gzip and HDF5, which are not yet available).
+/// text column, columns of unlike length, truncated or damaged file).
 std::unique_ptr<TableReader> open_table(const std::filesystem::path& path,
                                         const std::optional<std::string>& table,
                                         const std::vector<std::string>& columns);

@@ -146,6 +146,10 @@ void Closer::operator()(void* file) const noexcept {
     fits_clear_errmsg();
 }
 
+std::string library_version() {
+    return fmt::format("CFITSIO {}.{}.{}", CFITSIO_MAJOR, CFITSIO_MINOR, CFITSIO_MICRO);
+}
+
 // ---- reading ----
 
 std::vector<int> binary_tables(const std::filesystem::path& path) {
@@ -269,9 +273,7 @@ void Table::read(const Column& column, std::int64_t first, std::span<double> val
                           "name another column"});
     }
     if (values.empty()) return;
-    ensure(column.repeat > 0 && first >= 0 &&
-               first + std::int64_t(values.size()) / column.repeat <= n_rows_,
-           "rows asked of a FITS table lie inside it");
+    check_rows(column, first, values.size());
     int status = 0;
     int any_null = 0;  // the library writes to it whenever it meets a null
     const int type = type_.at(std::size_t(column.number - 1));
@@ -310,6 +312,42 @@ void Table::read(const Column& column, std::int64_t first, std::span<double> val
                       &status);
     }
     check_read(status, path_, place);
+}
+
+void Table::check_rows(const Column& column, std::int64_t first, std::size_t n_values) const {
+    ensure(column.repeat > 0 && first >= 0 &&
+               first + std::int64_t(n_values) / column.repeat <= n_rows_,
+           "rows asked of a FITS table lie inside it");
+}
+
+void Table::read(const Column& column,
+                 std::int64_t first,
+                 std::span<std::int64_t> values) const {
+    const std::string place = fmt::format("{}: column {}", path_.string(), column.name);
+    if (!column.is_numeric || !is_integer_type(type_.at(std::size_t(column.number - 1))))
+        throw InputError({place,
+                          fmt::format("its form is {}", column.form),
+                          "an integer column of fixed length",
+                          "check that this is the right file"});
+    if (values.empty()) return;
+    check_rows(column, first, values.size());
+    int status = 0;
+    int any_null = 0;
+    LONGLONG null_value = std::numeric_limits<LONGLONG>::min();  // where the column knows nulls
+    fits_read_col(raw(file_),
+                  TLONGLONG,
+                  column.number,
+                  first + 1,
+                  1,
+                  LONGLONG(values.size()),
+                  &null_value,
+                  values.data(),
+                  &any_null,
+                  &status);
+    check_read(status, path_, fmt::format(": column {}", column.name));
+    if (any_null == 0) return;
+    throw InputError(
+        {place, "a value is missing", "an integer in each row", "correct the file"});
 }
 
 /// The value as written in the header; empty where there is no card or no value.

@@ -30,6 +30,9 @@ struct Column {
     std::string form;         ///< TFORM, for messages
 };
 
+/// `CFITSIO` and its version.
+std::string library_version();
+
 /// Numbers of the binary tables of a file (0 = primary HDU), ascending; maybe none.
 /// Errors: InputError.
 std::vector<int> binary_tables(const std::filesystem::path& path);
@@ -56,6 +59,9 @@ class Table {
     /// counted from 0.
     void read(const Column& column, std::int64_t first, std::span<double> values) const;
 
+    /// The same of an integer column, exactly. Errors: InputError: another type, a null value.
+    void read(const Column& column, std::int64_t first, std::span<std::int64_t> values) const;
+
     /// Header cards of the table; empty where absent or without a value. An integer card may be
     /// written as a whole real number. Errors: InputError if of another type.
     std::optional<std::string> text_card(const std::string& keyword) const;
@@ -67,6 +73,7 @@ class Table {
     void go_to_first_table();
     void list_columns();
     void refuse_if_cut_short() const;
+    void check_rows(const Column& column, std::int64_t first, std::size_t n_values) const;
     std::optional<std::string> raw_card(const std::string& keyword) const;
 
     std::filesystem::path path_;

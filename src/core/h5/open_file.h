@@ -3,6 +3,8 @@
 #pragma once
 
 #include <cstdint>
+#include <map>
+#include <string>
 
 #include "core/h5/reader.h"
 #include "core/h5/session.h"
@@ -12,6 +14,12 @@ namespace deviascope::h5 {
 struct Reader::Parts {
     H5::H5File file;
     std::uint64_t n_bytes = 0;  ///< of the whole file
+    /// Columns that are being read, with their lengths.
+    struct Column {
+        H5::DataSet set;
+        std::size_t length = 0;
+    };
+    std::map<std::string, Column> columns;
 };
 
 }  // namespace deviascope::h5

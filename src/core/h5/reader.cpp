@@ -100,6 +100,7 @@ Reader::Reader(const std::filesystem::path& path)
 
 Reader::~Reader() {
     try {
+        parts_->columns.clear();
         parts_->file.close();
     } catch (const H5::Exception&) {
         // Nothing was written, so nothing can be lost.
@@ -204,6 +205,11 @@ void Reader::check(const std::string& dataset, const Shape& expected, Kind kind)
                     "extents " + text_of(found.shape),
                     text_of(expected) + " by the rest of the file",
                     "the file is damaged; make it again");
+    check_storage(dataset, found);
+}
+
+/// Refuses a size that the stored bytes cannot hold.
+void Reader::check_storage(const std::string& dataset, const Found& found) const {
     const std::uint64_t stored = std::min(found.stored_bytes, parts_->n_bytes);
     const std::size_t claimed = n_elements(found.shape);
     if (claimed > stored * highest_compression / found.element_bytes)
@@ -273,30 +279,6 @@ std::vector<std::string> Reader::texts(const std::string& dataset,
     for (std::size_t text = 0; text < n_texts; ++text)
         texts.push_back(unpadded(padded.data() + text * n_bytes, n_bytes));
     return texts;
-}
-
-void Reader::read(const std::string& dataset,
-                  std::size_t first,
-                  std::span<double> values) const {
-    const Found found = find(dataset);
-    if (found.kind == Kind::text || found.kind == Kind::other)
-        throw error(dataset, "holds " + name_of(found.kind), "numbers are needed");
-    if (found.shape.size() != 1 || first > found.shape[0] ||
-        values.size() > found.shape[0] - first)
-        throw error(dataset,
-                    "extents " + text_of(found.shape),
-                    fmt::format("one axis of at least {} is needed", first + values.size()));
-    if (values.empty()) return;
-    translated(
-        [&] {
-            const H5::DataSet set = parts_->file.openDataSet(dataset);
-            H5::DataSpace in_file = set.getSpace();
-            const hsize_t start = first, count = values.size();
-            in_file.selectHyperslab(H5S_SELECT_SET, &count, &start);
-            const H5::DataSpace in_memory(1, &count);
-            set.read(values.data(), H5::PredType::NATIVE_DOUBLE, in_memory, in_file);
-        },
-        [&](const std::string& reason) { return failure(dataset, reason); });
 }
 
 }  // namespace deviascope::h5

@@ -31,6 +31,9 @@ class Reader {
 
     /// Whether a group or dataset of that path is there.
     bool has(const std::string& object) const;
+    /// Whether it is there and is one.
+    bool is_group(const std::string& object) const;
+    bool is_dataset(const std::string& object) const;
     /// Names of the members of a group, in the order of their bytes.
     std::vector<std::string> names(const std::string& group) const;
     Found find(const std::string& dataset) const;
@@ -52,8 +55,12 @@ class Reader {
     std::vector<std::int64_t> last_integers(const std::string& dataset,
                                             const Shape& expected) const;
 
-    /// Entries [first, first + values.size()) of a one-dimensional dataset of any integer or
-    /// real type, as doubles.
+    /// Length of a one-dimensional dataset of any integer or real type, that holds what it
+    /// says.
+    std::size_t column_length(const std::string& dataset) const;
+    /// Entries [first, first + values.size()) of such a dataset, as doubles. It stays open from
+    /// the first call on, so that reading on from where the last call ended costs no search and
+    /// unpacks nothing twice.
     void read(const std::string& dataset, std::size_t first, std::span<double> values) const;
 
     /// Attributes of a group or dataset; empty where absent. A text may be of fixed or variable
@@ -62,6 +69,9 @@ class Reader {
     std::optional<std::int64_t> integer(const std::string& object,
                                         const std::string& name) const;
     std::optional<double> real(const std::string& object, const std::string& name) const;
+    /// A text attribute of a file of somebody else's: empty also where it is no text.
+    std::optional<std::string> text_if_any(const std::string& object,
+                                           const std::string& name) const;
     /// Attributes that must be there.
     std::string required_text(const std::string& object, const std::string& name) const;
     std::int64_t required_integer(const std::string& object, const std::string& name) const;
@@ -81,6 +91,8 @@ class Reader {
                                Kind kind,
                                bool last_only) const;
     void check(const std::string& dataset, const Shape& expected, Kind kind) const;
+    void check_storage(const std::string& dataset, const Found& found) const;
+    bool is_of_kind(const std::string& object, int kind) const;
     template <class Value>
     std::optional<Value> attribute(const std::string& object, const std::string& name) const;
     template <class Value>

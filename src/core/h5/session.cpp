@@ -16,9 +16,11 @@ std::string& words() {
     return kept;
 }
 
-/// Of `…errno = 28, error message = 'No space left on device'…` the system's words, else all.
+/// Of `truncated file: eof = 600, …` the meaning; of `…errno = 28, error message = 'No space
+/// left on device'…` the system's words, else all.
 std::string plain(const std::string& description) {
     static const std::regex system_words("error message = '([^']*)'");
+    if (description.starts_with("truncated file")) return "the file is too short";
     std::smatch match;
     if (std::regex_search(description, match, system_words)) return match[1];
     return description;

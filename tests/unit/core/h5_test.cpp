@@ -170,7 +170,7 @@ TEST_CASE("numbers of any type of a foreign HDF5 file are read as doubles, in pa
     CHECK_THROWS_AS(reader.read("/group/integers", 2, part), InputError);
     CHECK_THROWS_AS(reader.read("/group/integers", 4, std::span<double>{}), InputError);
     CHECK_THROWS_WITH(reader.read("/group/texts", 0, part),
-                      Catch::Contains("numbers are needed"));
+                      Catch::Contains("a dataset of integers or reals"));
 }
 
 TEST_CASE("a dataset of another rank, type or extent is refused with its path", "[core]") {

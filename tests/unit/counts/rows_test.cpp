@@ -264,8 +264,9 @@ TEST_CASE("reading says how far it is, with the total where it is known", "[coun
     survey.input.catalogue = {path, path};
     const SurveyCounts counts = count_survey(survey.input, Pixelisation(1), Frame::icrs, note);
     CHECK(lines.back() == "dunlin: 2 468 of 2 468 rows read");
-    REQUIRE(counts.cuts.warnings.size() == 2);
+    REQUIRE(counts.cuts.warnings.size() == 5);  // the unit of two files; all at one place
     CHECK_THAT(counts.cuts.warnings[0], Catch::Contains("column RA states the unit `h`"));
+    CHECK_THAT(counts.cuts.warnings[1], Catch::Contains("column RA states the unit `h`"));
 }
 
 TEST_CASE("a fault of the last file shows before the first is read", "[counts]") {
