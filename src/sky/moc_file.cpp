@@ -56,7 +56,8 @@ std::vector<std::int64_t> numbers_of(const fits::Table& table, const Path& path)
 
 /// MOC 2.0: uniq = 4 x 4^order + index, so that the order is half the place of the highest bit.
 Range range_of_uniq(std::int64_t uniq, std::size_t at, const Path& path) {
-    const int order = uniq < 4 ? -1 : (std::bit_width(std::uint64_t(uniq)) - 1) / 2 - 1;
+    const int order =
+        uniq < 4 ? -1 : (static_cast<int>(std::bit_width(std::uint64_t(uniq))) - 1) / 2 - 1;
     const std::int64_t index = order < 0 ? 0 : uniq - (std::int64_t{4} << 2 * order);
     if (order < 0 || order > Moc::deepest_order || index >= std::int64_t{12} << 2 * order)
         throw value_error(path,
