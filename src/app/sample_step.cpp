@@ -133,7 +133,7 @@ Outcome sample_into_chain(const SampleStep& step, StoredChain stored, Terminal& 
                                  step.lock.chain().string()));
         return stored.chain.outcome;
     }
-    const Posterior posterior(step.counts, step.job.model);
+    const Posterior posterior(step.counts, step.job.model, step.job.seed);
     const EnsembleOptions options = options_of(step, terminal);
     if (interrupt_requested()) throw Interrupted();
     const auto begin = std::chrono::steady_clock::now();

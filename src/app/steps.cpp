@@ -14,6 +14,7 @@
 #include "deviascope/core/grouped_number.h"
 #include "deviascope/core/version.h"
 #include "deviascope/counts/count_sources.h"
+#include "deviascope/counts/moments.h"
 #include "deviascope/model/forecast.h"
 
 namespace deviascope {
@@ -159,8 +160,9 @@ CountsFile make_counts(const Job& job,
                        const InputRecord& inputs,
                        const fs::path& folder,
                        Terminal& terminal) {
-    const CountsFile file{count_surveys(job, terminal), inputs.counts_digest, version()};
+    CountsFile file{count_surveys(job, terminal), inputs.counts_digest, version()};
     warn_of_counts_and_priors(file.counts, ParameterSpace(file.counts, job.model), terminal);
+    add_moments(file.counts);
     write_counts(folder / "counts.h5", file);
     return file;
 }

@@ -5,6 +5,8 @@
 
 #include <algorithm>
 
+#include "counts/moments_group.h"
+
 namespace deviascope {
 
 namespace {
@@ -103,6 +105,7 @@ void write_survey(h5::Writer& writer, const std::string& path, const SurveyCount
                  "`order` its place in the job");
     for (std::size_t bin = 0; bin < survey.bins.size(); ++bin)
         write_bin(writer, path, survey, bin);
+    write_moments(writer, path, survey);
     write_cuts(writer, path + "/cuts", survey.cuts);
 }
 
@@ -219,6 +222,7 @@ SurveyCounts read_survey(const h5::Reader& reader,
             read_footprint(reader, footprint_path(path, footprint), grid));
     for (const std::string& bin : in_order(reader, path + "/bins"))
         survey.bins.push_back(read_bin(reader, path, bin, survey.footprints));
+    read_moments(reader, path, survey);
     survey.cuts = read_cuts(reader, path + "/cuts");
     return survey;
 }

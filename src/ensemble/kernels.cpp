@@ -1,6 +1,8 @@
 // SPDX-License-Identifier: GPL-2.0-or-later
 #include "ensemble/kernels.h"
 
+#include <fmt/format.h>
+
 #include <cmath>
 
 #include "deviascope/core/error.h"
@@ -47,13 +49,23 @@ Proposal differential_evolution(const double* x,
 
 }  // namespace
 
-KernelMix::KernelMix(const KernelFractions& fractions) {
+KernelMix::KernelMix(const KernelFractions& fractions, bool has_independence) {
+    KernelFractions used = fractions;
+    if (!has_independence && used.independence > 0.0) {
+        const double others = used.stretch + used.differential_evolution;
+        if (others <= 0.0)
+            throw UsageError({"kernels.independence",
+                              fmt::format("{}", used.independence),
+                              "this target offers no approximation to draw from",
+                              "give stretch or differential-evolution a fraction"});
+        used = {used.stretch / others, used.differential_evolution / others, 0.0};
+    }
     double sum = 0.0;
     for (std::size_t index = 0; index < n_kernels; ++index) {
         const auto kernel = static_cast<Kernel>(index);
-        sum += fractions.of(kernel);
+        sum += used.of(kernel);
         up_to_[index] = sum;
-        if (fractions.of(kernel) > 0.0) last_ = kernel;
+        if (used.of(kernel) > 0.0) last_ = kernel;
     }
 }
 
@@ -71,6 +83,7 @@ double stretch_factor(double u) {
 Proposal propose(const KernelMix& mix,
                  const double* position,
                  const Partners& partners,
+                 const IndependenceProposal* independence,
                  Stream& stream,
                  double* proposal) {
     switch (mix.at(uniform(stream))) {
@@ -79,9 +92,11 @@ Proposal propose(const KernelMix& mix,
         case Kernel::differential_evolution:
             return differential_evolution(position, partners, stream, proposal);
         case Kernel::independence:
-            break;  // Its fraction is kept at 0 by EnsembleOptions::problems.
+            independence->draw(stream, proposal);
+            return {Kernel::independence,
+                    independence->log_density(position) - independence->log_density(proposal)};
     }
-    ensure(false, "only kernels that are available are drawn");
+    ensure(false, "a kernel proposes");
     return {};
 }
 

@@ -7,6 +7,7 @@
 
 #include "deviascope/core/random.h"
 #include "deviascope/ensemble/options.h"
+#include "ensemble/independence.h"
 
 namespace deviascope {
 
@@ -28,7 +29,9 @@ struct Proposal {
 /// Draws kernels with their fractions.
 class KernelMix {
   public:
-    explicit KernelMix(const KernelFractions& fractions);
+    /// Without an independence proposal its share goes to the other kernels, in proportion.
+    /// Errors: UsageError where there are no others.
+    KernelMix(const KernelFractions& fractions, bool has_independence);
     /// The kernel of a uniform number in [0, 1); never one whose fraction is 0.
     Kernel at(double u) const;
 
@@ -49,10 +52,14 @@ double stretch_factor(double u);
 ///   differential-evolution  y = x + g (x_j - x_k), j != k,    log factor 0
 ///     g = base (1 + 0.01 s), s standard normal, base = 2.38 / sqrt(2n), in one of ten moves 1;
 ///     multiplicative because coordinates span many decades
-/// Sources: Goodman & Weare 2010; ter Braak 2006, Stat. Comput. 16, 239.
+///   independence            y ~ q,                            log factor ln q(x) - ln q(y)
+/// Sources: Goodman & Weare 2010; ter Braak 2006, Stat. Comput. 16, 239; Tierney 1994, Ann.
+/// Stat. 22, 1701.
+/// @param independence  q; null where `mix` never draws that kernel
 Proposal propose(const KernelMix& mix,
                  const double* position,
                  const Partners& partners,
+                 const IndependenceProposal* independence,
                  Stream& stream,
                  double* proposal);
 

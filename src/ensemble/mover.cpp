@@ -36,14 +36,18 @@ std::size_t walker_index(const EnsembleShape& shape,
     return static_cast<std::size_t>(replicate * shape.n_walkers + walker);
 }
 
-Mover::Mover(const Target& target, const EnsembleOptions& options, const EnsembleShape& shape)
+Mover::Mover(const Target& target,
+             const EnsembleOptions& options,
+             const EnsembleShape& shape,
+             const CoordinateGaussian* approximation)
     : target_(target),
       shape_(shape),
-      mix_(options.kernels),
+      mix_(options.kernels, approximation != nullptr),
       seed_(options.seed),
       threads_(options.threads),
       n_blocks_(blocks_per_half(options.threads, shape)),
       blocks_(static_cast<std::size_t>(shape.n_replicates * n_blocks_)) {
+    if (approximation != nullptr) independence_.emplace(*approximation);
     const Eigen::Index half = shape.n_walkers / 2;
     for (Eigen::Index replicate = 0; replicate < shape.n_replicates; ++replicate) {
         for (Eigen::Index index = 0; index < n_blocks_; ++index) {
@@ -122,6 +126,7 @@ void Mover::propose_block(const EnsembleState& state, const Place& place, Block&
             propose(mix_,
                     coordinates + index * n,
                     partners,
+                    independence_ ? &*independence_ : nullptr,
                     stream,
                     block.proposal.data() + column * shape_.n_coordinates);
         const auto at = static_cast<std::size_t>(column);

@@ -4,6 +4,7 @@
 
 #include <cstdint>
 #include <functional>
+#include <optional>
 #include <vector>
 
 #include "deviascope/core/target.h"
@@ -34,7 +35,11 @@ using AfterStep = std::function<void(Eigen::Index replicate, std::int64_t step)>
 /// step), so neither threads nor where a call begins and ends can change a bit.
 class Mover {
   public:
-    Mover(const Target& target, const EnsembleOptions& options, const EnsembleShape& shape);
+    /// @param approximation  what the independence kernel draws from; may be null
+    Mover(const Target& target,
+          const EnsembleOptions& options,
+          const EnsembleShape& shape,
+          const CoordinateGaussian* approximation);
 
     /// Moves all replicates by n_steps. Errors: NumericalError where a log density is NaN or
     /// +inf.
@@ -70,6 +75,7 @@ class Mover {
     const Target& target_;
     EnsembleShape shape_;
     KernelMix mix_;
+    std::optional<IndependenceProposal> independence_;
     std::uint64_t seed_;
     int threads_;
     Eigen::Index n_blocks_;      ///< per half; 1 unless there are more threads than replicates

@@ -59,11 +59,6 @@ void check_kernels(Rules& rules, const KernelFractions& kernels) {
                   "kernels",
                   fmt::format("the fractions add to {}", total),
                   "they must add to 1");
-    rules.require(kernels.independence == 0.0,
-                  {"kernels.independence",
-                   fmt::format("{}", kernels.independence),
-                   "this kernel is not yet available: only 0 is allowed",
-                   "share its fraction between stretch and differential-evolution"});
 }
 
 }  // namespace

@@ -128,7 +128,7 @@ class Run {
           shape_(shape_of(target, options)),
           target_(target),
           approximation_(std::move(approximation)),
-          mover_(target, options, shape_),
+          mover_(target, options, shape_, approximation_ ? &*approximation_ : nullptr),
           writer_(target, options.seed, shape_),
           watch_(options.threads),
           watched_(empty_watched()),

@@ -29,21 +29,12 @@ KernelFractions read_kernels(const TomlTable& table) {
         *fraction = value.value_or(0.0);
         sum += *fraction;
     }
-    if (fractions.independence > 0) kernels.refuse_later("independence");
     if (sound && std::abs(sum - 1) > 1e-9) {
         kernels.fault_here(fmt::format("the fractions add to {:.10g}", sum),
                            "fractions that add to 1 are allowed",
                            "a kernel left out has fraction 0");
     }
     return fractions;
-}
-
-/// `engine` and `tolerance`: there is one engine so far, the exact one, whatever the tolerance.
-void check_engine(const TomlTable& table) {
-    const std::vector<std::string> engines = {"auto", "moment", "pixel"};
-    const auto engine = table.choice("engine", engines);
-    if (engine && engines[*engine] == "moment") table.refuse_later("engine");
-    table.number("tolerance", above(0));
 }
 
 int read_walkers(const TomlTable& table, const std::optional<Eigen::Index>& n_coordinates) {
@@ -82,10 +73,18 @@ Eigen::Index n_coordinates_of(const ModelOptions& model) {
     return n;
 }
 
+EngineOptions read_engine(const TomlTable& table) {
+    EngineOptions options;
+    // In the order of the enumeration.
+    const auto engine = table.choice("engine", {"auto", "moment", "pixel"});
+    if (engine) options.engine = static_cast<Engine>(*engine);
+    options.tolerance = table.number("tolerance", above(0)).value_or(options.tolerance);
+    return options;
+}
+
 EnsembleOptions read_ensemble(const TomlTable& table,
                               const std::optional<Eigen::Index>& n_coordinates) {
     EnsembleOptions options;
-    check_engine(table);
     options.replicates =
         static_cast<int>(table.integer("replicates", 1, 10'000).value_or(options.replicates));
     options.walkers = read_walkers(table, n_coordinates);

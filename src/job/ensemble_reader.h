@@ -13,7 +13,10 @@ namespace deviascope {
 /// Coordinates that the sampler will move for these options (the rule of ParameterSpace).
 Eigen::Index n_coordinates_of(const ModelOptions& model);
 
-/// The `[ensemble]` table.
+/// `engine` and `tolerance` of the `[ensemble]` table.
+EngineOptions read_engine(const TomlTable& table);
+
+/// The rest of the `[ensemble]` table.
 /// @param n_coordinates  for the least number of walkers; empty where faults leave it unknown
 EnsembleOptions read_ensemble(const TomlTable& table,
                               const std::optional<Eigen::Index>& n_coordinates);

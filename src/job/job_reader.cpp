@@ -53,7 +53,9 @@ class JobReader {
         read_surveys();
         const auto n =
             model_complete_ ? std::optional(n_coordinates_of(job_.model)) : std::nullopt;
-        job_.ensemble = read_ensemble(root_.table("ensemble"), n);
+        const TomlTable ensemble = root_.table("ensemble");
+        job_.model.engine = read_engine(ensemble);
+        job_.ensemble = read_ensemble(ensemble, n);
         job_.ensemble.seed = job_.seed;
         check_hypotheses();
         document_.finish();

@@ -37,24 +37,34 @@ std::vector<BinTotals> totals_of(const Counts& counts, const ParameterSpace& spa
 
 double integrated_log_likelihood(const BinTotals& bin,
                                  const MonopolePrior& prior,
-                                 double counted,
+                                 double balance,
                                  double log_expected) {
+    const double divided = balance / bin.dispersion;
+    if (prior.rate == 0.0)
+        return prior.shape == 0.0 ? divided : divided - prior.shape * log_expected;
     const double log_ratio =
-        prior.rate == 0.0
-            ? log_expected
-            : std::log1p(bin.exposed / (bin.exposed + prior.rate) * std::expm1(log_expected));
-    return counted / bin.dispersion - (bin.sources + prior.shape) * log_ratio;
+        std::log1p(bin.exposed / (bin.exposed + prior.rate) * std::expm1(log_expected));
+    return divided + bin.sources * log_expected - (bin.sources + prior.shape) * log_ratio;
 }
 
 double sampled_log_likelihood(const BinTotals& bin,
                               double monopole,
-                              double counted,
+                              double balance,
                               double log_expected) {
     if (!(monopole > 0.0) || std::isinf(monopole))
         return -std::numeric_limits<double>::infinity();
     if (bin.sources == 0.0) return -monopole * bin.exposed * std::exp(log_expected);
-    const double u = std::log(monopole * bin.exposed / bin.sources);
-    return counted / bin.dispersion + bin.sources * (u - std::expm1(u + log_expected));
+    const double t = std::log(monopole * bin.exposed / bin.sources) + log_expected;
+    return balance / bin.dispersion + bin.sources * (t - std::expm1(t));
+}
+
+double log_likelihood_of(const BinTotals& bin,
+                         const MonopolePrior& prior,
+                         double monopole,
+                         double balance,
+                         double log_expected) {
+    return prior.sampled ? sampled_log_likelihood(bin, monopole, balance, log_expected)
+                         : integrated_log_likelihood(bin, prior, balance, log_expected);
 }
 
 }  // namespace deviascope

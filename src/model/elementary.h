@@ -92,6 +92,18 @@ template <Reach reach>
     }
 }
 
+/// ln(1 + x) - x for |x| <= log1p_near_bound, where no lane needs the argument reduction.
+/// `Number`: double, or lanes of it (hence no return value: it would depend on the instruction
+/// set). Accuracy: 3 units in the last place.
+template <typename Number>
+[[gnu::always_inline]] inline void log1p_minus_near(const Number& x, Number& result) {
+    const Number s = x / (2.0 + x);
+    const Number s_squared = s * s;
+    Number tail = Number{} + 2.0 / 19.0;  // 2 atanh(s)/s - 2, as atanh_tail<Reach::near>
+    for (int j = 8; j >= 1; --j) tail = tail * s_squared + 2.0 / (2.0 * j + 1.0);
+    result = s * (tail * s_squared - x);
+}
+
 constexpr double factorial(int n) {
     return n < 2 ? 1.0 : n * factorial(n - 1);
 }

@@ -1,6 +1,7 @@
 // SPDX-License-Identifier: GPL-2.0-or-later
 #include "model/pixel_block.h"
 
+#include "core/lanes.h"
 #include "model/elementary.h"
 
 namespace deviascope {
@@ -104,15 +105,7 @@ template <Reach reach>
     return sums_with<Reach::far>(log_kinematic, log_intrinsic, bin, first);
 }
 
-// Compiled for several instruction sets; the widest that the processor has is chosen when the
-// program starts. All give the same bits: elementary operations only, no contraction, and sums
-// in the order of a tree. (Not the public function itself: clang passes over the attribute
-// where an earlier declaration lacks it.)
-#if defined(__x86_64__) && defined(__has_attribute) && !defined(DEVIASCOPE_ONE_INSTRUCTION_SET)
-#if __has_attribute(target_clones)
-__attribute__((target_clones("default", "avx2", "arch=x86-64-v4")))
-#endif
-#endif
+DEVIASCOPE_WIDEST_INSTRUCTIONS
 void sum_block_widest(const PixelCentres& centres,
                       std::size_t first,
                       const WalkerOnSky& walker,

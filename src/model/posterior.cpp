@@ -1,15 +1,16 @@
 // SPDX-License-Identifier: GPL-2.0-or-later
 #include "deviascope/model/posterior.h"
 
+#include <atomic>
 #include <boost/random/gamma_distribution.hpp>
 #include <cmath>
 #include <limits>
 #include <vector>
 
 #include "deviascope/core/error.h"
-#include "deviascope/model/pixel_engine.h"
 #include "model/bin_likelihood.h"
-#include "model/start_gaussian.h"
+#include "model/engines.h"
+#include "model/laplace.h"
 
 namespace deviascope {
 namespace {
@@ -19,49 +20,38 @@ constexpr double minus_infinity = -std::numeric_limits<double>::infinity();
 }  // namespace
 
 struct Posterior::Parts {
-    Parts(const Counts& counts, const ModelOptions& options)
+    Parts(const Counts& counts, const ModelOptions& options, std::uint64_t seed)
         : space(counts, options),
           totals(totals_of(counts, space)),
-          engine(counts, space),
-          start(counts, space) {}
-
-    /// Sums of bins for a block of rows, all inside the walls.
-    struct BinSums {
-        Eigen::MatrixXd counted, log_expected;  ///< n_terms x n_walkers
-    };
-    BinSums sums(const Eigen::Ref<const Eigen::MatrixXd>& rows) const {
-        const Eigen::Index n = std::ssize(totals);
-        BinSums all{Eigen::MatrixXd(n, rows.cols()), Eigen::MatrixXd(n, rows.cols())};
-        engine.sums(rows, all.counted, all.log_expected);
-        return all;
-    }
+          engines(counts, space),
+          laplace(counts, space, engines, seed) {}
 
     /// ln L of one walker: bins added in job order.
-    double log_likelihood(const Eigen::Ref<const Eigen::VectorXd>& row,
-                          const Eigen::Ref<const Eigen::VectorXd>& counted,
-                          const Eigen::Ref<const Eigen::VectorXd>& log_expected) const {
+    double log_likelihood(const Eigen::MatrixXd& rows,
+                          const Engines::Sums& sums,
+                          Eigen::Index walker) const {
         const MonopolePrior& prior = space.options().monopole;
         double sum = 0.0;
-        for (Eigen::Index t = 0; t < counted.size(); ++t) {
-            const auto bin = static_cast<std::size_t>(t);
-            sum += prior.sampled ? sampled_log_likelihood(totals[bin],
-                                                          row[space.terms()[bin].monopole],
-                                                          counted[t],
-                                                          log_expected[t])
-                                 : integrated_log_likelihood(
-                                       totals[bin], prior, counted[t], log_expected[t]);
+        for (std::size_t t = 0; t < totals.size(); ++t) {
+            const auto term = static_cast<Eigen::Index>(t);
+            sum += log_likelihood_of(totals[t],
+                                     prior,
+                                     rows(space.terms()[t].monopole, walker),
+                                     sums.balance(term, walker),
+                                     sums.log_expected(term, walker));
         }
         return sum;
     }
 
     ParameterSpace space;
     std::vector<BinTotals> totals;
-    PixelEngine engine;
-    StartGaussian start;
+    Engines engines;
+    Laplace laplace;
+    mutable std::atomic<std::int64_t> by_moments = 0, by_pixels = 0;
 };
 
-Posterior::Posterior(const Counts& counts, const ModelOptions& options)
-    : parts_(std::make_unique<Parts>(counts, options)) {}
+Posterior::Posterior(const Counts& counts, const ModelOptions& options, std::uint64_t seed)
+    : parts_(std::make_unique<Parts>(counts, options, seed)) {}
 Posterior::~Posterior() = default;
 
 const ParameterSpace& Posterior::space() const {
@@ -94,13 +84,14 @@ void Posterior::log_density(const Eigen::Ref<const Eigen::MatrixXd>& coordinates
             log_posterior[walker] = minus_infinity;
     }
     rows.conservativeResize(Eigen::NoChange, std::ssize(inside));
-    const Parts::BinSums sums = parts_->sums(rows);
+    const Engines::Sums sums = parts_->engines.sums(rows);
     for (Eigen::Index row = 0; row < rows.cols(); ++row) {
         const Eigen::Index walker = inside[static_cast<std::size_t>(row)];
-        log_likelihood[walker] = parts_->log_likelihood(
-            rows.col(row), sums.counted.col(row), sums.log_expected.col(row));
+        log_likelihood[walker] = parts_->log_likelihood(rows, sums, row);
         log_posterior[walker] += log_likelihood[walker];
     }
+    parts_->by_moments.fetch_add(sums.by_moments, std::memory_order_relaxed);
+    parts_->by_pixels.fetch_add(rows.cols() - sums.by_moments, std::memory_order_relaxed);
 }
 
 void Posterior::to_parameters(const Eigen::Ref<const Eigen::MatrixXd>& coordinates,
@@ -114,7 +105,7 @@ void Posterior::redraw(std::span<Stream> streams,
     const MonopolePrior& prior = space().options().monopole;
     if (prior.sampled) return;
     ensure(std::ssize(streams) == parameters.cols(), "one stream a walker");
-    const Parts::BinSums sums = parts_->sums(parameters);
+    const Engines::Sums sums = parts_->engines.sums(parameters);
     for (Eigen::Index walker = 0; walker < parameters.cols(); ++walker)
         for (std::size_t t = 0; t < parts_->totals.size(); ++t) {
             const BinTotals& bin = parts_->totals[t];
@@ -127,7 +118,19 @@ void Posterior::redraw(std::span<Stream> streams,
 }
 
 void Posterior::draw_start(Stream& stream, Eigen::Ref<Eigen::VectorXd> coordinates) const {
-    parts_->start.draw(stream, coordinates);
+    parts_->laplace.draw_start(stream, coordinates);
+}
+
+const CoordinateGaussian* Posterior::approximation() const {
+    return n_coordinates() == 0 ? nullptr : &parts_->laplace.in_coordinates();
+}
+
+std::vector<EvaluationCount> Posterior::evaluations() const {
+    return {{"moment", parts_->by_moments.load()}, {"pixel", parts_->by_pixels.load()}};
+}
+
+const std::vector<std::string>& Posterior::warnings() const {
+    return parts_->laplace.warnings();
 }
 
 }  // namespace deviascope

@@ -1,31 +1,28 @@
 // SPDX-License-Identifier: GPL-2.0-or-later
-// MODEL, private: the priors as a Gaussian, for fits and starting points
+// MODEL, private: the priors in fits
 #pragma once
 
 #include <Eigen/Core>
 
-#include "deviascope/model/parameter_space.h"
+#include "model/free_parameters.h"
 
 namespace deviascope {
 
-// Fits move *free parameters*: one a coordinate and in their order, but vectors under
-// `uniform-amplitude` stay vectors (a Gaussian in u would be a poor picture of one in v), and a
-// sampled monopole is ln M.
-
-/// d (row of parameters, monopoles as ln M) / d (free parameters): n_parameters x
-/// n_coordinates.
-Eigen::MatrixXd free_directions(const ParameterSpace& space);
-
-/// Gradient of the log prior at the origin, and minus its curvature, in the free parameters.
-struct PriorInformation {
-    Eigen::VectorXd gradient;     ///< n_coordinates
-    Eigen::MatrixXd information;  ///< n_coordinates x n_coordinates
+/// The log prior of the free parameters to second order, and how wide the priors without
+/// curvature are.
+struct PriorExpansion {
+    double value = 0.0;           ///< up to a constant; flat priors are 0
+    Eigen::VectorXd gradient;     ///< n_free
+    Eigen::MatrixXd information;  ///< n_free x n_free: minus the second derivatives
 };
 
-/// The origin is: free vectors 0, weights at their prior means, monopoles as in `row`. Gaussian
-/// priors as they are; bounded ones as the Gaussian with their mean and covariance, so that
-/// what the counts do not determine stays about as wide as the prior allows.
-PriorInformation prior_information(const ParameterSpace& space,
-                                   const Eigen::Ref<const Eigen::VectorXd>& row);
+/// At given free parameters; Gaussian priors and those of sampled monopoles exactly, vectors
+/// under bounded priors flat, whatever their length.
+PriorExpansion prior_expansion(const FreeParameters& parameters,
+                               const Eigen::Ref<const Eigen::VectorXd>& free);
+
+/// Inverse covariance of the bounded priors (VectorPrior::covariance), 0 for all others:
+/// what keeps a Gaussian no wider than the prior where the counts say nothing.
+Eigen::MatrixXd bounded_information(const FreeParameters& parameters);
 
 }  // namespace deviascope

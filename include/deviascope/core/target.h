@@ -3,6 +3,7 @@
 #pragma once
 
 #include <Eigen/Core>
+#include <cstdint>
 #include <span>
 #include <string>
 #include <vector>
@@ -16,6 +17,12 @@ namespace deviascope {
 struct CoordinateGaussian {
     Eigen::VectorXd mean;    ///< n_coordinates
     Eigen::MatrixXd factor;  ///< n_coordinates x n_coordinates, lower triangular, diagonal > 0
+};
+
+/// How often a density was evaluated in one of several ways.
+struct EvaluationCount {
+    std::string way;
+    std::int64_t times = 0;
 };
 
 /// A density to sample. The sampler knows no astronomy: it moves *coordinates* (n_coordinates
@@ -61,6 +68,10 @@ class Target {
     /// A Gaussian that stands for the target in the independence kernel; null where the target
     /// offers none. Fixed: the same at every call.
     virtual const CoordinateGaussian* approximation() const { return nullptr; }
+
+    /// How often `log_density` was answered in each of the target's ways, since it was made;
+    /// empty where there is only one. What is counted depends on the walkers asked for alone.
+    virtual std::vector<EvaluationCount> evaluations() const { return {}; }
 };
 
 }  // namespace deviascope

@@ -17,6 +17,7 @@ namespace deviascope {
 struct Footprint {
     std::vector<std::int64_t> pixel;  ///< n_kept
     std::vector<double> exposure;     ///< n_kept
+    std::vector<double> moment{};     ///< of the exposure: see counts/moments.h; may be empty
 
     /// Sky fraction: kept pixels over all pixels of the grid.
     double sky_fraction(const Pixelisation& grid) const;
@@ -27,8 +28,9 @@ struct Footprint {
 /// Counts of one bin on a footprint of its survey.
 struct BinCounts {
     std::string name;
-    std::size_t footprint = 0;         ///< index into SurveyCounts::footprints
-    std::vector<std::uint32_t> count;  ///< n_kept of that footprint
+    std::size_t footprint = 0;            ///< index into SurveyCounts::footprints
+    std::vector<std::uint32_t> count;     ///< n_kept of that footprint
+    std::vector<double> excess_moment{};  ///< of the counts: see counts/moments.h; may be empty
     std::int64_t total() const;
 };
 

@@ -19,11 +19,12 @@ inline constexpr std::size_t n_kernels = 3;
 std::string name_of(Kernel kernel);
 
 /// Probability with which each kernel is drawn, per walker and step; they add to 1.
-/// Default: 0.4 stretch, 0.6 differential-evolution (until the independence kernel is there).
+/// Where a target offers no approximation, the share of independence goes to the others.
+/// Default: chosen by measurement (DEVELOPERS.md, "Kernel fractions").
 struct KernelFractions {
-    double stretch = 0.4;
-    double differential_evolution = 0.6;
-    double independence = 0.0;
+    double stretch = 0.2;
+    double differential_evolution = 0.3;
+    double independence = 0.5;
 
     double of(Kernel kernel) const;
 };

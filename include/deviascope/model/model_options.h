@@ -47,12 +47,27 @@ struct SurveyModel {
                           FixedPrior{}};  ///< idle where the intrinsic vector is shared
 };
 
+/// Which engine answers for the likelihood.
+enum class Engine {
+    automatic,  ///< the moment engine where its bound allows, else the pixel engine
+    moment,  ///< likewise, but a job that asks for it is warned where the pixel engine had to
+    pixel    ///< the pixel engine always
+};
+
+struct EngineOptions {
+    Engine engine = Engine::automatic;
+    /// Largest error of ln L by the truncation of the moment engine's series; above 0.
+    /// 1e-6: a ten-thousandth of a per cent in a probability.
+    double tolerance = 1e-6;
+};
+
 struct ModelOptions {
     VectorPrior velocity{"no-motion", FixedPrior{}};
     bool intrinsic_shared = false;
     VectorPrior intrinsic{"no-intrinsic", FixedPrior{}};  ///< where shared
     std::vector<SurveyModel> surveys;                     ///< in the order of the counts
     MonopolePrior monopole;
+    EngineOptions engine;
 };
 
 /// Every reason why these options cannot go with these counts: numbers of surveys and bins,

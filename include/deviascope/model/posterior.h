@@ -10,7 +10,9 @@
 
 namespace deviascope {
 
-/// The posterior of a job: counts + model + priors, as the sampler sees it.
+/// The posterior of a job: counts + model + priors, as the sampler sees it. Each walker is
+/// answered by the moment engine where its bound allows, else by the pixel engine (or always by
+/// the latter, if ModelOptions say so).
 ///
 /// Log likelihood relative to the isotropic sky (beta = 0, D = 0), monopoles integrated out
 ///   ln L_b = [X_b - (N_b + a) ln((E_b + b) / (E0_b + b))]   with N_b, X_b, E_b divided by
@@ -21,7 +23,9 @@ namespace deviascope {
 /// prior of shape 0.
 class Posterior : public Target {
   public:
-    Posterior(const Counts& counts, const ModelOptions& options);
+    /// Moments of the counts are computed here where the counts have none.
+    /// @param seed  of the keyed draws behind `approximation`
+    Posterior(const Counts& counts, const ModelOptions& options, std::uint64_t seed = 0);
     ~Posterior() override;
 
     const ParameterSpace& space() const;
@@ -38,10 +42,18 @@ class Posterior : public Target {
     /// stream.
     void redraw(std::span<Stream> streams,
                 Eigen::Ref<Eigen::MatrixXd> parameters) const override;
-    /// A Gaussian about one Newton step from zero dipoles and prior-mean weights, expected
-    /// information plus prior information, covariance x 4. Vectors under `uniform-amplitude`
-    /// are drawn in the vector and then turned into coordinates.
+    /// From the Laplace approximation with four times its covariance, inside the bounds of the
+    /// priors. Vectors under `uniform-amplitude` are drawn in the vector and then turned into
+    /// coordinates.
     void draw_start(Stream& stream, Eigen::Ref<Eigen::VectorXd> coordinates) const override;
+    /// The Laplace approximation: mode and curvature by Newton's method from exact derivatives,
+    /// bounds of the priors heeded.
+    const CoordinateGaussian* approximation() const override;
+    /// How often each engine has answered: "moment", "pixel".
+    std::vector<EvaluationCount> evaluations() const override;
+
+    /// What the search for the mode found doubtful, in plain words.
+    const std::vector<std::string>& warnings() const;
 
   private:
     struct Parts;
