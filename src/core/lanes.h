@@ -9,7 +9,7 @@ namespace deviascope {
 /// Numbers that one instruction works on where the processor can: operations act on each lane
 /// alone, so that the bits of a lane do not depend on its neighbours or on the instruction set.
 inline constexpr std::size_t n_lanes = 8;
-using Lanes [[gnu::vector_size(n_lanes * sizeof(double))]] = double;
+using Lanes [[gnu::vector_size(n_lanes * sizeof(double)), gnu::aligned(64)]] = double;
 
 }  // namespace deviascope
 

@@ -21,6 +21,8 @@ namespace {
 constexpr KernelFractions stretch_alone{1.0, 0.0, 0.0};
 constexpr KernelFractions differential_evolution_alone{0.0, 1.0, 0.0};
 constexpr KernelFractions mixture{0.4, 0.6, 0.0};
+constexpr KernelFractions independence_alone{0.0, 0.0, 1.0};
+constexpr KernelFractions all_kernels{0.2, 0.3, 0.5};
 
 /// Allowed distance from the truth in standard errors: about one false alarm in 150,000 checks.
 constexpr double allowed_sigmas = 4.5;
@@ -222,6 +224,52 @@ TEST_CASE("a bent density has the moments of its bend", "[ensemble]") {
          {"x3^2", [](const double* x) { return x[3] * x[3]; }, 1.0 + 2.0 * bend * bend, 0.3},
          {"x3 x0^2", [](const double* x) { return x[3] * x[0] * x[0]; }, 2.0 * bend, 0.2},
          {"x1 x3", [](const double* x) { return x[1] * x[3]; }, 0.0, 0.06}});
+}
+
+TEST_CASE("independence alone and all kernels leave curved and two-lobed densities invariant",
+          "[ensemble]") {
+    // The approximation is deliberately poor: off centre, too narrow along one axis, correlated
+    // where the density is not.
+    Eigen::VectorXd mean(4);
+    mean << 0.3, -0.2, 0.0, 0.5;
+    Eigen::MatrixXd factor = Eigen::MatrixXd::Identity(4, 4);
+    factor(1, 0) = 0.3;
+    factor(3, 0) = -0.2;
+    factor(3, 3) = 2.0;
+    constexpr double bend = 0.6;
+    const Curved curved(4, bend);
+    const Approximated target(curved, {mean, factor});
+    for (const KernelFractions& kernels : {independence_alone, all_kernels}) {
+        const Sampled sampled =
+            sample_all(target, {.kernels = kernels, .max_steps = 16000, .store_every = 20});
+        CHECK(sampled.outcome.tally.tried[2] > 0);
+        CHECK(acceptance(sampled.outcome, Kernel::independence) > 0.1);
+        check_moments(
+            sampled.draws,
+            {{"x0", [](const double* x) { return x[0]; }, 0.0, 0.03},
+             {"x0^2", [](const double* x) { return x[0] * x[0]; }, 1.0, 0.05},
+             {"x3^2",
+              [](const double* x) { return x[3] * x[3]; },
+              1.0 + 2.0 * bend * bend,
+              0.1},
+             {"x3 x0^2", [](const double* x) { return x[3] * x[0] * x[0]; }, 2.0 * bend, 0.1},
+             {"x1 x3", [](const double* x) { return x[1] * x[3]; }, 0.0, 0.05}});
+    }
+    const TwoLobes lobes(2, 6.0);
+    Eigen::VectorXd between(2);
+    between << 0.5, 0.1;
+    Eigen::MatrixXd wide = Eigen::MatrixXd::Identity(2, 2);
+    wide(0, 0) = 3.0;
+    const Approximated lobed(lobes, {between, wide});
+    for (const KernelFractions& kernels : {independence_alone, all_kernels}) {
+        const Sampled sampled =
+            sample_all(lobed, {.kernels = kernels, .max_steps = 8000, .store_every = 10});
+        check_moments(
+            sampled.draws,
+            {{"right", [](const double* x) { return x[0] > 0.0 ? 1.0 : 0.0; }, 0.5, 0.02},
+             {"x0^2", [](const double* x) { return x[0] * x[0]; }, 10.0, 0.1},
+             {"x1^2", [](const double* x) { return x[1] * x[1]; }, 1.0, 0.02}});
+    }
 }
 
 namespace {

@@ -73,8 +73,10 @@ Eigen::MatrixXd random_vectors(Eigen::Index n, double furthest, std::uint64_t se
 }
 
 ModelOptions wide_model() {
-    return synthetic::make_model(
+    ModelOptions model = synthetic::make_model(
         two_surveys(), {"wide", UniformVectorPrior{1.0}}, {"wide", UniformVectorPrior{1.0}});
+    model.engine.engine = Engine::pixel;
+    return model;
 }
 
 }  // namespace

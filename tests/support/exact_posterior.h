@@ -46,20 +46,31 @@ inline BinSums sums_of(const deviascope::Counts& counts,
     return sums;
 }
 
-/// Monopoles integrated out under Gamma(a, b).
+/// One bin; the monopole integrated out under Gamma(a, b), or given in the row.
+inline Real log_likelihood_of_term(const deviascope::Counts& counts,
+                                   const deviascope::ParameterSpace& space,
+                                   const deviascope::BinTerm& term,
+                                   const Eigen::VectorXd& row) {
+    const deviascope::MonopolePrior& prior = space.options().monopole;
+    const BinSums bin = sums_of(counts, term, row);
+    const Real phi = term.dispersion;
+    const Real n = Real(counts.surveys[term.survey].bins[term.bin].total()) / phi;
+    const Real e0 = bin.exposed_sky / phi;
+    if (prior.sampled) {
+        const Real monopole = row[term.monopole];
+        return bin.counted / phi + n * std::log(monopole * e0 / n) -
+               (monopole * e0 * bin.ratio - n);
+    }
+    return bin.counted / phi -
+           (n + prior.shape) * std::log((e0 * bin.ratio + prior.rate) / (e0 + prior.rate));
+}
+
 inline Real log_likelihood(const deviascope::Counts& counts,
                            const deviascope::ParameterSpace& space,
                            const Eigen::VectorXd& row) {
-    const deviascope::MonopolePrior& prior = space.options().monopole;
     Real sum = 0;
-    for (const deviascope::BinTerm& term : space.terms()) {
-        const BinSums bin = sums_of(counts, term, row);
-        const Real phi = term.dispersion;
-        const Real n = Real(counts.surveys[term.survey].bins[term.bin].total()) / phi;
-        const Real e0 = bin.exposed_sky / phi;
-        sum += bin.counted / phi -
-               (n + prior.shape) * std::log((e0 * bin.ratio + prior.rate) / (e0 + prior.rate));
-    }
+    for (const deviascope::BinTerm& term : space.terms())
+        sum += log_likelihood_of_term(counts, space, term, row);
     return sum;
 }
 

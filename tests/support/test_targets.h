@@ -175,6 +175,24 @@ class Scaled : public CoordinateTarget {
     double scale_;
 };
 
+/// Another target together with a Gaussian to propose from.
+class Approximated : public CoordinateTarget {
+  public:
+    Approximated(const CoordinateTarget& inner, CoordinateGaussian approximation)
+        : CoordinateTarget(inner.n_coordinates()),
+          inner_(inner),
+          approximation_(std::move(approximation)) {}
+    double log_density_at(const double* x) const override { return inner_.log_density_at(x); }
+    void draw_start(Stream& stream, Eigen::Ref<Eigen::VectorXd> coordinates) const override {
+        inner_.draw_start(stream, coordinates);
+    }
+    const CoordinateGaussian* approximation() const override { return &approximation_; }
+
+  private:
+    const CoordinateTarget& inner_;
+    CoordinateGaussian approximation_;
+};
+
 /// A unit Gaussian vector `v` (v.x, v.y, v.z), one constant and one redrawn parameter, Normal
 /// about v.x with variance 1: the roles a survey's posterior has.
 class VectorTarget : public CoordinateTarget {

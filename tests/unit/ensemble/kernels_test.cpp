@@ -47,12 +47,12 @@ TEST_CASE("a stretch move lies on the line through its partner", "[ensemble]") {
     const std::vector<double> others = {0.0, 0.0, 0.0, 10.0, 10.0, 10.0};
     const Partners partners{others.data(), 2, 3};
     const double x[] = {1.0, 2.0, 4.0};
-    const KernelMix mix({1.0, 0.0, 0.0});
+    const KernelMix mix({1.0, 0.0, 0.0}, false);
     std::map<double, int> chosen;
     for (std::uint64_t draw = 0; draw < 2000; ++draw) {
         double y[3];
         Stream stream = stream_of(draw);
-        const Proposal proposal = propose(mix, x, partners, stream, y);
+        const Proposal proposal = propose(mix, x, partners, nullptr, stream, y);
         REQUIRE(proposal.kernel == Kernel::stretch);
         const double z = std::exp(proposal.log_factor / 2.0);  // (n - 1) ln z
         REQUIRE(z >= 0.5 - 1e-12);
@@ -77,7 +77,7 @@ TEST_CASE("differential evolution adds a jittered difference of two unlike partn
         others.push_back(std::pow(3.0, walker));
     }
     const Partners partners{others.data(), 6, 2};
-    const KernelMix mix({0.0, 1.0, 0.0});
+    const KernelMix mix({0.0, 1.0, 0.0}, false);
     const double base = 2.38 / std::sqrt(4.0);  // ter Braak 2006, n = 2
     const double x[] = {0.0, 0.0};
     std::map<std::pair<int, int>, int> pairs;
@@ -86,7 +86,7 @@ TEST_CASE("differential evolution adds a jittered difference of two unlike partn
     for (std::uint64_t draw = 0; draw < n_draws; ++draw) {
         double y[2];
         Stream stream = stream_of(draw);
-        const Proposal proposal = propose(mix, x, partners, stream, y);
+        const Proposal proposal = propose(mix, x, partners, nullptr, stream, y);
         REQUIRE(proposal.kernel == Kernel::differential_evolution);
         REQUIRE(proposal.log_factor == 0.0);
         int found = 0;
@@ -110,23 +110,23 @@ TEST_CASE("differential evolution adds a jittered difference of two unlike partn
 }
 
 TEST_CASE("kernels are drawn with their fractions and never against them", "[ensemble]") {
-    const KernelMix mix({0.4, 0.6, 0.0});
+    const KernelMix mix({0.4, 0.6, 0.0}, false);
     CHECK(mix.at(0.0) == Kernel::stretch);
     CHECK(mix.at(std::nextafter(0.4, 0.0)) == Kernel::stretch);
     CHECK(mix.at(0.4) == Kernel::differential_evolution);
     CHECK(mix.at(std::nextafter(1.0, 0.0)) == Kernel::differential_evolution);
-    CHECK(KernelMix({1.0, 0.0, 0.0}).at(std::nextafter(1.0, 0.0)) == Kernel::stretch);
-    CHECK(KernelMix({0.0, 1.0, 0.0}).at(0.0) == Kernel::differential_evolution);
-    CHECK(KernelMix({0.2, 0.3, 0.5}).at(0.7) == Kernel::independence);
+    CHECK(KernelMix({1.0, 0.0, 0.0}, false).at(std::nextafter(1.0, 0.0)) == Kernel::stretch);
+    CHECK(KernelMix({0.0, 1.0, 0.0}, false).at(0.0) == Kernel::differential_evolution);
+    CHECK(KernelMix({0.2, 0.3, 0.5}, true).at(0.7) == Kernel::independence);
 }
 
-TEST_CASE("a kernel that is not available is never moved with", "[ensemble]") {
-    const std::vector<double> others = {0.0, 1.0};
-    const double x = 0.0;
-    double y = 0.0;
-    Stream stream = stream_of(0);
-    CHECK_THROWS_AS(propose(KernelMix({0.0, 0.0, 1.0}), &x, {others.data(), 2, 1}, stream, &y),
-                    InternalError);
+TEST_CASE("without an approximation the other kernels share the independence kernel's moves",
+          "[ensemble]") {
+    const KernelMix mix({0.2, 0.3, 0.5}, false);
+    CHECK(mix.at(0.399) == Kernel::stretch);
+    CHECK(mix.at(0.401) == Kernel::differential_evolution);
+    CHECK(mix.at(0.999) == Kernel::differential_evolution);
+    CHECK_THROWS_AS(KernelMix({0.0, 0.0, 1.0}, false), UsageError);
 }
 
 TEST_CASE("numbers of a move are drawn in the written order", "[ensemble]") {
@@ -137,7 +137,8 @@ TEST_CASE("numbers of a move are drawn in the written order", "[ensemble]") {
     for (std::uint64_t draw = 0; draw < 50; ++draw) {
         double y = 0.0;
         Stream stream = stream_of(draw);
-        const Proposal proposal = propose(KernelMix({0.5, 0.5, 0.0}), &x, partners, stream, &y);
+        const Proposal proposal =
+            propose(KernelMix({0.5, 0.5, 0.0}, false), &x, partners, nullptr, stream, &y);
         Stream again = stream_of(draw);
         const bool is_stretch = uniform(again) < 0.5;
         CHECK((proposal.kernel == Kernel::stretch) == is_stretch);

@@ -55,15 +55,6 @@ TEST_CASE("each violated rule of the options is named with its value", "[ensembl
     CHECK(with([](EnsembleOptions& o) { o.walkers = 20; }).problems(9).empty());
 }
 
-TEST_CASE("the independence kernel is refused as not yet available", "[ensemble]") {
-    const auto problems = with([](EnsembleOptions& o) {
-                              o.kernels = {0.2, 0.3, 0.5};
-                          }).problems(9);
-    REQUIRE(problems.size() == 1);
-    CHECK_THAT(problems[0], Catch::StartsWith("kernels.independence: 0.5"));
-    CHECK_THAT(problems[0], Catch::Contains("not yet available"));
-}
-
 TEST_CASE("all violated rules are listed at once", "[ensemble]") {
     const auto problems = with([](EnsembleOptions& o) {
                               o.replicates = -1;

@@ -204,9 +204,6 @@ TEST_CASE("faults of the table ensemble are named", "[job]") {
                "22:11: ensemble.walkers: found 16; an even number of at least 18 (twice the 8 "
                "coordinates, plus 2) is allowed"},
               {"walkers = 36",
-               "engine = 'moment'",
-               "22:10: ensemble.engine: found \"moment\", not yet available; leave it out"},
-              {"walkers = 36",
                "engine = 'pixle'",
                "22:10: ensemble.engine: found \"pixle\"; \"auto\", \"moment\" or \"pixel\" is "
                "allowed; did you mean \"pixel\"?"},
@@ -236,10 +233,6 @@ TEST_CASE("faults of the table ensemble are named", "[job]") {
                "kernels = { stretch = 0.4, differential-evolution = 0.5 }",
                "22:11: ensemble.kernels: the fractions add to 0.9; fractions that add to 1 are "
                "allowed; a kernel left out has fraction 0"},
-              {"walkers = 36",
-               "kernels = { stretch = 0.5, independence = 0.5 }",
-               "22:43: ensemble.kernels.independence: found 0.5, not yet available; leave it "
-               "out"},
               {"walkers = 36",
                "kernels = { stretch = 1.5, differential-evolution = -0.5 }",
                "22:23: ensemble.kernels.stretch: found 1.5; a number of at least 0 and at most "
