@@ -44,7 +44,7 @@ TEST_CASE("each violated rule of the options is named with its value", "[ensembl
         {[](EnsembleOptions& o) { o.max_steps = 1; }, "max_steps", "1"},
         {[](EnsembleOptions& o) { o.store_every = -1; }, "store_every", "-1"},
         {[](EnsembleOptions& o) { o.store_every = 200001; }, "store_every", "200001"},
-        {[](EnsembleOptions& o) { o.kernels.stretch = 0.5; }, "kernels", "1.1"},
+        {[](EnsembleOptions& o) { o.kernels.stretch = 0.5; }, "kernels", "1.3"},
         {[](EnsembleOptions& o) { o.threads = 0; }, "threads", "0"}};
     for (const Case& one : cases) {
         const auto problems = with(one.change).problems(9);

@@ -380,7 +380,7 @@ TEST_CASE("walkers are redrawn until they start inside the support", "[ensemble]
 TEST_CASE("options that break rules are refused together", "[ensemble]") {
     EnsembleOptions options = quick();
     options.replicates = 0;
-    options.kernels = {0.5, 0.0, 0.5};
+    options.kernels = {0.5, 0.0, 0.4};
     MemorySink sink;
     try {
         sample(VectorTarget(), options, sink);

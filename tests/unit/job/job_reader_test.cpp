@@ -132,8 +132,8 @@ TEST_CASE("what is left out takes the defaults of the schema", "[job]") {
     CHECK(job.ensemble.walkers == 0);
     CHECK(job.ensemble.effective_draws == 10000);
     CHECK(job.ensemble.max_steps == 200000);
-    CHECK(job.ensemble.kernels.stretch == 0.4);
-    CHECK(job.ensemble.kernels.differential_evolution == 0.6);
+    CHECK(job.ensemble.kernels.stretch == 0.2);
+    CHECK(job.ensemble.kernels.differential_evolution == 0.3);
     CHECK(job.surveys[0].bad_rows == BadRows::stop);
     CHECK(job.model.surveys[0].bins[0].bias_ratio == 1.0);
     CHECK(job.model.surveys[0].bins[0].dispersion == 1.0);
