@@ -124,13 +124,14 @@ void create_states(Writer& writer, const Shape& ensemble, std::size_t n_coordina
     number("step", "steps each walker had made, warm-up included");
     number("look", "looks passed since the end of the warm-up");
     number("rows", "rows of the draws stored");
-    writer.growing_reals("/state/coordinates",
-                         {"where the walkers stood, in the sampler's coordinates",
-                          "",
-                          "block x replicate x walker x coordinate"},
-                         and_with(ensemble, n_coordinates),
-                         with(1, and_with(ensemble, n_coordinates)),
-                         Writer::Packing::plain);
+    if (n_coordinates > 0)
+        writer.growing_reals("/state/coordinates",
+                             {"where the walkers stood, in the sampler's coordinates",
+                              "",
+                              "block x replicate x walker x coordinate"},
+                             and_with(ensemble, n_coordinates),
+                             with(1, and_with(ensemble, n_coordinates)),
+                             Writer::Packing::plain);
     const std::string axes = "block x replicate x walker";
     writer.growing_reals("/state/log_posterior",
                          {posterior_about.meaning, "1", axes},
@@ -167,6 +168,24 @@ void append_draws(Writer& writer, const std::string& group, const Draws& rows) {
     writer.append(group + "/log_likelihood", all_of(rows.log_likelihood));
 }
 
+void create_evaluations(Writer& writer, const std::vector<EvaluationCount>& evaluations) {
+    if (evaluations.empty()) return;
+    std::vector<std::string> ways;
+    for (const EvaluationCount& one : evaluations) ways.push_back(one.way);
+    writer.group("/evaluations", "evaluations of the density, summed from the beginning");
+    writer.dataset("/evaluations/engine", {"which engine answered", "", "engine"}, ways);
+    writer.growing_integers("/evaluations/times",
+                            {"evaluations up to the end of a block", "1", "block x engine"},
+                            {ways.size()},
+                            {blocks_a_chunk, ways.size()});
+}
+
+void append_evaluations(Writer& writer, const std::vector<EvaluationCount>& evaluations) {
+    std::vector<std::int64_t> times;
+    for (const EvaluationCount& one : evaluations) times.push_back(one.times);
+    if (!times.empty()) writer.append("/evaluations/times", all_of(times));
+}
+
 void append_number(Writer& writer, const std::string& path, std::int64_t number) {
     writer.append(path, std::span<const std::int64_t>(&number, 1));
 }
@@ -190,13 +209,17 @@ void write_warm_up(Writer& writer, const WarmUp& warm_up) {
     writer.attribute("/state", "warm_up_settled", std::int64_t{warm_up.settled});
     writer.attribute("/state", "store_every", warm_up.store_every);
     if (warm_up.approximation) write_approximation(writer, *warm_up.approximation);
+    if (!warm_up.warnings.empty())
+        writer.dataset("/state/warnings",
+                       {"what was doubtful before the first step", "", "warning"},
+                       warm_up.warnings);
 }
 
 void ensure_block(const Draws& rows, const EnsembleState& state) {
     ensure_sizes(rows);
     const std::size_t n_walkers = h5::n_elements(ensemble_of(rows));
     ensure(n_walkers > 0 && state.log_posterior.size() == n_walkers &&
-               state.log_likelihood.size() == n_walkers && !state.coordinates.empty() &&
+               state.log_likelihood.size() == n_walkers &&
                state.coordinates.size() % n_walkers == 0,
            "a state has a place and densities for each walker");
 }
@@ -215,6 +238,7 @@ void create_growing(Writer& writer,
     create_draws(writer, "", rows, size(rows_a_chunk));
     create_states(writer, ensemble, state.coordinates.size() / h5::n_elements(ensemble));
     create_tally(writer);
+    create_evaluations(writer, state.evaluations);
 }
 
 void append_block(Writer& writer,
@@ -225,11 +249,13 @@ void append_block(Writer& writer,
     append_number(writer, "/state/step", state.step);
     append_number(writer, "/state/look", state.look);
     append_number(writer, "/state/rows", n_rows_after);
-    writer.append("/state/coordinates", all_of(state.coordinates));
+    if (!state.coordinates.empty())
+        writer.append("/state/coordinates", all_of(state.coordinates));
     writer.append("/state/log_posterior", all_of(state.log_posterior));
     writer.append("/state/log_likelihood", all_of(state.log_likelihood));
     writer.append("/kernel_tally/tried", std::span<const std::int64_t>(state.tally.tried));
     writer.append("/kernel_tally/taken", std::span<const std::int64_t>(state.tally.taken));
+    append_evaluations(writer, state.evaluations);
 }
 
 void write_end(Writer& writer, Outcome::End end) {

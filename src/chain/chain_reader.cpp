@@ -171,6 +171,7 @@ WarmUp read_warm_up(const Reader& reader, std::size_t n_parameters) {
     warm_up.discarded = read_number(reader, "/state", "end_of_warm_up");
     warm_up.store_every = read_number(reader, "/state", "store_every");
     warm_up.approximation = read_approximation(reader);
+    if (reader.has("/state/warnings")) warm_up.warnings = list(reader, "/state/warnings");
     return warm_up;
 }
 
@@ -189,6 +190,18 @@ KernelTally read_tally(const Reader& reader, std::size_t n_blocks) {
     return tally;
 }
 
+std::vector<EvaluationCount> read_evaluations(const Reader& reader, std::size_t n_blocks) {
+    std::vector<EvaluationCount> evaluations;
+    if (!reader.has("/evaluations")) return evaluations;
+    for (std::string& way : list(reader, "/evaluations/engine"))
+        evaluations.push_back({std::move(way), 0});
+    const auto times =
+        reader.last_integers("/evaluations/times", {n_blocks, evaluations.size()});
+    for (std::size_t way = 0; way < evaluations.size(); ++way)
+        evaluations[way].times = times[way];
+    return evaluations;
+}
+
 /// The state after the last block.
 EnsembleState read_state(const Reader& reader, const Draws& draws) {
     const Shape blocks = reader.shape("/state/step", 1);
@@ -201,13 +214,16 @@ EnsembleState read_state(const Reader& reader, const Draws& draws) {
     const Shape ensemble{blocks[0],
                          static_cast<std::size_t>(draws.n_replicates),
                          static_cast<std::size_t>(draws.n_walkers)};
-    Shape places = ensemble;
-    places.push_back(reader.shape("/state/coordinates", 4)[3]);
     EnsembleState state;
+    if (reader.has("/state/coordinates")) {  // absent where nothing is sampled
+        Shape places = ensemble;
+        places.push_back(reader.shape("/state/coordinates", 4)[3]);
+        state.coordinates = reader.last_reals("/state/coordinates", places);
+    }
     state.step = reader.last_integers("/state/step", blocks).front();
     state.look = reader.last_integers("/state/look", blocks).front();
     state.tally = read_tally(reader, blocks[0]);
-    state.coordinates = reader.last_reals("/state/coordinates", places);
+    state.evaluations = read_evaluations(reader, blocks[0]);
     state.log_posterior = reader.last_reals("/state/log_posterior", ensemble);
     state.log_likelihood = reader.last_reals("/state/log_likelihood", ensemble);
     return state;

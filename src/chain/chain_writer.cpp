@@ -89,7 +89,7 @@ ChainWriter::ChainWriter(ChainLock lock,
 
 ChainWriter::ChainWriter(ChainLock lock, const Chain& stored)
     : parts_(std::make_unique<Parts>(std::move(lock))) {
-    if (stored.state.coordinates.empty())
+    if (stored.state.log_posterior.empty())
         throw InputError({parts_->path().string(),
                           "holds no block to go on from",
                           "",

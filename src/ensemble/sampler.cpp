@@ -131,6 +131,7 @@ class Run {
           mover_(target, options, shape_, approximation_ ? &*approximation_ : nullptr),
           writer_(target, options.seed, shape_),
           watch_(options.threads),
+          evaluations_at_start_(target.evaluations()),
           watched_(empty_watched()),
           pending_(empty_draws(target, shape_)) {}
 
@@ -149,6 +150,7 @@ class Run {
         outcome_.n_rows = stored.draws.n_rows;
         watched_.append(stored.draws, 0, stored.draws.n_rows, options_.threads);
         state_ = std::move(stored.state);
+        evaluations_before_ = state_.evaluations;
         stored = {};
         begin_storing();
         return ended(store_until_the_end());
@@ -217,6 +219,7 @@ class Run {
         warm_up.discarded = outcome_.discarded;
         warm_up.store_every = outcome_.store_every;
         warm_up.approximation = approximation_;
+        warm_up.warnings = target_.warnings();
         sink_.warm_up(warm_up);
     }
 
@@ -328,6 +331,7 @@ class Run {
 
     void store_block() {
         const double began = seconds_now();
+        state_.evaluations = evaluations_so_far();
         sink_.block(pending_, state_);
         seconds_to_store_ = seconds_now() - began;
         is_state_stored_ = true;
@@ -351,6 +355,17 @@ class Run {
         const double began = seconds_now();
         mover_.advance(state_, n_steps, after_step);
         pace_.took(n_steps, seconds_now() - began);
+    }
+
+    /// Those of a run before this one included.
+    std::vector<EvaluationCount> evaluations_so_far() const {
+        std::vector<EvaluationCount> all = target_.evaluations();
+        for (std::size_t way = 0; way < all.size(); ++way) {
+            all[way].times -= evaluations_at_start_[way].times;
+            if (way < evaluations_before_.size())
+                all[way].times += evaluations_before_[way].times;
+        }
+        return all;
     }
 
     Outcome ended(Outcome::End end) {
@@ -400,6 +415,8 @@ class Run {
     Mover mover_;
     RowWriter writer_;
     Watch watch_;
+    std::vector<EvaluationCount> evaluations_at_start_;  ///< of the target's own count
+    std::vector<EvaluationCount> evaluations_before_;    ///< of the run that is gone on with
     Pace pace_;
 
     EnsembleState state_;

@@ -154,12 +154,6 @@ void fill_velocity(const LaneSeries& velocity, Lanes* monomials) {
 
 }  // namespace
 
-void LaneSeries::set_degree(std::size_t lane, int degree) {
-    highest = std::max(highest, degree);
-    for (int k = 0; k <= moment_degree; ++k)
-        keep[static_cast<std::size_t>(k)].set(lane, k <= degree ? 1.0 : 0.0);
-}
-
 void sum_lanes(const std::vector<MomentGroup>& groups,
                const LaneWalkers& walkers,
                LaneSums& sums) {

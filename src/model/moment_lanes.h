@@ -2,6 +2,7 @@
 // MODEL, private: the moment engine's series for a few walkers side by side
 #pragma once
 
+#include <algorithm>
 #include <array>
 #include <vector>
 
@@ -26,7 +27,11 @@ struct LaneSeries {
     /// 1 in the lanes whose series goes to this degree or further, else 0.
     std::array<LaneNumber, moment_degree + 1> keep{};
 
-    void set_degree(std::size_t lane, int degree);
+    void set_degree(std::size_t lane, int degree) {
+        highest = std::max(highest, degree);
+        for (int k = 0; k <= moment_degree; ++k)
+            keep[static_cast<std::size_t>(k)].set(lane, k <= degree ? 1.0 : 0.0);
+    }
 };
 
 /// A block of walkers, made ready.

@@ -129,7 +129,7 @@ std::vector<EvaluationCount> Posterior::evaluations() const {
     return {{"moment", parts_->by_moments.load()}, {"pixel", parts_->by_pixels.load()}};
 }
 
-const std::vector<std::string>& Posterior::warnings() const {
+std::vector<std::string> Posterior::warnings() const {
     return parts_->laplace.warnings();
 }
 

@@ -1,6 +1,6 @@
 // SPDX-License-Identifier: GPL-2.0-or-later
-#include "deviascope/core/grouped_number.h"
 #include "summary/cautions.h"
+#include "deviascope/core/grouped_number.h"
 
 #include <fmt/format.h>
 #include <Eigen/LU>
@@ -36,7 +36,7 @@ template <class Value>
 const ScalarDiagnostics* largest(const SamplingSummary& sampling, Value value) {
     const ScalarDiagnostics* worst = nullptr;
     for (const ScalarDiagnostics& scalar : sampling.scalars)
-        if (std::isfinite(value(scalar)) && (!worst || value(scalar) > value(*worst)))
+        if (!std::isnan(value(scalar)) && (!worst || value(scalar) > value(*worst)))
             worst = &scalar;
     return worst;
 }
@@ -116,6 +116,19 @@ void add_sampling(const Summary& summary,
                             name_of(static_cast<Kernel>(kernel)),
                             100.0 * taken / tried));
     }
+}
+
+void add_engine(const Summary& summary,
+                const ParameterSpace& space,
+                std::vector<std::string>& cautions) {
+    const SamplingSummary& sampling = summary.sampling;
+    if (space.options().engine.engine != Engine::moment || sampling.pixel_evaluations == 0)
+        return;
+    cautions.push_back(fmt::format(
+        "The job asks for the moment engine, but the pixel engine had to answer {} of {} "
+        "evaluations: the series' error could not be kept below the tolerance there.",
+        grouped(sampling.pixel_evaluations),
+        grouped(sampling.pixel_evaluations + sampling.moment_evaluations)));
 }
 
 // ---- separation ----
@@ -245,6 +258,7 @@ std::vector<std::string> cautions_of(const Summary& summary,
                                      const SummaryOptions& options) {
     std::vector<std::string> cautions;
     add_sampling(summary, options, cautions);
+    add_engine(summary, space, cautions);
     add_separation(summary.separation, cautions);
     add_vector(summary.velocity, space.vector_prior(0), cautions);
     for (std::size_t v = 0; v < summary.intrinsic.size(); ++v)

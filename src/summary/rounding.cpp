@@ -1,6 +1,6 @@
 // SPDX-License-Identifier: GPL-2.0-or-later
-#include "deviascope/core/grouped_number.h"
 #include "summary/rounding.h"
+#include "deviascope/core/grouped_number.h"
 
 #include <fmt/format.h>
 

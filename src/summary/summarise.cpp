@@ -51,7 +51,7 @@ double extreme(const std::vector<ScalarDiagnostics>& scalars, Value value, Bette
     double best = undefined;
     for (const ScalarDiagnostics& scalar : scalars) {
         const double found = value(scalar);
-        if (std::isfinite(found) && (std::isnan(best) || better(found, best))) best = found;
+        if (!std::isnan(found) && (std::isnan(best) || better(found, best))) best = found;
     }
     return best;
 }
@@ -87,8 +87,10 @@ SamplingSummary sampling_of(const Chain& chain,
         all, [](const S& s) { return s.effective_draws(); }, std::less<double>());
     sampling.autocorrelation_steps_max = extreme(
         all, [](const S& s) { return s.autocorrelation_steps; }, larger);
-    const auto& tried = chain.outcome.tally.tried;
-    sampling.pixel_evaluations = std::accumulate(tried.begin(), tried.end(), std::int64_t{0});
+    for (const EvaluationCount& one : chain.state.evaluations) {
+        if (one.way == "moment") sampling.moment_evaluations = one.times;
+        if (one.way == "pixel") sampling.pixel_evaluations = one.times;
+    }
     return sampling;
 }
 
@@ -332,7 +334,11 @@ Summary summarise(const Chain& chain,
         summary.cuts.push_back(survey.cuts);
         summary.survey_names.push_back(survey.name);
     }
-    summary.warnings = cautions_of(summary, space, options);
+    SummaryOptions carried = options;
+    carried.job_warnings.insert(carried.job_warnings.end(),
+                                chain.warm_up.warnings.begin(),
+                                chain.warm_up.warnings.end());
+    summary.warnings = cautions_of(summary, space, carried);
     return summary;
 }
 

@@ -127,6 +127,26 @@ TEST_CASE("equal weights are called not separated, and doubtful under --strict",
     CHECK_THAT(result.out, Catch::Contains("not separated"));
 }
 
+TEST_CASE("a job of monopoles alone runs to its summary", "[app]") {
+    // Gamma-Poisson: the monopole of N sources over the whole sky has median near N / (4 pi).
+    const TemporaryFolder folder;
+    folder.write("binnacle.csv", lattice_catalogue(20000));
+    std::string job = small_job(bins(3.75, 6.0), quick);
+    const auto replace = [&](const std::string& from, const std::string& to) {
+        job.replace(job.find(from), from.size(), to);
+    };
+    replace("prior = \"free-velocity\"", "prior = \"no-motion\"");
+    replace("prior = { kind = \"gaussian\", sd = 0.05 }", "prior = \"no-intrinsic\"");
+    folder.write("job.toml", job);
+    const ProcessResult result = run_job(folder, {});
+    INFO(result.err);
+    REQUIRE(result.exit_code == 0);
+    const nlohmann::json summary = summary_in(folder / "out");
+    CHECK(summary["bins"][0]["monopole"]["median"].get<double>() ==
+          Approx(10000 / (4 * 3.14159265358979)).epsilon(0.002));
+    CHECK(summary["velocity"]["direction"]["galactic"].is_null());
+}
+
 TEST_CASE("a run that cannot converge says so in every output", "[app]") {
     const TemporaryFolder folder;
     folder.write("binnacle.csv", lattice_catalogue(20000));

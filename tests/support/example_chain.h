@@ -121,6 +121,7 @@ inline WarmUp example_warm_up() {
     warm_up.settled = true;
     warm_up.discarded = 192;
     warm_up.store_every = 3;
+    warm_up.warnings = {"The counts do not hold velocity.x."};
     return warm_up;
 }
 
@@ -131,6 +132,7 @@ inline EnsembleState example_state(std::int64_t n_rows) {
     state.look = n_rows / 4;
     state.tally.tried = {100 * n_rows, 200 * n_rows, 0};
     state.tally.taken = {30 * n_rows, 50 * n_rows, 0};
+    state.evaluations = {{"moment", 290 * n_rows}, {"pixel", 10 * n_rows}};
     for (int value = 0; value < 2 * 4 * 5; ++value)
         state.coordinates.push_back(static_cast<double>(n_rows) + std::ldexp(value, -10));
     for (int walker = 0; walker < 2 * 4; ++walker) {

@@ -66,7 +66,7 @@ inline bool same(const std::optional<CoordinateGaussian>& a,
 inline bool same(const WarmUp& a, const WarmUp& b) {
     return same(a.buffer, b.buffer) && a.step == b.step && a.settled == b.settled &&
            a.discarded == b.discarded && a.store_every == b.store_every &&
-           same(a.approximation, b.approximation);
+           same(a.approximation, b.approximation) && a.warnings == b.warnings;
 }
 
 inline bool same(const KernelTally& a, const KernelTally& b) {
@@ -77,7 +77,7 @@ inline bool same(const EnsembleState& a, const EnsembleState& b) {
     return a.step == b.step && a.look == b.look && same(a.tally, b.tally) &&
            same_bits(a.coordinates, b.coordinates) &&
            same_bits(a.log_posterior, b.log_posterior) &&
-           same_bits(a.log_likelihood, b.log_likelihood);
+           same_bits(a.log_likelihood, b.log_likelihood) && a.evaluations == b.evaluations;
 }
 
 inline bool same(const Outcome& a, const Outcome& b) {

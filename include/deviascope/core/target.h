@@ -23,6 +23,8 @@ struct CoordinateGaussian {
 struct EvaluationCount {
     std::string way;
     std::int64_t times = 0;
+
+    bool operator==(const EvaluationCount&) const = default;
 };
 
 /// A density to sample. The sampler knows no astronomy: it moves *coordinates* (n_coordinates
@@ -72,6 +74,9 @@ class Target {
     /// How often `log_density` was answered in each of the target's ways, since it was made;
     /// empty where there is only one. What is counted depends on the walkers asked for alone.
     virtual std::vector<EvaluationCount> evaluations() const { return {}; }
+
+    /// What is doubtful about the target before any step, in plain words.
+    virtual std::vector<std::string> warnings() const { return {}; }
 };
 
 }  // namespace deviascope

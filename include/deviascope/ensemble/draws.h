@@ -48,6 +48,8 @@ struct EnsembleState {
     std::vector<double> coordinates;     ///< replicates x walkers x coordinates
     std::vector<double> log_posterior;   ///< replicates x walkers
     std::vector<double> log_likelihood;  ///< replicates x walkers
+    /// Evaluations of the density since the beginning, in the target's ways; may be empty.
+    std::vector<EvaluationCount> evaluations;
 };
 
 /// What is fixed at the end of the warm-up.
@@ -59,6 +61,7 @@ struct WarmUp {
     std::int64_t store_every = 1;
     /// What the target offered for the independence kernel; a resumed run uses this one.
     std::optional<CoordinateGaussian> approximation;
+    std::vector<std::string> warnings;  ///< of the target
 };
 
 /// Where draws go. Calls come from the main thread: warm_up once, then blocks in order.

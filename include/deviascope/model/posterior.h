@@ -51,9 +51,8 @@ class Posterior : public Target {
     const CoordinateGaussian* approximation() const override;
     /// How often each engine has answered: "moment", "pixel".
     std::vector<EvaluationCount> evaluations() const override;
-
-    /// What the search for the mode found doubtful, in plain words.
-    const std::vector<std::string>& warnings() const;
+    /// What the search for the mode found doubtful.
+    std::vector<std::string> warnings() const override;
 
   private:
     struct Parts;

@@ -92,7 +92,7 @@ struct SummaryOptions {
 
 /// Numbers from draws; definitions in the README, "The summary, number by number".
 ///
-/// Evaluations: every proposal is one evaluation of the log density, by the pixel engine.
+/// Evaluations: those of starting points and proposals inside the walls of the priors.
 /// Errors: InputError where the chain holds no stored draws.
 /// Threads: main thread; works on `options.threads`; same bits for any number.
 Summary summarise(const Chain& chain,

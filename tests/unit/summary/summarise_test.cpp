@@ -51,6 +51,8 @@ struct Run {
         chain.outcome = {Outcome::End::converged, 1000, 200, 10, 50, true, {}};
         chain.outcome.tally.tried = {600, 400, 0};
         chain.outcome.tally.taken = {200, 100, 0};
+        chain.state.evaluations = {{"moment", 990}, {"pixel", 10}};
+        chain.warm_up.warnings = {"The counts do not hold velocity.x."};
         add_draws(fill);
     }
 
@@ -157,7 +159,9 @@ TEST_CASE("a summary against its definitions", "[summary]") {
     CHECK(summary.sampling.n_draws == 6000);
     CHECK(summary.sampling.walker_rhat_max < 1.05);
     CHECK(summary.sampling.effective_draws_min > 3000.0);
-    CHECK(summary.sampling.pixel_evaluations == 1000);
+    CHECK(summary.sampling.moment_evaluations == 990);
+    CHECK(summary.sampling.pixel_evaluations == 10);
+    CHECK(warns(summary, "do not hold velocity.x"));
     for (const auto& scalar : summary.sampling.scalars)
         CHECK(scalar.name != "weight.dunlin.bright");
 }

@@ -1,0 +1,134 @@
+// SPDX-License-Identifier: GPL-2.0-or-later
+// Effective draws per core-second of the whole sampler on the benchmarks' reference problem, by
+// kernels; threads; and what storing costs. Everything in one run: read the ratios.
+#include <fmt/format.h>
+
+#include <algorithm>
+#include <chrono>
+
+#include "bench_problem.h"
+#include "deviascope/chain/chain_file.h"
+#include "deviascope/ensemble/diagnostics.h"
+#include "deviascope/ensemble/monitored.h"
+#include "deviascope/ensemble/sampler.h"
+#include "deviascope/model/posterior.h"
+#include "temporary_folder.h"
+
+using namespace deviascope;
+
+namespace {
+
+/// Keeps the draws where they can be diagnosed.
+class Keeper : public DrawSink {
+  public:
+    void warm_up(const WarmUp&) override {}
+    void block(const Draws& rows, const EnsembleState&) override {
+        if (draws.n_rows == 0) {
+            draws = rows;
+            return;
+        }
+        draws.n_rows += rows.n_rows;
+        draws.value.insert(draws.value.end(), rows.value.begin(), rows.value.end());
+    }
+    Draws draws;
+};
+
+double wall_seconds() {
+    using namespace std::chrono;
+    return duration<double>(steady_clock::now().time_since_epoch()).count();
+}
+
+double worst_effective_draws(const Posterior& target, const Draws& draws, std::int64_t every) {
+    double worst = 1e300;
+    for (const ScalarDiagnostics& scalar :
+         diagnose(monitored_scalars(target.parameters(), target.vectors()), draws, every, 1))
+        worst = std::min(worst, scalar.effective_draws());
+    return worst;
+}
+
+EnsembleOptions options_with(const KernelFractions& kernels, double wanted, int threads) {
+    EnsembleOptions options;
+    options.seed = 1;
+    options.kernels = kernels;
+    options.effective_draws = wanted;
+    options.threads = threads;
+    return options;
+}
+
+void compare_kernels(const Posterior& target) {
+    fmt::print("one thread, until 10,000 effective draws of the worst scalar\n");
+    fmt::print("  stretch  diff.-ev.  indep.   steps  effective draws  per core-second\n");
+    for (const KernelFractions& kernels : {KernelFractions{0.2, 0.3, 0.5},
+                                           KernelFractions{0.1, 0.2, 0.7},
+                                           KernelFractions{0.0, 0.1, 0.9},
+                                           KernelFractions{0.0, 0.0, 1.0},
+                                           KernelFractions{0.4, 0.6, 0.0},
+                                           KernelFractions{1.0, 0.0, 0.0}}) {
+        Keeper keeper;
+        const double begin = bench::cpu_seconds();
+        const Outcome outcome = sample(target, options_with(kernels, 10000, 1), keeper);
+        const double seconds = bench::cpu_seconds() - begin;
+        const double draws = worst_effective_draws(target, keeper.draws, outcome.store_every);
+        fmt::print("  {:7.2f}  {:9.2f}  {:6.2f}  {:6}  {:15.0f}  {:15.0f}{}\n",
+                   kernels.stretch,
+                   kernels.differential_evolution,
+                   kernels.independence,
+                   outcome.steps,
+                   draws,
+                   draws / seconds,
+                   outcome.end == Outcome::End::converged ? "" : "  (not converged)");
+    }
+}
+
+void compare_threads(const Posterior& target) {
+    std::vector<double> ratios;
+    for (int pair = 0; pair < 7; ++pair) {
+        double seconds[2] = {};
+        for (const int threads : {1, 2}) {
+            Keeper keeper;
+            const double begin = wall_seconds();
+            sample(target, options_with({}, 50000, threads), keeper);
+            seconds[threads - 1] = wall_seconds() - begin;
+        }
+        ratios.push_back(seconds[0] / seconds[1]);
+    }
+    fmt::print(
+        "two threads against one, whole sampler: {:.2f} times as fast (median of 7 pairs)\n",
+        bench::median(ratios));
+}
+
+void measure_storing(const Posterior& target, const Counts& counts) {
+    const EnsembleOptions options = options_with({}, 50000, 1);
+    Keeper keeper;
+    double begin = bench::cpu_seconds();
+    sample(target, options, keeper);
+    const double without = bench::cpu_seconds() - begin;
+    const test::TemporaryFolder folder;
+    begin = bench::cpu_seconds();
+    ChainWriter writer(ChainLock(folder / "chains.h5"),
+                       {},
+                       target.parameters(),
+                       target.vectors(),
+                       counts,
+                       options);
+    const Outcome outcome = sample(target, options, writer);
+    writer.finish(outcome, "");
+    const double with = bench::cpu_seconds() - begin;
+    const double megabytes = static_cast<double>(keeper.draws.value.size() * 8) / 1e6;
+    fmt::print(
+        "storing {:.1f} MB of draws: {:.0f} ms, {:.1f} ms a MB; sampling alone {:.2f} s\n",
+        megabytes,
+        1e3 * (with - without),
+        1e3 * (with - without) / megabytes,
+        without);
+}
+
+}  // namespace
+
+int main() {
+    const Counts counts = bench::make_counts(64, 1e7);
+    const Posterior target(counts, bench::make_model(Engine::automatic));
+    compare_kernels(target);
+    compare_threads(target);
+    measure_storing(target, counts);
+}
