@@ -71,20 +71,20 @@ void check_resumed_everywhere(const Target& target, EnsembleOptions options) {
     }
 }
 
-/// A target that offers a Gaussian.
-class Approximated : public VectorTarget {
-  public:
-    const CoordinateGaussian* approximation() const override { return &gaussian_; }
-
-  private:
-    CoordinateGaussian gaussian_{Eigen::Vector3d(0.1, -0.2, 0.3),
-                                 Eigen::Matrix3d::Identity() * 1.5};
-};
+/// The Gaussian that a target offers.
+CoordinateGaussian offered() {
+    return {Eigen::Vector3d(0.1, -0.2, 0.3), Eigen::Matrix3d::Identity() * 1.5};
+}
 
 }  // namespace
 
 TEST_CASE("a run taken up after any block ends as one that never stopped", "[ensemble]") {
     check_resumed_everywhere(VectorTarget(), in_small_blocks());
+}
+
+TEST_CASE("a run with the independence kernel is taken up as well", "[ensemble]") {
+    const ChainGaussian plainly(3);
+    check_resumed_everywhere(Approximated(plainly, offered()), in_small_blocks());
 }
 
 TEST_CASE("a run that is cut at max_steps is taken up to that end, between rows too",
@@ -97,7 +97,8 @@ TEST_CASE("a run that is cut at max_steps is taken up to that end, between rows 
 }
 
 TEST_CASE("the Gaussian a target offers is fixed with the warm-up", "[ensemble]") {
-    const Approximated target;
+    const ChainGaussian plainly(3);
+    const Approximated target(plainly, offered());
     MemorySink sink;
     sample(target, in_small_blocks(), sink);
     REQUIRE(sink.kept_warm_up.approximation.has_value());
