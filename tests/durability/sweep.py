@@ -61,7 +61,7 @@ select = { flux = [2.0, inf] }
 weight = { mean = 6.0, sd = 0.0 }
 """
 # Times of day, and what depends on where the run was cut: one row a block.
-DIFFERING = re.compile(r"/job@(started|ended)|/state/|/kernel_tally/(tried|taken)")
+DIFFERING = re.compile(r"/job@(started|ended)|/state/|/kernel_tally/(tried|taken)|/evaluations/times")
 
 
 def catalogue(n_rows):
@@ -126,7 +126,8 @@ def content(path):
             found["state"] = tuple(
                 file[place][-1].tobytes() for place in
                 ("/state/step", "/state/look", "/state/rows", "/state/coordinates",
-                 "/state/log_posterior", "/kernel_tally/tried", "/kernel_tally/taken"))
+                 "/state/log_posterior", "/kernel_tally/tried", "/kernel_tally/taken",
+                 "/evaluations/times"))
     return {place: value for place, value in found.items() if not DIFFERING.match(place)}
 
 

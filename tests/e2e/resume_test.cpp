@@ -90,7 +90,7 @@ TEST_CASE("a run that is interrupted and resumed ends as one that was not", "[ap
     }
 }
 
-TEST_CASE("--resume starts where nothing is, and makes only the summary where all is done",
+TEST_CASE("resuming starts where nothing is, and makes only the summary where all is done",
           "[app]") {
     const TemporaryFolder folder;
     write_job(folder, "effective_draws = 300\n");

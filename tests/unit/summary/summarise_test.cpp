@@ -52,7 +52,6 @@ struct Run {
         chain.outcome.tally.tried = {600, 400, 0};
         chain.outcome.tally.taken = {200, 100, 0};
         chain.state.evaluations = {{"moment", 990}, {"pixel", 10}};
-        chain.warm_up.warnings = {"The counts do not hold velocity.x."};
         add_draws(fill);
     }
 
@@ -112,7 +111,8 @@ bool warns(const Summary& summary, const std::string& words) {
 }  // namespace
 
 TEST_CASE("a summary against its definitions", "[summary]") {
-    const Run run(ordinary);
+    Run run(ordinary);
+    run.chain.warm_up.warnings = {"The counts do not hold velocity.x."};
     const Summary summary = run.summary();
     CHECK(summary.job == "example");
     const auto speed = sorted_lengths(run.chain, 0);
