@@ -92,10 +92,13 @@ ExitCode check_command(const CommandOptions& options) {
     for (const std::string& warning : job.warnings) terminal.warn(warning);
     terminal.say(fmt::format("{}: {}", job.name, job.title));
     const Counts counts = count_surveys(job, terminal);
-    const Posterior posterior(counts, job.model);
+    const Posterior posterior(counts, job.model, job.seed);
+    const std::vector<std::string> doubts = posterior.warnings();
+    for (const std::string& doubt : doubts) terminal.warn(doubt);
     const std::size_t n_warnings =
-        job.warnings.size() + warn_of_counts_and_priors(counts, posterior.space(), terminal);
-    terminal.say("\n" + table_of_bins(job, counts));
+        job.warnings.size() + doubts.size() +
+        warn_of_counts_and_priors(counts, posterior.space(), terminal);
+    terminal.say(fmt::format("\n{}", table_of_bins(job, counts)));
     terminal.say("Expected precision, from the information of these counts at zero dipoles:\n");
     terminal.say(table_of_vectors(forecast(counts, posterior.space())));
     terminal.say(line_of_sampling(job, posterior.space()));

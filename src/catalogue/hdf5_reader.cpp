@@ -40,7 +40,9 @@ Hdf5Reader::Hdf5Reader(const std::filesystem::path& path,
 std::string Hdf5Reader::checked_group(const std::string& group) const {
     const std::size_t first = group.find_first_not_of('/');
     if (first == std::string::npos) return "/";
-    const std::string path = "/" + group.substr(first, group.find_last_not_of('/') - first + 1);
+    const std::size_t last = group.find_last_not_of('/');
+    const std::string path =
+        fmt::format("/{}", std::string_view(group).substr(first, last - first + 1));
     if (file_.is_group(path)) return path;
     std::string present;
     for (const std::string& name : file_.names("/"))

@@ -12,22 +12,6 @@
 namespace deviascope {
 namespace {
 
-/// No dipole but the fixed ones; weights at their means; monopoles NaN, which stands for their
-/// maxima.
-Eigen::VectorXd isotropic_row(const ParameterSpace& space) {
-    Eigen::VectorXd row = Eigen::VectorXd::Zero(space.n_parameters());
-    for (std::size_t v = 0; v < space.vectors().size(); ++v)
-        if (const auto* fixed = std::get_if<FixedPrior>(&space.vector_prior(v).kind()))
-            row.segment<3>(space.vector_places()[v].parameter) = fixed->value;
-    for (std::size_t s = 0; s < space.options().surveys.size(); ++s) {
-        const Eigen::VectorXd& mean = space.options().surveys[s].weights.mean;
-        row.segment(space.weight_places()[s].parameter, mean.size()) = mean;
-    }
-    for (const BinTerm& term : space.terms())
-        row[term.monopole] = std::numeric_limits<double>::quiet_NaN();
-    return row;
-}
-
 /// Counts and priors on vectors and weights (first), and the counts on ln monopoles (last).
 struct Total {
     Eigen::MatrixXd information;
@@ -35,19 +19,23 @@ struct Total {
 };
 
 Total total_information(const Counts& counts, const ParameterSpace& space) {
-    const Eigen::VectorXd row = isotropic_row(space);
+    const FreeParameters parameters(counts, space);
+    const Eigen::VectorXd origin = Eigen::VectorXd::Zero(parameters.size());
     const Eigen::Index n_monopoles = std::ssize(space.terms());
+    Eigen::VectorXd row = parameters.row_at(origin);
+    row.tail(n_monopoles).setConstant(std::numeric_limits<double>::quiet_NaN());  // maxima
     const bool sampled = space.options().monopole.sampled;
     const Eigen::Index n_moved = space.n_coordinates() - (sampled ? n_monopoles : 0);
     const Eigen::Index n = n_moved + n_monopoles;
     Eigen::MatrixXd to_row = Eigen::MatrixXd::Zero(space.n_parameters(), n);
-    to_row.leftCols(n_moved) = free_directions(space).leftCols(n_moved);
+    to_row.leftCols(n_moved) = parameters.directions().leftCols(n_moved);
     for (Eigen::Index term = 0; term < n_monopoles; ++term)
         to_row(space.terms()[static_cast<std::size_t>(term)].monopole, n_moved + term) = 1.0;
     Total total;
     total.prior = Eigen::MatrixXd::Zero(n, n);
     total.prior.topLeftCorner(n_moved, n_moved) =
-        prior_information(space, row).information.topLeftCorner(n_moved, n_moved);
+        (prior_expansion(parameters, origin).information + bounded_information(parameters))
+            .topLeftCorner(n_moved, n_moved);
     total.information =
         to_row.transpose() * expected_information(counts, space, row) * to_row + total.prior;
     return total;
