@@ -144,7 +144,7 @@ TEST_CASE("a job of monopoles alone runs to its summary", "[app]") {
     const nlohmann::json summary = summary_in(folder / "out");
     CHECK(summary["bins"][0]["monopole"]["median"].get<double>() ==
           Approx(10000 / (4 * 3.14159265358979)).epsilon(0.002));
-    CHECK(summary["velocity"]["amplitude"]["median"] == 0.0);
+    CHECK(summary["velocity"]["amplitude"]["median"].is_null());  // it is a constant
 }
 
 TEST_CASE("a run that cannot converge says so in every output", "[app]") {
