@@ -5,7 +5,9 @@
 set -euo pipefail
 cd "$(dirname "$0")/.."
 
-odd=$(git ls-files | grep -vE '^\.' | cut -d/ -f1 | sort -u |
+# Where git is not at hand, what lies there, but for build folders.
+entries=$(git ls-files 2> /dev/null || ls -d [!b]* b[!u]* 2> /dev/null || true)
+odd=$(echo "$entries" | grep -vE '^\.' | cut -d/ -f1 | sort -u |
     grep -vxE 'CMakeLists.txt|README.md|DEVELOPERS.md|src|include|tests|chains-demo|priors' || true)
 
 find include/deviascope src -name '*.h' -o -name '*.cpp' | LC_ALL=C sort |
