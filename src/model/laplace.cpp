@@ -117,11 +117,13 @@ class Laplace::Fit {
     std::vector<std::string> take_warnings() { return std::move(warnings_); }
 
   private:
+    /// Their prior may have no information. A hundredth of what the counts give sets the scale
+    /// and stays below the curvature.
     void add_monopoles_to_metric(const std::vector<BinTotals>& totals) {
         const Eigen::Index first = mode_.size() - std::ssize(totals);
         for (std::size_t t = 0; t < totals.size(); ++t) {
             const Eigen::Index at = first + static_cast<Eigen::Index>(t);
-            metric_(at, at) += std::max(totals[t].sources, 1.0);
+            metric_(at, at) += 0.01 * std::max(totals[t].sources, 1.0);
         }
     }
 

@@ -5,6 +5,7 @@
 
 #include <algorithm>
 #include <chrono>
+#include <thread>
 
 #include "bench_problem.h"
 #include "deviascope/chain/chain_file.h"
@@ -80,21 +81,41 @@ void compare_kernels(const Posterior& target) {
     }
 }
 
+/// Wall seconds of so many threads that each spin through the same work.
+double spin(int threads) {
+    const double begin = wall_seconds();
+    std::vector<std::thread> spinning;
+    for (int thread = 0; thread < threads; ++thread)
+        spinning.emplace_back([] {
+            volatile double x = 1.0;
+            for (int k = 0; k < 300'000'000; ++k) x = x * 1.0000001;
+        });
+    for (std::thread& one : spinning) one.join();
+    return wall_seconds() - begin;
+}
+
+/// The sampler on one and two threads, and spin loops between them, which tell what two cores
+/// of this machine give at the time.
 void compare_threads(const Posterior& target) {
-    std::vector<double> ratios;
+    std::vector<double> gains, ceilings;
     for (int pair = 0; pair < 7; ++pair) {
-        double seconds[2] = {};
+        double seconds[2] = {}, spinning[2] = {};
         for (const int threads : {1, 2}) {
             Keeper keeper;
             const double begin = wall_seconds();
             sample(target, options_with({}, 50000, threads), keeper);
             seconds[threads - 1] = wall_seconds() - begin;
+            spinning[threads - 1] = spin(threads);
         }
-        ratios.push_back(seconds[0] / seconds[1]);
+        gains.push_back(seconds[0] / seconds[1]);
+        ceilings.push_back(2.0 * spinning[0] / spinning[1]);
     }
     fmt::print(
-        "two threads against one, whole sampler: {:.2f} times as fast (median of 7 pairs)\n",
-        bench::median(ratios));
+        "two threads against one, medians of 7 interleaved pairs: the sampler {:.2f} times as "
+        "fast, spin loops {:.2f}; ratio {:.2f}\n",
+        bench::median(gains),
+        bench::median(ceilings),
+        bench::median(gains) / bench::median(ceilings));
 }
 
 void measure_storing(const Posterior& target, const Counts& counts) {

@@ -222,3 +222,86 @@ TEST_CASE("dipoles that the bins hardly separate are sampled right", "[model]") 
                    estimate(b, mixed.diagnostics[k].effective_draws()));
     }
 }
+
+namespace {
+
+ModelOptions model_with(const VectorPrior& velocity, bool monopoles_sampled) {
+    ModelOptions model = synthetic::make_model(surveys(), velocity, modest);
+    model.monopole.sampled = monopoles_sampled;
+    return model;
+}
+
+struct Kind {
+    const char* name;
+    ModelOptions model;
+};
+
+std::vector<Kind> kinds() {
+    const Direction ahead = Direction(0.004, 0.002, -0.005).normalized();
+    std::vector<Kind> all = {
+        {"axis", model_with({"axis", AxisPrior{ahead, 0.05}}, false)},
+        {"axis, held by 0", model_with({"axis", AxisPrior{-ahead, 0.05}}, false)},
+        {"uniform-amplitude", model_with({"amplitude", UniformAmplitudePrior{0.05}}, false)},
+        {"monopoles sampled", model_with({"free", UniformVectorPrior{0.05}}, true)},
+        {"no motion", model_with({"none", FixedPrior{}}, false)},
+        {"shared dipole", model_with({"free", UniformVectorPrior{0.05}}, false)}};
+    all.back().model.intrinsic_shared = true;
+    return all;
+}
+
+}  // namespace
+
+TEST_CASE("every kind of prior gives one posterior under stretch alone and all kernels",
+          "[model]") {
+    const Counts counts = make_counts();
+    for (const Kind& kind : kinds()) {
+        const Posterior target(counts, kind.model);
+        const Sampled stretched = sample_with(target, stretch_alone, 2000);
+        const Sampled mixed = sample_with(target, all_kernels, 10000);
+        INFO(kind.name);
+        CHECK(mixed.outcome.end == Outcome::End::converged);
+        const auto independence = static_cast<std::size_t>(Kernel::independence);
+        CHECK(mixed.outcome.tally.taken[independence] * 10 >
+              mixed.outcome.tally.tried[independence]);
+        for (std::size_t k = 0; k < mixed.scalars.size(); ++k) {
+            INFO(mixed.scalars[k].name);
+            if (!(mixed.diagnostics[k].effective_draws() > 0.0)) continue;  // a constant
+            const std::vector<double> a = values_of(stretched, mixed.scalars[k]);
+            const std::vector<double> b = values_of(mixed, mixed.scalars[k]);
+            check_same(estimate(a, stretched.diagnostics[k].effective_draws()),
+                       estimate(b, mixed.diagnostics[k].effective_draws()));
+        }
+    }
+}
+
+TEST_CASE("the Laplace approximation has the mode and the curvature of the density",
+          "[model]") {
+    // Central differences of the log density itself, in units of the approximation's widths.
+    const Counts counts = make_counts();
+    for (const bool sampled : {false, true}) {
+        ModelOptions model = model_with({"free", UniformVectorPrior{0.05}}, sampled);
+        model.engine.engine = Engine::pixel;
+        const Posterior target(counts, model);
+        const CoordinateGaussian& gaussian = *target.approximation();
+        const Eigen::Index n = target.n_coordinates();
+        constexpr double step = 0.02;
+        const auto value = [&](const Eigen::VectorXd& standard) {
+            Eigen::VectorXd posterior(1), likelihood(1);
+            target.log_density(
+                gaussian.mean + gaussian.factor * standard, posterior, likelihood);
+            return posterior[0];
+        };
+        for (Eigen::Index i = 0; i < n; ++i)
+            for (Eigen::Index j = 0; j <= i; ++j) {
+                const Eigen::VectorXd di = step * Eigen::VectorXd::Unit(n, i);
+                const Eigen::VectorXd dj = step * Eigen::VectorXd::Unit(n, j);
+                const double curvature =
+                    (value(di + dj) - value(di - dj) - value(dj - di) + value(-di - dj)) /
+                    (4.0 * step * step);
+                INFO("coordinates " << i << " and " << j);
+                CHECK(curvature == Approx(i == j ? -1.0 : 0.0).margin(2e-3));
+                if (i == j)
+                    CHECK((value(di) - value(-di)) / (2.0 * step) == Approx(0.0).margin(2e-3));
+            }
+    }
+}
