@@ -66,7 +66,7 @@ for command in run check count sample summarise mock; do
     done
 done
 
-quietly cmake -S "$here/consumer" -B "$work/consumer" -DCMAKE_PREFIX_PATH="$work/usr" \
+quietly cmake -G Ninja -S "$here/consumer" -B "$work/consumer" -DCMAKE_PREFIX_PATH="$work/usr" \
     -DCMAKE_CXX_COMPILER="$compiler" -DCMAKE_CXX_FLAGS=-O0
 quietly cmake --build "$work/consumer"
 cp "$work/usr/share/deviascope/priors/free-velocity.toml" "$work/only-installed.toml"
