@@ -71,6 +71,23 @@ void Engines::add_pixel_sums(const Eigen::Ref<const Eigen::MatrixXd>& rows,
     }
 }
 
+double log_likelihood(const ParameterSpace& space,
+                      const std::vector<BinTotals>& totals,
+                      const Eigen::Ref<const Eigen::MatrixXd>& rows,
+                      const Engines::Sums& sums,
+                      Eigen::Index walker) {
+    double sum = 0.0;
+    for (std::size_t t = 0; t < totals.size(); ++t) {
+        const auto term = static_cast<Eigen::Index>(t);
+        sum += log_likelihood_of(totals[t],
+                                 space.options().monopole,
+                                 rows(space.terms()[t].monopole, walker),
+                                 sums.balance(term, walker),
+                                 sums.log_expected(term, walker));
+    }
+    return sum;
+}
+
 BinExpansion Engines::expansion(const Counts& counts,
                                 std::size_t term,
                                 const Eigen::Ref<const Eigen::VectorXd>& row) const {

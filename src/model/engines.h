@@ -39,4 +39,12 @@ class Engines {
     std::optional<MomentEngine> moment_;
 };
 
+/// ln L of one walker: its bins added in job order.
+/// @param rows  parameters, one walker a column; sampled monopoles are read
+double log_likelihood(const ParameterSpace& space,
+                      const std::vector<BinTotals>& totals,
+                      const Eigen::Ref<const Eigen::MatrixXd>& rows,
+                      const Engines::Sums& sums,
+                      Eigen::Index walker);
+
 }  // namespace deviascope

@@ -91,26 +91,12 @@ LogPosterior::Expansion LogPosterior::at(const Eigen::Ref<const Eigen::VectorXd>
     return all;
 }
 
-double LogPosterior::log_likelihood(const Eigen::VectorXd& row) const {
-    const ParameterSpace& space = parameters_.space();
-    const Engines::Sums sums = engines_.sums(row);
-    double sum = 0.0;
-    for (std::size_t t = 0; t < totals_.size(); ++t) {
-        const auto term = static_cast<Eigen::Index>(t);
-        sum += log_likelihood_of(totals_[t],
-                                 space.options().monopole,
-                                 row[space.terms()[t].monopole],
-                                 sums.balance(term, 0),
-                                 sums.log_expected(term, 0));
-    }
-    return sum;
-}
-
 double LogPosterior::value(const Eigen::Ref<const Eigen::VectorXd>& free) const {
     const Eigen::VectorXd row = parameters_.row_at(free);
     if (!parameters_.space().is_inside_walls(row))
         return -std::numeric_limits<double>::infinity();
-    double value = prior_expansion(parameters_, free).value + log_likelihood(row);
+    double value = prior_expansion(parameters_, free).value +
+                   log_likelihood(parameters_.space(), totals_, row, engines_.sums(row), 0);
     for (const Beyond& one : beyond(free))
         value -= 0.5 * stiffness_[one.vector] * one.distance * one.distance;
     return value;

@@ -40,7 +40,6 @@ class LogPosterior {
     std::vector<double>& stiffness() { return stiffness_; }
 
   private:
-    double log_likelihood(const Eigen::VectorXd& row) const;
     void add_counts(const Eigen::Ref<const Eigen::VectorXd>& free, Expansion& all) const;
     void add_springs(const Eigen::Ref<const Eigen::VectorXd>& free, Expansion& all) const;
 

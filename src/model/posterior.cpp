@@ -26,23 +26,6 @@ struct Posterior::Parts {
           engines(counts, space),
           laplace(counts, space, engines, seed) {}
 
-    /// ln L of one walker: bins added in job order.
-    double log_likelihood(const Eigen::MatrixXd& rows,
-                          const Engines::Sums& sums,
-                          Eigen::Index walker) const {
-        const MonopolePrior& prior = space.options().monopole;
-        double sum = 0.0;
-        for (std::size_t t = 0; t < totals.size(); ++t) {
-            const auto term = static_cast<Eigen::Index>(t);
-            sum += log_likelihood_of(totals[t],
-                                     prior,
-                                     rows(space.terms()[t].monopole, walker),
-                                     sums.balance(term, walker),
-                                     sums.log_expected(term, walker));
-        }
-        return sum;
-    }
-
     ParameterSpace space;
     std::vector<BinTotals> totals;
     Engines engines;
@@ -87,7 +70,8 @@ void Posterior::log_density(const Eigen::Ref<const Eigen::MatrixXd>& coordinates
     const Engines::Sums sums = parts_->engines.sums(rows);
     for (Eigen::Index row = 0; row < rows.cols(); ++row) {
         const Eigen::Index walker = inside[static_cast<std::size_t>(row)];
-        log_likelihood[walker] = parts_->log_likelihood(rows, sums, row);
+        log_likelihood[walker] =
+            deviascope::log_likelihood(space(), parts_->totals, rows, sums, row);
         log_posterior[walker] += log_likelihood[walker];
     }
     parts_->by_moments.fetch_add(sums.by_moments, std::memory_order_relaxed);

@@ -90,10 +90,15 @@ using test::bad_input::base_job;
 using test::bad_input::sound_rows;
 using test::bad_input::write_sound_inputs;
 
-/// The sound job with one text replaced by another.
-Case job_case(const std::string& name, const std::string& from, const std::string& to) {
-    return {name, [from, to](const TemporaryFolder& folder) {
+/// The sound job with one text replaced by another, and files that `make` writes beside it.
+Case job_case(
+    const std::string& name,
+    const std::string& from,
+    const std::string& to,
+    const std::function<void(const TemporaryFolder&)>& make = [](const TemporaryFolder&) {}) {
+    return {name, [from, to, make](const TemporaryFolder& folder) {
                 write_sound_inputs(folder);
+                make(folder);
                 const std::string changed = replaced(base_job, from, to);
                 REQUIRE(changed != base_job);
                 folder.write("job.toml", changed);
@@ -113,41 +118,24 @@ Case file_case(const std::string& name,
                const std::string& file,
                const std::function<void(const TemporaryFolder&)>& make,
                const std::string& table = "") {
-    return {name, [file, make, table](const TemporaryFolder& folder) {
-                write_sound_inputs(folder);
-                make(folder);
-                const std::string more = table.empty() ? "" : "\ntable = " + table;
-                folder.write("job.toml",
-                             replaced(base_job, "\"dunlin.csv\"", "\"" + file + "\"" + more));
-            }};
+    const std::string more = table.empty() ? "" : "\ntable = " + table;
+    return job_case(name, "\"dunlin.csv\"", "\"" + file + "\"" + more, make);
 }
 
 /// The sound job with an exposure that `make` writes as exposure.fits.
 Case exposure_case(const std::string& name,
                    const std::function<void(const TemporaryFolder&)>& make,
                    const std::string& more = "") {
-    return {name, [make, more](const TemporaryFolder& folder) {
-                write_sound_inputs(folder);
-                make(folder);
-                folder.write("job.toml",
-                             replaced(base_job,
-                                      "frame = \"icrs\"\ncolumns",
-                                      "frame = \"icrs\"\nexposure = \"exposure.fits\"" + more +
-                                          "\ncolumns"));
-            }};
+    return job_case(name,
+                    "frame = \"icrs\"\ncolumns",
+                    "frame = \"icrs\"\nexposure = \"exposure.fits\"" + more + "\ncolumns",
+                    make);
 }
 
 /// The sound job whose bin is a count map that `make` writes as counts.fits.
 Case counts_case(const std::string& name,
                  const std::function<void(const TemporaryFolder&)>& make) {
-    return {name, [make](const TemporaryFolder& folder) {
-                write_sound_inputs(folder);
-                make(folder);
-                folder.write("job.toml",
-                             replaced(base_job,
-                                      "select = { flux = [1.0, 2.0] }",
-                                      "counts = \"counts.fits\""));
-            }};
+    return job_case(name, "select = { flux = [1.0, 2.0] }", "counts = \"counts.fits\"", make);
 }
 
 }  // namespace

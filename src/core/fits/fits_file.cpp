@@ -12,32 +12,12 @@
 #include <limits>
 #include <system_error>
 
+#include "core/fits/library_call.h"
 #include "deviascope/core/error.h"
 
 namespace deviascope::fits {
 
 namespace {
-
-fitsfile* raw(const Handle& handle) {
-    return static_cast<fitsfile*>(handle.get());
-}
-
-/// The library's words for a failed call: status text and the first message of its stack.
-std::string library_words(int status) {
-    std::array<char, FLEN_STATUS> text{};
-    std::array<char, FLEN_ERRMSG> detail{};
-    fits_get_errstatus(status, text.data());
-    fits_read_errmsg(detail.data());
-    fits_clear_errmsg();
-    std::string words = fmt::format("CFITSIO says \"{}\"", text.data());
-    if (detail[0] != '\0') words += fmt::format(" ({})", detail.data());
-    return words;
-}
-
-/// The library skips leading blanks and expands `~` even in literal names; `./` stops both.
-std::string literal_name(const std::filesystem::path& path) {
-    return path.is_absolute() ? path.string() : "./" + path.string();
-}
 
 void check_read(int status,
                 const std::filesystem::path& path,
@@ -139,18 +119,6 @@ std::string unquoted(const std::string& value) {
 }
 
 }  // namespace
-
-void Closer::operator()(void* file) const noexcept {
-    int status = 0;
-    fits_close_file(static_cast<fitsfile*>(file), &status);
-    fits_clear_errmsg();
-}
-
-std::string library_version() {
-    return fmt::format("CFITSIO {}.{}.{}", CFITSIO_MAJOR, CFITSIO_MINOR, CFITSIO_MICRO);
-}
-
-// ---- reading ----
 
 std::vector<int> binary_tables(const std::filesystem::path& path) {
     return table_numbers(open_for_reading(path), path);
@@ -388,124 +356,6 @@ std::optional<std::int64_t> Table::integer_card(const std::string& keyword) cons
                           "a whole number",
                           "correct the header"});
     return std::int64_t(number);
-}
-
-// ---- writing ----
-
-TableWriter::TableWriter(const std::filesystem::path& path,
-                         const std::string& extension_name,
-                         const std::vector<NewColumn>& columns)
-    : path_(path), temporary_(path.string() + ".partial") {
-    std::error_code ignored;
-    std::filesystem::remove(temporary_, ignored);  // left by a run that was killed
-    int status = 0;
-    fitsfile* file = nullptr;
-    fits_create_diskfile(&file, literal_name(temporary_).c_str(), &status);
-    file_.reset(file);
-    check(status);
-    std::vector<char*> names, forms, units;
-    for (const NewColumn& column : columns) {  // the library reads them, through char*
-        names.push_back(const_cast<char*>(column.name.c_str()));
-        forms.push_back(const_cast<char*>(column.form.c_str()));
-        units.push_back(const_cast<char*>(column.unit.c_str()));
-    }
-    fits_create_tbl(file,
-                    BINARY_TBL,
-                    0,
-                    int(columns.size()),
-                    names.data(),
-                    forms.data(),
-                    units.data(),
-                    extension_name.c_str(),
-                    &status);
-    if (status != 0) {
-        file_.reset();
-        std::filesystem::remove(temporary_, ignored);
-    }
-    check(status);
-}
-
-TableWriter::~TableWriter() {
-    if (!file_) return;
-    file_.reset();
-    std::error_code ignored;
-    std::filesystem::remove(temporary_, ignored);
-}
-
-void TableWriter::check(int status) const {
-    if (status == 0) return;
-    throw OutputError({path_.string(),
-                       library_words(status),
-                       "",
-                       "check that the folder exists, may be written to and has space"});
-}
-
-void TableWriter::card(const std::string& keyword,
-                       const std::string& value,
-                       const std::string& comment) {
-    int status = 0;
-    fits_update_key_longstr(
-        raw(file_), keyword.c_str(), value.c_str(), comment.c_str(), &status);
-    check(status);
-}
-
-void TableWriter::card(const std::string& keyword,
-                       std::int64_t value,
-                       const std::string& comment) {
-    int status = 0;
-    fits_update_key_lng(raw(file_), keyword.c_str(), value, comment.c_str(), &status);
-    check(status);
-}
-
-void TableWriter::card(const std::string& keyword, double value, const std::string& comment) {
-    int status = 0;
-    fits_update_key_dbl(raw(file_), keyword.c_str(), value, -15, comment.c_str(), &status);
-    check(status);
-}
-
-void TableWriter::write(std::size_t column,
-                        std::int64_t first,
-                        std::span<const double> values) {
-    int status = 0;
-    fits_write_col_dbl(raw(file_),
-                       int(column) + 1,
-                       first + 1,
-                       1,
-                       LONGLONG(values.size()),
-                       const_cast<double*>(values.data()),
-                       &status);
-    check(status);
-}
-
-void TableWriter::write(std::size_t column,
-                        std::int64_t first,
-                        std::span<const std::int64_t> values) {
-    static_assert(sizeof(LONGLONG) == sizeof(std::int64_t));
-    int status = 0;
-    fits_write_col(raw(file_),
-                   TLONGLONG,
-                   int(column) + 1,
-                   first + 1,
-                   1,
-                   LONGLONG(values.size()),
-                   const_cast<std::int64_t*>(values.data()),
-                   &status);
-    check(status);
-}
-
-void TableWriter::close() {
-    ensure(file_ != nullptr, "a FITS table is closed once");
-    int status = 0;
-    fits_close_file(static_cast<fitsfile*>(file_.release()), &status);
-    std::error_code failure;
-    if (status == 0) {
-        std::filesystem::rename(temporary_, path_, failure);
-        if (!failure) return;
-    }
-    std::error_code ignored;
-    std::filesystem::remove(temporary_, ignored);
-    check(status);
-    throw OutputError({path_.string(), failure.message(), "", "check what is at this path"});
 }
 
 }  // namespace deviascope::fits
