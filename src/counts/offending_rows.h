@@ -7,6 +7,7 @@
 #include <cstdint>
 #include <string>
 
+#include "deviascope/core/error.h"
 #include "deviascope/counts/survey_input.h"
 
 namespace deviascope {
@@ -37,5 +38,15 @@ class OffendingRows {
     std::int64_t n_ = 0;
     std::string first_;
 };
+
+/// Stops a run where positions are bad and the survey does not say to skip them.
+/// Errors: InputError: count and first five.
+inline void refuse_bad_positions(const SurveyInput& survey, const OffendingRows& rows) {
+    if (rows.size() == 0 || survey.bad_rows == BadRows::skip) return;
+    throw InputError({"survey " + survey.name,
+                      rows.found("a position that is missing or out of range"),
+                      "lon -180 … 360 and lat -90 … 90, in degrees",
+                      "correct the rows, or set bad_rows = \"skip\" to leave them out"});
+}
 
 }  // namespace deviascope

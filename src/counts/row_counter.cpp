@@ -6,7 +6,6 @@
 #include <algorithm>
 
 #include "deviascope/core/error.h"
-#include "sky/many_directions.h"
 
 namespace deviascope {
 
@@ -14,20 +13,12 @@ namespace {
 
 constexpr std::size_t none = static_cast<std::size_t>(-1);
 
-/// Comparisons that NaN fails.
-bool is_position(double lon_deg, double lat_deg) {
-    return lon_deg >= -180.0 && lon_deg <= 360.0 && lat_deg >= -90.0 && lat_deg <= 90.0;
-}
-
 }  // namespace
 
 RowCounter::RowCounter(const Selection& selection,
                        CutTable& cuts,
                        std::vector<BinTally>& tallies)
-    : selection_(selection),
-      to_job_(rotation(selection.input.frame, selection.frame)),
-      cuts_(cuts),
-      tallies_(tallies) {}
+    : selection_(selection), places_(selection), cuts_(cuts), tallies_(tallies) {}
 
 void RowCounter::add(const TableChunk& chunk,
                      const std::filesystem::path& path,
@@ -35,7 +26,8 @@ void RowCounter::add(const TableChunk& chunk,
     first_row_ = chunk.first_row;
     path_ = &path;
     reader_ = &reader;
-    locate(chunk);
+    places_.locate(chunk);
+    watch_positions(chunk);
     find_bins(chunk);
     const auto n_rows = static_cast<std::size_t>(chunk.n_rows());
     for (std::size_t row = 0; row < n_rows; ++row) {
@@ -49,21 +41,11 @@ void RowCounter::add(const TableChunk& chunk,
     cuts_.report.rows_read += chunk.n_rows();
 }
 
-/// Where the rows of the chunk are: directions in the job's frame, pixels, holes.
-void RowCounter::locate(const TableChunk& chunk) {
+void RowCounter::watch_positions(const TableChunk& chunk) {
     const std::vector<double>& lon = chunk.column[selection_.rows.lon];
     const std::vector<double>& lat = chunk.column[selection_.rows.lat];
-    direction_.resize(lon.size());
-    pixel_.resize(lon.size());
-    is_bad_.resize(lon.size());
-    directions_of(lon, lat, to_job_, direction_);
-    for (std::size_t row = 0; row < lon.size(); ++row) {
-        is_bad_[row] = !is_position(lon[row], lat[row]);
-        if (!is_bad_[row]) positions_.add(lon[row], lat[row]);
-    }
-    selection_.grid.pixels_at(direction_, pixel_);
-    is_hole_.resize(lon.size());
-    selection_.sky.find_holes(direction_, is_hole_);
+    for (std::size_t row = 0; row < lon.size(); ++row)
+        if (!places_.is_bad(row)) positions_.add(lon[row], lat[row]);
 }
 
 /// Which bins the rows of the chunk fall in, column after column.
@@ -90,7 +72,7 @@ void RowCounter::find_bins(const TableChunk& chunk) {
 
 /// The line of the table of cuts that removes a row; none: the row is counted.
 std::size_t RowCounter::cut_of(const TableChunk& chunk, std::size_t row) {
-    if (is_bad_[row]) {
+    if (places_.is_bad(row)) {
         bad_positions_.add([&] {
             return fmt::format("{} (lon {}, lat {})",
                                place(row),
@@ -103,10 +85,10 @@ std::size_t RowCounter::cut_of(const TableChunk& chunk, std::size_t row) {
     if (verdict.kind == Verdict::Kind::outside) return cuts_.select[verdict.range];
     if (verdict.kind == Verdict::Kind::missing)
         return cuts_.missing[selection_.rows.survey[verdict.range].property];
-    const std::int32_t sky_cut = selection_.sky.removed_by(pixel_[row]);
+    const std::int32_t sky_cut = places_.sky_cut(row);
     if (sky_cut != SkyCuts::kept)
         return cuts_.first_sky_cut + static_cast<std::size_t>(sky_cut);
-    if (is_hole_[row]) return cuts_.hole;
+    if (places_.is_hole(row)) return cuts_.hole;
     return cut_by_bins(chunk, row);
 }
 
@@ -115,9 +97,9 @@ std::size_t RowCounter::cut_by_bins(const TableChunk& chunk, std::size_t row) {
     if (n_bins_[row] == 0) return cut_of_homeless(chunk, row);
     const std::size_t bin =
         n_bins_[row] == 1 ? static_cast<std::size_t>(bin_[row]) : exposed_bin(chunk, row);
-    if (!selection_.sky.exposes(bin, pixel_[row], direction_[row]))
+    if (!selection_.sky.exposes(bin, places_.pixel(row), places_.direction(row)))
         return cuts_.bin_exposure[bin];
-    tallies_[bin].add(pixel_[row]);
+    tallies_[bin].add(places_.pixel(row));
     return none;
 }
 
@@ -140,7 +122,7 @@ std::size_t RowCounter::exposed_bin(const TableChunk& chunk, std::size_t row) {
     for (const std::size_t bin : selection_.rows.selecting_bins) {
         if (!holds(selection_.rows.bins[bin], chunk, row)) continue;
         if (first == none) first = bin;
-        if (!selection_.sky.exposes(bin, pixel_[row], direction_[row])) continue;
+        if (!selection_.sky.exposes(bin, places_.pixel(row), places_.direction(row))) continue;
         if (home == none) {
             home = bin;
             continue;
@@ -161,16 +143,10 @@ std::string RowCounter::place(std::size_t row) const {
 }
 
 void RowCounter::refuse_offending_rows() const {
-    const std::string survey = "survey " + selection_.input.name;
-    if (bad_positions_.size() > 0 && selection_.input.bad_rows == BadRows::stop) {
-        throw InputError({survey,
-                          bad_positions_.found("a position that is missing or out of range"),
-                          "lon -180 … 360 and lat -90 … 90, in degrees",
-                          "correct the rows, or set bad_rows = \"skip\" to leave them out"});
-    }
+    refuse_bad_positions(selection_.input, bad_positions_);
     if (in_two_bins_.size() > 0) {
         throw InputError(
-            {survey,
+            {"survey " + selection_.input.name,
              in_two_bins_.found("a place in two bins"),
              "bins of one survey share no source",
              "make the ranges of the bins disjoint: they are half-open, [lo, hi)"});

@@ -2,7 +2,6 @@
 // COUNTS (private): rows of a catalogue to counts
 #pragma once
 
-#include <Eigen/Core>
 #include <filesystem>
 #include <vector>
 
@@ -10,17 +9,9 @@
 #include "counts/cut_table.h"
 #include "counts/offending_rows.h"
 #include "counts/position_watch.h"
+#include "counts/row_places.h"
 
 namespace deviascope {
-
-/// What rows are judged by.
-struct Selection {
-    const SurveyInput& input;
-    const RowSelection& rows;
-    const SkyCuts& sky;
-    const Pixelisation& grid;
-    Frame frame;
-};
 
 /// Judges rows, chunk after chunk, and counts those that are kept in the bin they fall in.
 class RowCounter {
@@ -41,7 +32,7 @@ class RowCounter {
     void refuse_offending_rows() const;
 
   private:
-    void locate(const TableChunk& chunk);
+    void watch_positions(const TableChunk& chunk);
     void find_bins(const TableChunk& chunk);
     std::size_t cut_of(const TableChunk& chunk, std::size_t row);
     std::size_t cut_by_bins(const TableChunk& chunk, std::size_t row);
@@ -50,7 +41,7 @@ class RowCounter {
     std::string place(std::size_t row) const;
 
     const Selection selection_;
-    const Eigen::Matrix3d to_job_;
+    RowPlaces places_;
     CutTable& cuts_;
     std::vector<BinTally>& tallies_;
     PositionWatch positions_;
@@ -58,10 +49,6 @@ class RowCounter {
     OffendingRows in_two_bins_;
 
     // of the chunk at hand
-    std::vector<Direction> direction_;  // in the job's frame; of bad positions arbitrary
-    std::vector<std::int64_t> pixel_;
-    std::vector<char> is_bad_;
-    std::vector<char> is_hole_;
     std::vector<std::int32_t> n_bins_;  // whose ranges hold the row
     std::vector<std::int32_t> bin_;     // the last of these
     std::int64_t first_row_ = 0;

@@ -13,7 +13,7 @@
 #include "deviascope/core/error.h"
 #include "deviascope/core/parallel.h"
 #include "deviascope/core/random.h"
-#include "deviascope/mock/boost.h"
+#include "deviascope/sky/boost.h"
 #include "deviascope/mock/exposure.h"
 
 namespace deviascope {

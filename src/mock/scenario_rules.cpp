@@ -5,7 +5,7 @@
 #include <cmath>
 #include <set>
 
-#include "deviascope/mock/boost.h"
+#include "deviascope/sky/boost.h"
 #include "deviascope/mock/scenario.h"
 #include "deviascope/sky/pixelisation.h"
 

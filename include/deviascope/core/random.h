@@ -18,8 +18,11 @@ enum class Purpose : std::uint64_t {
     laplace_draw = 5,     ///< (0, draw, 0)
     prior_draw = 6,       ///< (vector, draw, 0)
     mock_source = 7,      ///< (source, survey, attempt)
-    bootstrap = 8,        ///< (source, replicate, attempt)
+    bootstrap = 8,        ///< (source, survey, block of replicates)
     mock_population = 9,  ///< (0, survey, 0): total numbers
+    spectral_index = 20,  ///< (source, survey, 0): where the catalogue has none
+    sky_experiment = 21,  ///< (source, survey, 0)
+    added_scatter = 22,   ///< (source, survey, level)
     test = 1000           ///< tests only
 };
 

@@ -58,7 +58,7 @@ using MockSink = std::function<void(const MockRows&)>;
 ///    leaving out what the survey does not have: cosine of the angle to the intrinsic dipole;
 ///    azimuth about it; alpha (normal); flux (uniform); redshift (two uniforms); magnitude
 ///    (uniform); size (normal); then
-/// 3. it is aberrated and its properties are Doppler shifted (boost.h); scatter is drawn for
+/// 3. it is aberrated and its properties are Doppler shifted (sky/boost.h); scatter is drawn for
 ///    flux, redshift, magnitude, size (normals); values are rounded to single precision where
 ///    the catalogue is;
 /// 4. `keep` and the exclusions are judged, the latter at the source's own observed position;

@@ -1,5 +1,5 @@
 // SPDX-License-Identifier: GPL-2.0-or-later
-// MOCK: beside the flow; skies with known truth
+// SKY: where things are, no sources
 #pragma once
 
 #include <Eigen/Core>

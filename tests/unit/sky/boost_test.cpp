@@ -1,5 +1,5 @@
 // SPDX-License-Identifier: GPL-2.0-or-later
-#include "deviascope/mock/boost.h"
+#include "deviascope/sky/boost.h"
 
 #include <catch2/catch.hpp>
 #include <cmath>
@@ -15,7 +15,7 @@ constexpr double digits15 = 3e-15;  // the tables below have 15 digits
 
 }  // namespace
 
-TEST_CASE("aberration and Doppler factor follow the exact relations", "[mock]") {
+TEST_CASE("aberration and Doppler factor follow the exact relations", "[sky]") {
     // mu' = (mu + beta)/(1 + beta mu), delta = gamma (1 + beta mu) of special relativity,
     // evaluated with 40 digits (mpmath) and rounded to 15.
     struct Row {
@@ -48,7 +48,7 @@ TEST_CASE("aberration and Doppler factor follow the exact relations", "[mock]") 
     }
 }
 
-TEST_CASE("the boosted properties of one source have 14 digits", "[mock]") {
+TEST_CASE("the boosted properties of one source have 14 digits", "[sky]") {
     // Source at 60 deg from the boost; S delta^(1+alpha), m - 2.5 (1+alpha) log10 delta,
     // (1+z)/delta, s/delta, evaluated with 40 digits (mpmath).
     struct Row {
@@ -85,7 +85,7 @@ TEST_CASE("the boosted properties of one source have 14 digits", "[mock]") {
     }
 }
 
-TEST_CASE("a boost undone leaves the source where it was", "[mock]") {
+TEST_CASE("a boost undone leaves the source where it was", "[sky]") {
     for (const double beta : {0.0, 1e-9, 1.2e-3, 0.5, 0.99}) {
         const Eigen::Vector3d velocity = beta * Direction(2.0, -1.0, 2.0).normalized();
         const Boost boost(velocity);

@@ -1,0 +1,122 @@
+// SPDX-License-Identifier: GPL-2.0-or-later
+#include "weights/scatter_free.h"
+
+#include <Eigen/QR>
+#include <algorithm>
+#include <cmath>
+
+#include "deviascope/core/parallel.h"
+#include "deviascope/core/random.h"
+
+namespace deviascope {
+
+namespace {
+constexpr std::array<double, 4> added_variances = {0.5, 1.0, 1.5, 2.0};
+constexpr std::size_t rows_a_slice = 4096;
+}  // namespace
+
+ScatterFreeTally::ScatterFreeTally(const Boxes& boxes,
+                                   const SourcePhysics& physics,
+                                   const WeighOptions& options,
+                                   bool index_varies)
+    : boxes_(boxes), options_(options) {
+    for (const Dimension& dimension : boxes.dimension) {
+        const auto known = physics.scatter.find(dimension.property);
+        const bool counts =
+            known != physics.scatter.end() && dimension.kind != Displaced::not_at_all;
+        error_.push_back(counts ? known->second : PropertyError{});
+    }
+    if (!has_scatter()) return;
+    TallyOptions tally{options.seed, options.survey, 0, options.threads, index_varies};
+    for (const double lambda : added_variances)
+        levels_.push_back({lambda, CrossingTally(boxes, tally)});
+}
+
+bool ScatterFreeTally::has_scatter() const {
+    return std::ranges::any_of(error_, [](const PropertyError& e) { return e.amount > 0.0; });
+}
+
+/// Scatter in y of a source of a value.
+double ScatterFreeTally::sd_of(std::size_t dimension, double value) const {
+    const PropertyError& error = error_[dimension];
+    switch (boxes_.dimension[dimension].kind) {
+        case Displaced::redshift:
+            return error.times_one_plus_z ? error.amount : error.amount / (1.0 + value);
+        case Displaced::size:
+            return error.amount / value;
+        default:
+            return error.amount;
+    }
+}
+
+void ScatterFreeTally::add(const SourceBatch& batch) {
+    const std::size_t n_rows = batch.kept.size();
+    std::vector<std::vector<double>> displacement(error_.size());
+    for (std::size_t d = 0; d < error_.size(); ++d)
+        if (error_[d].amount > 0.0) displacement[d].resize(n_rows);
+    parallel_for((n_rows + rows_a_slice - 1) / rows_a_slice, options_.threads, [&](auto slice) {
+        const std::size_t end = std::min((slice + 1) * rows_a_slice, n_rows);
+        for (std::size_t row = slice * rows_a_slice; row < end; ++row) {
+            Stream stream(options_.seed,
+                          Purpose::added_scatter,
+                          static_cast<std::uint64_t>(batch.first_source) + row,
+                          options_.survey,
+                          0);
+            for (std::size_t d = 0; d < error_.size(); ++d)
+                if (error_[d].amount > 0.0)
+                    displacement[d][row] = sd_of(d, batch.value[d][row]) * normal(stream);
+        }
+    });
+    for (Level& level : levels_) {
+        SourceBatch scattered = batch;
+        std::vector<std::vector<double>> value(error_.size());
+        for (std::size_t d = 0; d < error_.size(); ++d) {
+            if (displacement[d].empty()) continue;
+            const Displaced kind = boxes_.dimension[d].kind;
+            for (std::size_t row = 0; row < n_rows; ++row)
+                value[d].push_back(
+                    value_at(kind,
+                             coordinate_of(kind, batch.value[d][row]) +
+                                 std::sqrt(level.lambda) * displacement[d][row]));
+            scattered.value[d] = value[d];
+        }
+        level.tally.add(scattered);
+    }
+}
+
+double ScatterFreeTally::weight(std::size_t box,
+                                const WeightEstimator& observed,
+                                double one_plus_alpha) const {
+    const auto n = std::ssize(levels_) + 1;
+    Eigen::MatrixXd powers(n, 3);
+    Eigen::VectorXd weights(n);
+    powers.row(0) << 1.0, 0.0, 0.0;
+    weights[0] = observed.weight(box, 0, WindowWidth::chosen);
+    for (Eigen::Index i = 1; i < n; ++i) {
+        const Level& level = levels_[static_cast<std::size_t>(i - 1)];
+        const WeightEstimator estimator(boxes_, level.tally, one_plus_alpha, observed);
+        powers.row(i) << 1.0, level.lambda, level.lambda * level.lambda;
+        weights[i] = estimator.weight(box, 0, WindowWidth::chosen);
+    }
+    if (!weights.allFinite()) return weights.sum();
+    const Eigen::VectorXd parabola = powers.colPivHouseholderQr().solve(weights);
+    return parabola[0] - parabola[1] + parabola[2];
+}
+
+ScatterShift shift_of_velocity(const std::vector<double>& n,
+                               const std::vector<double>& observed,
+                               const std::vector<double>& assumed) {
+    double total = 0.0, mean_observed = 0.0, mean_assumed = 0.0, product = 0.0, square = 0.0;
+    for (std::size_t b = 0; b < n.size(); ++b) {
+        total += n[b];
+        mean_observed += n[b] * observed[b];
+        mean_assumed += n[b] * assumed[b];
+        product += n[b] * observed[b] * assumed[b];
+        square += n[b] * assumed[b] * assumed[b];
+    }
+    const double across = product - mean_observed * mean_assumed / total;
+    const double spread = square - mean_assumed * mean_assumed / total;
+    return {across / spread, product / square};
+}
+
+}  // namespace deviascope
