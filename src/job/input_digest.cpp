@@ -6,6 +6,7 @@
 
 #include "deviascope/core/digest.h"
 #include "deviascope/core/error.h"
+#include "deviascope/core/version.h"
 #include "deviascope/job/job.h"
 
 namespace deviascope {
@@ -49,6 +50,7 @@ class Canonical {
         add(bin.exposure);
     }
     void add(const SurveyInput& survey);
+    void add(const SurveyWeighing& weighing);
 
     std::string digest() const { return digest_of(text_); }
 
@@ -101,6 +103,19 @@ void Canonical::add(const SurveyInput& survey) {
     add(survey.bins);
 }
 
+void Canonical::add(const SurveyWeighing& weighing) {
+    add(weighing.physics.alpha ? weighing.physics.alpha->mean : 0.0);
+    add(weighing.physics.alpha ? weighing.physics.alpha->sd : -1.0);
+    add(static_cast<double>(weighing.physics.scatter.size()));
+    for (const auto& [property, error] : weighing.physics.scatter) {
+        add(property);
+        add(error.amount);
+        add(error.times_one_plus_z ? "times 1+z" : "as it is");
+    }
+    add(static_cast<double>(weighing.bins.size()));
+    for (const std::size_t bin : weighing.bins) add(static_cast<double>(bin));
+}
+
 }  // namespace
 
 std::string digest_of_inputs(const Job& job, const std::vector<InputDigest>& inputs) {
@@ -110,6 +125,22 @@ std::string digest_of_inputs(const Job& job, const std::vector<InputDigest>& inp
     text.add(static_cast<double>(job.nside));
     text.add(job.frame);
     text.add(job.surveys);
+    return text.digest();
+}
+
+std::string digest_of_weighing(const Job& job,
+                               std::size_t survey,
+                               const std::vector<InputDigest>& inputs) {
+    ensure(inputs.size() == job.inputs.size(), "there is one digest for each input of the job");
+    const SurveyWeighing& weighing = job.weighing[survey];
+    Canonical text(job, inputs);
+    text.add("deviascope weights, " + version());
+    text.add(std::to_string(job.seed));
+    text.add(static_cast<double>(survey));
+    text.add(static_cast<double>(job.nside));
+    text.add(job.frame);
+    text.add(job.surveys[survey]);
+    text.add(weighing);
     return text.digest();
 }
 

@@ -1,6 +1,7 @@
 // SPDX-License-Identifier: GPL-2.0-or-later
 #include <fmt/format.h>
 
+#include <algorithm>
 #include <limits>
 #include <utility>
 
@@ -99,6 +100,7 @@ class JobReader {
                 table, names, intrinsic_, job_.model.intrinsic_shared, job_.frame, around_);
             job_.surveys.push_back(std::move(survey.input));
             job_.model.surveys.push_back(std::move(survey.model));
+            job_.weighing.push_back(std::move(survey.weighing));
             for (std::string& warning : survey.warnings) {
                 job_.warnings.push_back(std::move(warning));
             }
@@ -138,9 +140,7 @@ Job named(Job job, const std::string& file_name) {
     return job;
 }
 
-}  // namespace
-
-Job read_job(const std::filesystem::path& path) {
+Job read_file(const std::filesystem::path& path, Surroundings surroundings) {
     const auto text = text_of_file(path);
     if (!text) {
         throw UsageError({path.string(),
@@ -148,10 +148,36 @@ Job read_job(const std::filesystem::path& path) {
                           "a job file (TOML) is required",
                           "check the path and its permissions"});
     }
-    const std::filesystem::path folder = path.parent_path();
-    Job job = JobReader(*text, path.string(), Surroundings::on_disk(folder)).read();
-    job.folder = folder;
+    Job job = JobReader(*text, path.string(), std::move(surroundings)).read();
+    job.folder = path.parent_path();
     return named(std::move(job), path.filename().string());
+}
+
+}  // namespace
+
+bool Job::is_unmeasured() const {
+    return std::ranges::any_of(weighing, &SurveyWeighing::unmeasured);
+}
+
+Job read_job(const std::filesystem::path& path) {
+    return read_file(path, Surroundings::on_disk(path.parent_path()));
+}
+
+Job read_job_to_weigh(const std::filesystem::path& path) {
+    Surroundings around = Surroundings::on_disk(path.parent_path());
+    around.pass_over_weights();
+    return read_file(path, std::move(around));
+}
+
+Job completed(const Job& job, const std::vector<Companion>& measured) {
+    const std::string path = (job.folder / job.name).string();
+    Job whole = JobReader(job.text, path, Surroundings::on_disk(job.folder, measured)).read();
+    whole.folder = job.folder;
+    return named(std::move(whole), job.name);
+}
+
+std::string name_of_measured_weights(const std::string& survey) {
+    return "measured weights of " + survey;
 }
 
 Job parse_job(const std::string& text,

@@ -23,8 +23,13 @@ bool is_prior_name(const std::string& name) {
 
 }  // namespace
 
-Surroundings Surroundings::on_disk(const fs::path& folder) {
+Surroundings Surroundings::on_disk(const fs::path& folder,
+                                   const std::vector<Companion>& measured) {
     Surroundings disk;
+    disk.find_measured_ = [measured](const std::string& name) -> std::optional<Companion> {
+        const auto found = std::ranges::find(measured, name, &Companion::name);
+        return found != measured.end() ? std::optional(*found) : std::nullopt;
+    };
     disk.folder_ = folder;
     disk.look_for_inputs_ = true;
     disk.find_prior_ = [folder](const std::string& name) { return find_prior(name, folder); };
@@ -41,6 +46,7 @@ Surroundings Surroundings::kept(const CompanionFinder& companions) {
     Surroundings texts;
     texts.find_prior_ = companions;
     texts.find_file_ = companions;
+    texts.find_measured_ = companions;
     texts.known_priors_ = [] { return std::vector<std::string>{}; };
     return texts;
 }
@@ -112,6 +118,12 @@ std::optional<Companion> Surroundings::read_companion(const TomlTable& table,
                 "a readable file whose name ends in .toml is allowed",
                 "relative paths start at the job file's folder");
     return std::nullopt;
+}
+
+std::optional<Companion> Surroundings::measured_weights(const std::string& survey) {
+    const auto companion = find_measured_(name_of_measured_weights(survey));
+    if (companion) keep(*companion);
+    return companion;
 }
 
 fs::path Surroundings::input(const TomlTable& table,

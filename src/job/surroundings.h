@@ -18,7 +18,9 @@ namespace deviascope {
 class Surroundings {
   public:
     /// The disk, seen from the job's folder.
-    static Surroundings on_disk(const std::filesystem::path& folder);
+    /// @param measured  weights files that were measured for the job
+    static Surroundings on_disk(const std::filesystem::path& folder,
+                                const std::vector<Companion>& measured = {});
     /// Kept texts; data files are not looked for.
     static Surroundings kept(const CompanionFinder& companions);
 
@@ -29,6 +31,11 @@ class Surroundings {
                                           Presence presence);
     /// The text of a weights file that a key names.
     std::optional<Companion> read_companion(const TomlTable& table, const std::string& key);
+    /// The measured weights of a survey, where they are known.
+    std::optional<Companion> measured_weights(const std::string& survey);
+    /// From now on weights are of no concern: none is required, and files need not be there.
+    void pass_over_weights() { needs_weights_ = false; }
+    bool needs_weights() const { return needs_weights_; }
     /// The path of a data file that a key names; a fault of that key where it is not there.
     std::filesystem::path input(const TomlTable& table,
                                 const std::string& key,
@@ -51,8 +58,10 @@ class Surroundings {
 
     std::filesystem::path folder_;
     bool look_for_inputs_ = false;
+    bool needs_weights_ = true;
     CompanionFinder find_prior_;
     CompanionFinder find_file_;
+    CompanionFinder find_measured_;
     std::function<std::vector<std::string>()> known_priors_;
     std::vector<Companion> companions_;
     std::vector<InputFile> inputs_;

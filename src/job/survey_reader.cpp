@@ -39,39 +39,42 @@ std::optional<std::string> read_table_name(const TomlTable& survey) {
     return number ? std::optional(std::to_string(*number)) : std::nullopt;
 }
 
-/// Whether a text is `0.05*(1+z)`: a number of at least 0, times (1+z); blanks do not matter.
-bool is_redshift_scatter(std::string text) {
+/// The number of a text like `0.05*(1+z)`: of at least 0, times (1+z); blanks do not matter.
+std::optional<double> factor_of_one_plus_z(std::string text) {
     text.erase(std::remove(text.begin(), text.end(), ' '), text.end());
     const std::string ending = "*(1+z)";
-    if (!text.ends_with(ending)) return false;
+    if (!text.ends_with(ending)) return std::nullopt;
     const std::string factor = text.substr(0, text.size() - ending.size());
     const bool plain = factor.find_first_not_of("0123456789.eE+-") == std::string::npos;
-    if (factor.empty() || !plain) return false;
+    if (factor.empty() || !plain) return std::nullopt;
     char* end = nullptr;
     const double value = std::strtod(factor.c_str(), &end);
-    return *end == '\0' && at_least(0).holds(value);
+    return *end == '\0' && at_least(0).holds(value) ? std::optional(value) : std::nullopt;
 }
 
-/// `scatter` is for measuring weights: its syntax is checked, nothing else uses it yet.
-void check_scatter(const TomlTable& survey, const Columns& columns) {
+std::map<std::string, PropertyError> read_scatter(const TomlTable& survey,
+                                                  const Columns& columns) {
+    std::map<std::string, PropertyError> errors;
     const TomlTable scatter = survey.table("scatter");
     for (const std::string& property : scatter.keys()) {
         if (!names_property(scatter, property, columns)) continue;
         if (property == "redshift" && scatter.has_text(property)) {
-            const bool fits = is_redshift_scatter(scatter.text(property).value_or(""));
-            if (!fits) scatter.wrong(property, "a number or the form \"0.05*(1+z)\"");
-        } else {
-            scatter.number(property, at_least(0));
+            const auto factor = factor_of_one_plus_z(scatter.text(property).value_or(""));
+            if (factor) errors[property] = {*factor, true};
+            if (!factor) scatter.wrong(property, "a number or the form \"0.05*(1+z)\"");
+        } else if (const auto sd = scatter.number(property, at_least(0))) {
+            errors[property] = {*sd, false};
         }
     }
+    return errors;
 }
 
-/// `alpha` is for measuring weights: its syntax is checked, nothing else uses it yet.
-void check_alpha(const TomlTable& survey) {
-    if (!survey.has("alpha")) return;
+std::optional<SpectralIndex> read_alpha(const TomlTable& survey) {
+    if (!survey.has("alpha")) return std::nullopt;
     const TomlTable alpha = survey.table("alpha");
-    alpha.number("mean", {}, required);
-    alpha.number("sd", at_least(0), required);
+    const auto mean = alpha.number("mean", {}, required);
+    const auto sd = alpha.number("sd", at_least(0), required);
+    return mean && sd ? std::optional(SpectralIndex{*mean, *sd}) : std::nullopt;
 }
 
 BadRows read_bad_rows(const TomlTable& survey) {
@@ -93,8 +96,6 @@ SurveyInput read_input(const TomlTable& survey, NameRule& names, Surroundings& s
     input.exclude = read_exclusions(survey);
     input.select = read_select(survey, input.columns);
     input.bad_rows = read_bad_rows(survey);
-    check_alpha(survey);
-    check_scatter(survey, input.columns);
     return input;
 }
 
@@ -150,6 +151,40 @@ void check_wall(const TomlTable& bin, double bias, const std::optional<VectorPri
                         1.0 / fixed->value.norm()));
 }
 
+/// Bins that can be measured: those that select from the catalogue; where the job asks for
+/// measured weights, only those without a weight of their own.
+std::vector<std::size_t> bins_to_weigh(const SurveyInput& survey,
+                                       const std::vector<TomlTable>& bins,
+                                       bool asked_for) {
+    std::vector<std::size_t> found;
+    for (std::size_t b = 0; b < bins.size(); ++b) {
+        if (survey.bins[b].counts || survey.catalogue.empty()) continue;
+        if (!asked_for || !bins[b].has("weight")) found.push_back(b);
+    }
+    return found;
+}
+
+/// Edges in flux and magnitude have weights only with a spectral index.
+void check_spectral_index(const TomlTable& survey, const SurveyReading& reading) {
+    if (reading.weighing.physics.alpha || survey.has("alpha")) return;
+    if (reading.input.columns.contains("alpha")) return;
+    const auto needs_index = [](const std::vector<PropertyRange>& ranges) {
+        return std::any_of(ranges.begin(), ranges.end(), [](const PropertyRange& range) {
+            return range.property == "flux" || range.property == "magnitude";
+        });
+    };
+    bool needed = needs_index(reading.input.select);
+    for (const std::size_t bin : reading.weighing.bins)
+        needed = needed || needs_index(reading.input.bins[bin].select);
+    if (needed && !reading.weighing.bins.empty())
+        survey.fault(
+            "alpha",
+            "missing",
+            "to measure weights at edges of flux or magnitude, alpha = { mean, sd } or a "
+            "column alpha is required",
+            "alpha = 1 for bolometric fluxes and magnitudes");
+}
+
 /// The survey's own intrinsic prior, else the job's.
 std::optional<VectorPrior> read_own_prior(const TomlTable& survey,
                                           const std::optional<VectorPrior>& intrinsic,
@@ -176,6 +211,8 @@ SurveyReading read_survey(const TomlTable& table,
                           Surroundings& surroundings) {
     SurveyReading reading;
     reading.input = read_input(table, names, surroundings);
+    reading.weighing.physics.alpha = read_alpha(table);
+    reading.weighing.physics.scatter = read_scatter(table, reading.input.columns);
     const auto prior =
         read_own_prior(table, intrinsic, intrinsic_shared, job_frame, surroundings);
     if (prior) reading.model.intrinsic = *prior;
@@ -191,6 +228,10 @@ SurveyReading read_survey(const TomlTable& table,
     }
     WeightReading weights =
         read_weights(table, reading.input.name, bins, bin_names, surroundings);
+    reading.weighing.asked_for = weights.measure;
+    reading.weighing.unmeasured = weights.unmeasured;
+    reading.weighing.bins = bins_to_weigh(reading.input, bins, weights.measure);
+    if (weights.measure) check_spectral_index(table, reading);
     if (weights.prior) reading.model.weights = *weights.prior;
     reading.warnings = std::move(weights.warnings);
     reading.model_complete = prior && weights.prior && !bins.empty();

@@ -7,6 +7,7 @@
 #include <vector>
 
 #include "deviascope/counts/survey_input.h"
+#include "deviascope/job/job.h"
 #include "deviascope/model/model_options.h"
 #include "job/name_rule.h"
 #include "job/surroundings.h"
@@ -18,6 +19,7 @@ namespace deviascope {
 struct SurveyReading {
     SurveyInput input;
     SurveyModel model;
+    SurveyWeighing weighing;
     std::vector<std::string> warnings;
     bool model_complete = true;  ///< false where a fault leaves weights or prior unknown
 };

@@ -5,6 +5,7 @@
 
 #include <algorithm>
 #include <cmath>
+#include <limits>
 #include <map>
 #include <utility>
 
@@ -47,8 +48,10 @@ const char* const weight_forms = "a table { mean, sd } or { x, x_sd, alpha, alph
 std::optional<QuotedWeight> read_quoted(const TomlTable& bin) {
     if (!bin.has_table("weight")) {
         const bool measured = bin.has_text("weight") && bin.text("weight") == "measure";
-        measured ? bin.refuse_later("weight", "give it as numbers")
-                 : bin.wrong("weight", weight_forms);
+        bin.wrong(
+            "weight",
+            weight_forms,
+            measured ? "leave it out, and write weights = \"measure\" in the survey" : "");
         return std::nullopt;
     }
     const TomlTable weight = bin.table("weight");
@@ -62,14 +65,21 @@ std::optional<QuotedWeight> read_quoted(const TomlTable& bin) {
     return std::nullopt;
 }
 
+bool asks_to_measure(const TomlTable& survey) {
+    return survey.has_text("weights") && survey.text("weights") == "measure";
+}
+
+/// The file that the survey names, or the measured one.
 std::optional<WeightsFile> read_file(const TomlTable& survey,
                                      const std::string& survey_name,
                                      Surroundings& surroundings) {
-    if (survey.has_text("weights") && survey.text("weights") == "measure") {
-        survey.refuse_later("weights", "name a weights file, or give each bin a weight");
+    if (!surroundings.needs_weights()) {
+        survey.text("weights");
         return std::nullopt;
     }
-    const auto companion = surroundings.read_companion(survey, "weights");
+    const auto companion = asks_to_measure(survey)
+                               ? surroundings.measured_weights(survey_name)
+                               : surroundings.read_companion(survey, "weights");
     if (!companion) return std::nullopt;
     try {
         return parse_weights(*companion, survey_name);
@@ -91,7 +101,9 @@ class WeightBuilder {
           survey_name_(survey_name),
           bins_(bins),
           names_(names),
-          promised_(survey.has("weights")),
+          promised_(survey.has("weights") || !surroundings.needs_weights()),
+          measure_(asks_to_measure(survey)),
+          needs_weights_(surroundings.needs_weights()),
           file_(read_file(survey, survey_name, surroundings)),
           quoted_(bins.size()),
           row_(bins.size()) {}
@@ -100,6 +112,8 @@ class WeightBuilder {
         for (std::size_t b = 0; b < bins_.size(); ++b) read_bin(b);
         warn_of_shared_alpha();
         warn_of_idle_rows();
+        reading_.measure = measure_;
+        reading_.unmeasured = !file_ && (measure_ || !needs_weights_);
         if (complete_) {
             reading_.prior = joint_prior();
             warn_of_amplitudes();
@@ -114,13 +128,24 @@ class WeightBuilder {
             quoted_[b] = read_quoted(bin);
         } else if (file_) {
             row_[b] = row_of(b);
-        } else if (!promised_) {
+        } else if (measure_ && bin.has("counts")) {
             bin.fault("weight",
                       "missing",
-                      fmt::format("{} is required", weight_forms),
-                      "or name a weights file in the survey's weights");
+                      "a bin with a count map has no sources to measure its weight from",
+                      fmt::format("give it as {}", weight_forms));
+        } else if (!promised_) {
+            bin.fault(
+                "weight",
+                "missing",
+                fmt::format("{} is required", weight_forms),
+                "or name a weights file in the survey's weights, or write \"measure\" there");
         }
-        complete_ = complete_ && (quoted_[b] || row_[b]);
+        complete_ = complete_ && (quoted_[b] || row_[b] || is_unmeasured(b));
+    }
+
+    /// Whether a weight is still to be measured; what else is wrong with the bin is a fault.
+    bool is_unmeasured(std::size_t b) const {
+        return !file_ && !bins_[b].has("weight") && (measure_ || !needs_weights_);
     }
 
     std::optional<Eigen::Index> row_of(std::size_t b) const {
@@ -140,6 +165,12 @@ class WeightBuilder {
         WeightPrior prior{Eigen::VectorXd::Zero(n), Eigen::MatrixXd::Zero(n, n)};
         for (std::size_t b = 0; b < bins_.size(); ++b) {
             const auto i = static_cast<Eigen::Index>(b);
+            if (is_unmeasured(b)) {
+                prior.mean(i) = std::numeric_limits<double>::quiet_NaN();
+                prior.covariance(i, i) =
+                    1.0;  // a coordinate of the sampler, whatever its width
+                continue;
+            }
             prior.mean(i) = row_[b] ? file_->weights.mean(*row_[b]) : quoted_[b]->mean;
             if (!row_[b]) prior.covariance(i, i) = quoted_[b]->sd * quoted_[b]->sd;
             for (std::size_t c = 0; row_[b] && c < bins_.size(); ++c) {
@@ -176,7 +207,7 @@ class WeightBuilder {
     void warn_of_amplitudes() {
         for (std::size_t b = 0; b < bins_.size(); ++b) {
             const double mean = reading_.prior->mean(static_cast<Eigen::Index>(b));
-            if (mean == 0.0 || std::abs(mean) >= 0.1) continue;
+            if (mean == 0.0 || !(std::abs(mean) < 0.1)) continue;
             reading_.warnings.push_back(fmt::format(
                 "survey {}: bin {}: the weight {} looks like the amplitude of a dipole; the "
                 "kinematic weight of a flux-limited sample is 2 + x (1 + alpha), about 4",
@@ -205,6 +236,8 @@ class WeightBuilder {
     const std::vector<TomlTable>& bins_;
     const std::vector<std::string>& names_;
     bool promised_;
+    bool measure_;
+    bool needs_weights_;
     std::optional<WeightsFile> file_;
     std::vector<std::optional<QuotedWeight>> quoted_;
     std::vector<std::optional<Eigen::Index>> row_;

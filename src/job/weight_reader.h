@@ -16,6 +16,8 @@ namespace deviascope {
 struct WeightReading {
     std::optional<WeightPrior> prior;  ///< empty where a fault was noted
     std::vector<std::string> warnings;
+    bool measure = false;     ///< the survey says weights = "measure"
+    bool unmeasured = false;  ///< and its weights are not known yet: NaN in the prior
 };
 
 /// Kinematic weights of a survey's bins: each bin's `weight`, else the survey's `weights` file.
@@ -24,8 +26,9 @@ struct WeightReading {
 ///   mean 2 + x (1 + alpha),  sd^2 = ((1 + alpha) x_sd)^2 + (x alpha_sd)^2
 ///
 /// A weights file holds `survey`, `[[bin]]` with `name`, `mean` and `sd`, and optionally
-/// `covariance` (of its bins, in its order; then `sd` may be left out). A bin's own `weight`
-/// stands in for its row of the file, without covariance.
+/// `covariance` (of its bins, in its order; then `sd` may be left out), besides what measured
+/// weights report. A bin's own `weight` stands in for its row of the file, without covariance.
+/// With weights = "measure" the file is the measured one, from the surroundings.
 /// @param names  of the bins, in the order of `bins`
 /// Source: Ellis & Baldwin 1984 for the mean; linear propagation of independent errors.
 WeightReading read_weights(const TomlTable& survey,

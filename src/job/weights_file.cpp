@@ -6,6 +6,7 @@
 #include <cmath>
 #include <optional>
 
+#include "deviascope/job/job.h"
 #include "job/covariance_rule.h"
 #include "job/name_rule.h"
 #include "job/toml_reader.h"
@@ -34,12 +35,33 @@ void check_agreement(const std::vector<TomlTable>& bins, const Eigen::MatrixXd& 
     }
 }
 
+/// What a measured file says besides means and covariance: for people, idle here.
+void pass_over_reports(const TomlTable& root) {
+    for (const char* key : {"inputs", "replicates", "experiment_speed", "warnings"})
+        root.has(key);
+    root.table("scatter_shift").ignore_unknown_keys();
+}
+
+void pass_over_reports_of_bin(const TomlTable& bin) {
+    for (const char* key :
+         {"sources", "with_half_windows", "with_twice_windows", "scatter_free"})
+        bin.has(key);
+    bin.table("experiment").ignore_unknown_keys();
+    for (const TomlTable& edge : bin.tables("edge")) edge.ignore_unknown_keys();
+}
+
 }  // namespace
+
+std::string digest_in_weights_file(const Companion& file) {
+    TomlDocument document(file.text, file.path);
+    return document.root().text("inputs").value_or("");
+}
 
 WeightsFile parse_weights(const Companion& companion, const std::string& survey) {
     TomlDocument document(companion.text, companion.path);
     const TomlTable root = document.root();
     check_survey(root, survey);
+    pass_over_reports(root);
     WeightsFile file;
     const auto bins = root.tables("bin", required);
     const auto n = std::ssize(bins);
@@ -49,6 +71,7 @@ WeightsFile parse_weights(const Companion& companion, const std::string& survey)
     NameRule names;
     for (Eigen::Index b = 0; b < n; ++b) {
         const TomlTable& bin = bins[static_cast<std::size_t>(b)];
+        pass_over_reports_of_bin(bin);
         file.bins.push_back(names.read(bin));
         file.weights.mean(b) = bin.number("mean", {}, required).value_or(0.0);
         if (joint) continue;

@@ -12,6 +12,7 @@
 #include "deviascope/counts/survey_input.h"
 #include "deviascope/ensemble/options.h"
 #include "deviascope/model/model_options.h"
+#include "deviascope/weights/measure_weights.h"
 
 namespace deviascope {
 
@@ -19,6 +20,15 @@ namespace deviascope {
 struct InputFile {
     std::string written;         ///< as the job file names it
     std::filesystem::path path;  ///< where it is: relative paths start at the job's folder
+};
+
+/// What a job says about measuring the weights of a survey.
+struct SurveyWeighing {
+    SourcePhysics physics;
+    std::vector<std::size_t> bins;  ///< that are measured, or could be
+    bool asked_for = false;         ///< weights = "measure"
+    /// Asked for, and not there yet: the weights of `bins` in the model are NaN.
+    bool unmeasured = false;
 };
 
 /// A job file, understood: the options of every stage. Paths in `surveys` are those of
@@ -32,11 +42,15 @@ struct Job {
     int nside = 64;
     Frame frame = Frame::galactic;
     std::vector<SurveyInput> surveys;
+    std::vector<SurveyWeighing> weighing;  ///< of each survey
     ModelOptions model;
     EnsembleOptions ensemble;       ///< threads, stop and progress are the command's to fill
     std::vector<InputFile> inputs;  ///< each file once, in job order
     std::vector<Companion> companions;  ///< priors and weights files that were read
     std::vector<std::string> warnings;  ///< for instance bins that share one alpha
+
+    /// Whether weights are still to be measured before the model is complete.
+    bool is_unmeasured() const;
 };
 
 /// Finds the text of a prior (by name) or weights file (by path as written); empty where there
@@ -47,6 +61,25 @@ using CompanionFinder = std::function<std::optional<Companion>(const std::string
 /// Reads a job file and checks every rule of the schema, and that every input file exists.
 /// Errors: UsageError with *all* faults, each `path:line:column: key: found; allowed; remedy`.
 Job read_job(const std::filesystem::path& path);
+
+/// The same for measuring weights alone: bins need none, and a weights file need not be there.
+Job read_job_to_weigh(const std::filesystem::path& path);
+
+/// A job that was read, with the weights it asked to be measured.
+/// @param measured  texts of weights files, one for each such survey, under the names that
+///                  `name_of_measured_weights` gives
+Job completed(const Job& job, const std::vector<Companion>& measured);
+
+/// How a chain calls the measured weights of a survey among its companions.
+std::string name_of_measured_weights(const std::string& survey);
+
+/// The text of a weights file, with everything that was found out.
+/// @param digest  see `digest_of_weighing`
+std::string weights_file_text(const MeasuredWeights& weights, const std::string& digest);
+
+/// The digest that a measured weights file carries; empty where it carries none.
+/// Errors: UsageError where the text is no weights file.
+std::string digest_in_weights_file(const Companion& file);
 
 /// The same from a text, without looking for input files: for chains that are read back.
 /// @param name        of the job, as faults shall call it
@@ -66,6 +99,12 @@ VectorPrior parse_prior(const Companion& companion, Frame job_frame);
 /// priors), for counts.h5. Files count by their bytes, not by their names.
 /// @param inputs  one for each of `Job::inputs`, in their order
 std::string digest_of_inputs(const Job& job, const std::vector<InputDigest>& inputs);
+
+/// SHA-256 over everything that decides the measured weights of a survey: what decides its
+/// counts, spectral index and scatter, the bins measured, the seed and the version.
+std::string digest_of_weighing(const Job& job,
+                               std::size_t survey,
+                               const std::vector<InputDigest>& inputs);
 
 /// Digests of all input files of a job, in the order of `Job::inputs`.
 /// Errors: InputError if one cannot be read; what `progress` throws.
