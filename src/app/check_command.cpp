@@ -7,6 +7,7 @@
 #include "app/commands.h"
 #include "app/steps.h"
 #include "app/terminal.h"
+#include "app/weigh_step.h"
 #include "deviascope/core/grouped_number.h"
 #include "deviascope/core/physical_constants.h"
 #include "deviascope/model/forecast.h"
@@ -84,13 +85,23 @@ std::string line_of_sampling(const Job& job, const ParameterSpace& space) {
         grouped(job.ensemble.max_steps));
 }
 
+/// The job with the weights it asks to be measured.
+Job weighed(const Job& job, const CommandOptions& options, Terminal& terminal) {
+    if (!job.is_unmeasured()) return job;
+    const InputRecord inputs{digests_of_inputs(job, ending_on_request(terminal.progress())),
+                             ""};
+    return with_measured_weights(
+        {job, inputs, options.n_threads()}, {}, Existing::refuse, true, terminal);
+}
+
 }  // namespace
 
 ExitCode check_command(const CommandOptions& options) {
     Terminal terminal(options.quiet);
-    const Job job = read_job(options.input);
-    for (const std::string& warning : job.warnings) terminal.warn(warning);
-    terminal.say(fmt::format("{}: {}", job.name, job.title));
+    const Job written = read_job(options.input);
+    for (const std::string& warning : written.warnings) terminal.warn(warning);
+    terminal.say(fmt::format("{}: {}", written.name, written.title));
+    const Job job = weighed(written, options, terminal);
     const Counts counts = count_surveys(job, terminal);
     const Posterior posterior(counts, job.model, job.seed);
     const std::vector<std::string> doubts = posterior.warnings();

@@ -4,11 +4,13 @@
 #include <fmt/format.h>
 
 #include <algorithm>
+#include <iterator>
 #include <utility>
 
 #include "app/sample_step.h"
 #include "app/steps.h"
 #include "app/terminal.h"
+#include "app/weigh_step.h"
 #include "deviascope/chain/chain_file.h"
 #include "deviascope/counts/count_maps.h"
 
@@ -30,21 +32,25 @@ Existing existing_of(const CommandOptions& options) {
 }
 
 /// Everything up to a chain, as `run` and `sample` have it in common.
-/// @param files  results that are made anew
+/// @param files  results that are made anew, besides measured weights where counts are
 Outcome make_chain(const CommandOptions& options,
-                   const Job& job,
+                   const Job& written,
                    const ChainLock& lock,
-                   const std::vector<std::string>& files,
+                   std::vector<std::string> files,
                    Terminal& terminal) {
     const fs::path folder = lock.chain().parent_path();
     const Existing existing = existing_of(options);
+    const bool counts_anew = existing != Existing::keep &&
+                             std::find(files.begin(), files.end(), "counts.h5") != files.end();
+    if (counts_anew)
+        std::ranges::copy(names_of_weights_files(written), std::back_inserter(files));
     prepare_output(folder, files, existing);
-    const InputRecord inputs = record_inputs(job, terminal);
+    const InputRecord inputs = record_inputs(written, terminal);
+    const Job job = with_measured_weights(
+        {written, inputs, options.n_threads()}, folder, existing, counts_anew, terminal);
     const Provenance provenance = provenance_of(job, inputs);
     StoredChain stored;
     if (options.resume) stored = find_stored_chain(lock, provenance, terminal);
-    const bool counts_anew = existing != Existing::keep &&
-                             std::find(files.begin(), files.end(), "counts.h5") != files.end();
     const CountsFile file = counts_anew
                                 ? make_counts(job, inputs, folder, terminal)
                                 : obtain_counts(job, inputs, folder, existing, terminal);
@@ -91,6 +97,47 @@ ExitCode count_command(const CommandOptions& options) {
         write_count_maps(file.counts, folder / maps_folder);
         terminal.say(fmt::format("Written: counts and exposure of every bin as maps in {}",
                                  (folder / maps_folder).string()));
+    }
+    return ExitCode::done;
+}
+
+namespace {
+
+/// Surveys whose weights the job asks to be measured; where it asks for none, all that can be.
+std::vector<std::size_t> surveys_to_weigh(const Job& job) {
+    std::vector<std::size_t> asked, possible;
+    for (std::size_t s = 0; s < job.surveys.size(); ++s) {
+        if (job.weighing[s].bins.empty()) continue;
+        possible.push_back(s);
+        if (job.weighing[s].asked_for) asked.push_back(s);
+    }
+    if (possible.empty())
+        throw UsageError(
+            {job.name,
+             "no survey has bins whose weights can be measured",
+             "bins that select from a catalogue, without a weight of their own where "
+             "weights = \"measure\"",
+             ""});
+    return asked.empty() ? possible : asked;
+}
+
+}  // namespace
+
+ExitCode weigh_command(const CommandOptions& options) {
+    Terminal terminal(options.quiet);
+    const Job job = read_job_to_weigh(options.input);
+    const fs::path folder = folder_of(options);
+    const std::vector<std::size_t> surveys = surveys_to_weigh(job);
+    std::vector<std::string> names;
+    for (const std::size_t s : surveys)
+        names.push_back(name_of_weights_file(job.surveys[s].name));
+    prepare_output(folder, names, existing_of(options));
+    const InputRecord inputs = record_inputs(job, terminal);
+    const WeighStep step{
+        job, inputs, options.n_threads(), options.experiment ? experiment_speed : 0.0};
+    for (std::size_t i = 0; i < surveys.size(); ++i) {
+        write_text(folder / names[i], weigh_survey(step, surveys[i], terminal));
+        terminal.say(fmt::format("Written: {}", (folder / names[i]).string()));
     }
     return ExitCode::done;
 }

@@ -19,7 +19,8 @@ struct CommandOptions {
     bool resume = false;
     bool strict = false;
     bool maps = false;
-    int rows_per_block = 0;  ///< rows stored at a time; 0: by the clock
+    bool experiment = false;  ///< of `weigh`: --check
+    int rows_per_block = 0;   ///< rows stored at a time; 0: by the clock
 
     /// Threads to use.
     int n_threads() const { return threads > 0 ? threads : default_threads(); }
@@ -29,6 +30,7 @@ struct CommandOptions {
 ExitCode run_command(const CommandOptions& options);
 ExitCode check_command(const CommandOptions& options);
 ExitCode count_command(const CommandOptions& options);
+ExitCode weigh_command(const CommandOptions& options);
 ExitCode sample_command(const CommandOptions& options);
 ExitCode summarise_command(const CommandOptions& options);
 ExitCode mock_command(const CommandOptions& options);

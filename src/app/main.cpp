@@ -40,6 +40,7 @@ struct Command {
     bool resume;                     ///< takes --resume
     bool strict;                     ///< takes --strict
     bool maps;                       ///< takes --maps
+    bool experiment;                 ///< takes --check
     Action action;
 };
 
@@ -55,6 +56,7 @@ std::vector<Command> commands() {
          true,
          true,
          false,
+         false,
          deviascope::run_command},
         {"check",
          "Checks a job and its inputs, and says what would be done; writes nothing",
@@ -63,6 +65,7 @@ std::vector<Command> commands() {
          nullptr,
          false,
          true,
+         false,
          false,
          deviascope::check_command},
         {"count",
@@ -73,7 +76,18 @@ std::vector<Command> commands() {
          false,
          false,
          true,
+         false,
          deviascope::count_command},
+        {"weigh",
+         "Measures the kinematic weights of bins from the catalogues themselves",
+         "JOB.toml",
+         job,
+         folder,
+         false,
+         false,
+         false,
+         true,
+         deviascope::weigh_command},
         {"sample",
          "Samples the posterior into chains.h5, from the folder's counts.h5 if it fits",
          "JOB.toml",
@@ -81,6 +95,7 @@ std::vector<Command> commands() {
          folder,
          true,
          true,
+         false,
          false,
          deviascope::sample_command},
         {"summarise",
@@ -91,12 +106,14 @@ std::vector<Command> commands() {
          false,
          true,
          false,
+         false,
          deviascope::summarise_command},
         {"mock",
          "Makes mock catalogues with known truth",
          "SCENARIO.toml",
          "scenario file (TOML)",
          "folder for the catalogues; default: the scenario's name, here",
+         false,
          false,
          false,
          false,
@@ -137,6 +154,10 @@ void add_command(CLI::App& program,
         sub->add_flag("--maps",
                       options.maps,
                       "write the counts and exposure of every bin as HEALPix maps too");
+    if (command.experiment)
+        sub->add_flag("--check",
+                      options.experiment,
+                      "check the weights by an experiment on the full sky");
     if (command.strict)
         sub->add_flag("--strict", options.strict, "exit with 6 where the result is doubtful");
     sub->callback([&chosen, action = command.action] { chosen = action; });

@@ -48,15 +48,6 @@ Eigen::Vector3d cmb_velocity(const Companion& companion, Frame frame) {
                       ""});
 }
 
-/// Readers of long files ask nobody whether to go on; where they tell how far they are, a
-/// request to end can be heard.
-Progress ending_on_request(Progress show) {
-    return [show = std::move(show)](const std::string& line) {
-        if (interrupt_requested()) throw Interrupted();
-        if (show) show(line);
-    };
-}
-
 [[noreturn]] void refuse_counts(const fs::path& counts, Existing existing) {
     const Message message{counts.string(),
                           "was made from other inputs or cuts",
@@ -83,6 +74,13 @@ Job job_of(const Chain& chain) {
 }
 
 }  // namespace
+
+Progress ending_on_request(Progress show) {
+    return [show = std::move(show)](const std::string& line) {
+        if (interrupt_requested()) throw Interrupted();
+        if (show) show(line);
+    };
+}
 
 std::string time_now() {
     const std::time_t now =
@@ -134,13 +132,21 @@ Counts count_surveys(const Job& job, Terminal& terminal) {
     return counts;
 }
 
+std::size_t warn_of_counts(const Counts& counts, Terminal& terminal) {
+    std::size_t n = 0;
+    for (const SurveyCounts& survey : counts.surveys) {
+        for (const std::string& warning : survey.cuts.warnings) {
+            terminal.warn(fmt::format("{}: {}", survey.name, warning));
+            ++n;
+        }
+    }
+    return n;
+}
+
 std::size_t warn_of_counts_and_priors(const Counts& counts,
                                       const ParameterSpace& space,
                                       Terminal& terminal) {
     std::vector<std::string> warnings;
-    for (const SurveyCounts& survey : counts.surveys)
-        for (const std::string& warning : survey.cuts.warnings)
-            warnings.push_back(fmt::format("{}: {}", survey.name, warning));
     const auto forecasts =
         has_empty_bin(counts) ? std::vector<VectorForecast>{} : forecast(counts, space);
     for (const VectorForecast& vector : forecasts)
@@ -152,8 +158,9 @@ std::size_t warn_of_counts_and_priors(const Counts& counts,
                             vector.name,
                             vector.prior_sd,
                             vector.counts_sd));
+    const std::size_t n = warn_of_counts(counts, terminal);
     for (const std::string& warning : warnings) terminal.warn(warning);
-    return warnings.size();
+    return n + warnings.size();
 }
 
 CountsFile make_counts(const Job& job,
@@ -161,7 +168,11 @@ CountsFile make_counts(const Job& job,
                        const fs::path& folder,
                        Terminal& terminal) {
     CountsFile file{count_surveys(job, terminal), inputs.counts_digest, version()};
-    warn_of_counts_and_priors(file.counts, ParameterSpace(file.counts, job.model), terminal);
+    if (job.is_unmeasured())
+        warn_of_counts(file.counts, terminal);
+    else
+        warn_of_counts_and_priors(
+            file.counts, ParameterSpace(file.counts, job.model), terminal);
     add_moments(file.counts);
     write_counts(folder / "counts.h5", file);
     return file;

@@ -24,12 +24,18 @@ struct InputRecord {
 /// Errors: Interrupted while files are read.
 InputRecord record_inputs(const Job& job, Terminal& terminal);
 
+/// Readers of long files ask nobody whether to go on; where they tell how far they are, a
+/// request to end can be heard: the progress throws Interrupted.
+Progress ending_on_request(Progress show);
+
 /// catalogue -> counts: counts every survey; writes nothing.
 /// Errors: Interrupted while catalogues are read.
 Counts count_surveys(const Job& job, Terminal& terminal);
 
-/// What is suspicious about the inputs, and vectors whose prior is narrower than the noise of
-/// the counts; returns how many warnings it gave.
+/// What is suspicious about the inputs; returns how many warnings it gave.
+std::size_t warn_of_counts(const Counts& counts, Terminal& terminal);
+
+/// The same, and vectors whose prior is narrower than the noise of the counts.
 std::size_t warn_of_counts_and_priors(const Counts& counts,
                                       const ParameterSpace& space,
                                       Terminal& terminal);
