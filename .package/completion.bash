@@ -4,7 +4,7 @@ _deviascope() {
     local word=${COMP_WORDS[COMP_CWORD]} previous=${COMP_WORDS[COMP_CWORD-1]} command=${COMP_WORDS[1]}
     COMPREPLY=()
     if [ "$COMP_CWORD" -eq 1 ]; then
-        mapfile -t COMPREPLY < <(compgen -W "run check count sample summarise mock --help --version" -- "$word")
+        mapfile -t COMPREPLY < <(compgen -W "run check count weigh sample summarise mock --help --version" -- "$word")
         return
     fi
     case $previous in
@@ -18,6 +18,7 @@ _deviascope() {
             run|sample) options+=" --output --replace --resume --strict" ;;
             summarise) options+=" --output --replace --strict" ;;
             count) options+=" --output --replace --maps" ;;
+            weigh) options+=" --output --replace --check" ;;
             mock) options+=" --output --replace" ;;
         esac
         mapfile -t COMPREPLY < <(compgen -W "$options" -- "$word")

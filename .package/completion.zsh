@@ -6,6 +6,7 @@ commands=(
     'run:the whole job: counts, samples and summarises'
     'check:checks a job and its inputs; writes nothing'
     'count:counts the sources of every survey'
+    'weigh:measures the kinematic weights of bins'
     'sample:samples the posterior'
     'summarise:summarises a chain'
     'mock:makes mock catalogues with known truth'
@@ -28,6 +29,7 @@ case $command in
     check) _arguments $everywhere $strict '1:job:_files -g "*.toml"' ;;
     run|sample) _arguments $everywhere $writes $strict $resume '1:job:_files -g "*.toml"' ;;
     count) _arguments $everywhere $writes '--maps[write maps too]' '1:job:_files -g "*.toml"' ;;
+    weigh) _arguments $everywhere $writes '--check[full-sky experiment]' '1:job:_files -g "*.toml"' ;;
     summarise) _arguments $everywhere $writes $strict '1:chain:_files -g "*.h5"' ;;
     mock) _arguments $everywhere $writes '1:scenario:_files -g "*.toml"' ;;
 esac

@@ -22,27 +22,36 @@ std::string weight_text(const BinReport& bin) {
     return fmt::format("{:.{}f} +- {:.{}f}", bin.mean, digits, bin.sd, digits);
 }
 
-std::string width_text(const EdgeReport& edge) {
-    if (edge.method == EdgeMethod::end_of_property) return "";
-    return fmt::format("{:.2f} in, {:.2f} out ({})", edge.inside, edge.outside, edge.unit);
+std::string table_of_weights(const MeasuredWeights& weights) {
+    TextTable table("lrrrr");
+    table.row({"bin", "sources", "weight", "windows halved", "doubled"});
+    for (const BinReport& bin : weights.bins)
+        table.row({bin.name,
+                   grouped(bin.sources),
+                   weight_text(bin),
+                   fmt::format("{:.4g}", bin.with_half_windows),
+                   fmt::format("{:.4g}", bin.with_twice_windows)});
+    return table.text();
 }
 
-std::string table_of_weights(const MeasuredWeights& weights) {
-    TextTable table("lrrlrrl");
-    table.row({"bin", "sources", "weight", "edge", "term", "sources", "method and window"});
+std::string table_of_edges(const MeasuredWeights& weights) {
+    TextTable table("llrrlrrl");
+    table.row({"bin", "edge", "adds", "sources", "method", "inside", "outside", "in"});
     for (const BinReport& bin : weights.bins) {
-        bool first = true;
         for (const EdgeReport& edge : bin.edges) {
-            table.row({first ? bin.name : "",
-                       first ? grouped(bin.sources) : "",
-                       first ? weight_text(bin) : "",
+            const bool crossed = edge.method != EdgeMethod::end_of_property;
+            const auto width = [&](double w) {
+                return crossed ? fmt::format("{:.2f}", w) : std::string();
+            };
+            table.row({bin.name,
                        fmt::format("{} {}", edge.property, edge.value),
                        fmt::format("{:+.3f}", edge.term),
-                       grouped(edge.sources),
-                       fmt::format("{} {}", name_of(edge.method), width_text(edge))});
-            first = false;
+                       crossed ? grouped(edge.sources) : "",
+                       name_of(edge.method),
+                       width(edge.inside),
+                       width(edge.outside),
+                       crossed ? edge.unit : ""});
         }
-        if (first) table.row({bin.name, grouped(bin.sources), weight_text(bin), "none"});
     }
     return table.text();
 }
@@ -85,10 +94,12 @@ std::string table_of_scatter(const MeasuredWeights& weights) {
 }
 
 void say_weights(const MeasuredWeights& weights, Terminal& terminal) {
-    terminal.say(fmt::format("\nKinematic weights of {}, from {} bootstrap replicates:\n\n{}",
-                             weights.survey,
-                             weights.replicates,
-                             table_of_weights(weights)));
+    terminal.say(
+        fmt::format("\nKinematic weights of {}, errors from {} bootstrap replicates:\n\n{}",
+                    weights.survey,
+                    weights.replicates,
+                    table_of_weights(weights)));
+    terminal.say(table_of_edges(weights));
     if (weights.experiment_speed > 0.0) terminal.say(table_of_experiments(weights));
     const bool scatters = std::ranges::any_of(
         weights.bins, [](const BinReport& bin) { return bin.scatter_free.has_value(); });
@@ -122,7 +133,7 @@ std::string name_of_weights_file(const std::string& survey) {
 std::vector<std::string> names_of_weights_files(const Job& job) {
     std::vector<std::string> names;
     for (std::size_t s = 0; s < job.surveys.size(); ++s)
-        if (job.weighing[s].asked_for)
+        if (job.weighing[s].unmeasured)
             names.push_back(name_of_weights_file(job.surveys[s].name));
     return names;
 }

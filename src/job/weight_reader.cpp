@@ -113,7 +113,8 @@ class WeightBuilder {
         warn_of_shared_alpha();
         warn_of_idle_rows();
         reading_.measure = measure_;
-        reading_.unmeasured = !file_ && (measure_ || !needs_weights_);
+        for (std::size_t b = 0; b < bins_.size(); ++b)
+            reading_.unmeasured = reading_.unmeasured || is_unmeasured(b);
         if (complete_) {
             reading_.prior = joint_prior();
             warn_of_amplitudes();

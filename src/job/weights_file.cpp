@@ -61,7 +61,6 @@ WeightsFile parse_weights(const Companion& companion, const std::string& survey)
     TomlDocument document(companion.text, companion.path);
     const TomlTable root = document.root();
     check_survey(root, survey);
-    pass_over_reports(root);
     WeightsFile file;
     const auto bins = root.tables("bin", required);
     const auto n = std::ssize(bins);
@@ -71,7 +70,6 @@ WeightsFile parse_weights(const Companion& companion, const std::string& survey)
     NameRule names;
     for (Eigen::Index b = 0; b < n; ++b) {
         const TomlTable& bin = bins[static_cast<std::size_t>(b)];
-        pass_over_reports_of_bin(bin);
         file.bins.push_back(names.read(bin));
         file.weights.mean(b) = bin.number("mean", {}, required).value_or(0.0);
         if (joint) continue;
@@ -84,6 +82,8 @@ WeightsFile parse_weights(const Companion& companion, const std::string& survey)
         if (covariance) check_agreement(bins, *covariance);
         for (const TomlTable& bin : bins) bin.has("sd");
     }
+    pass_over_reports(root);
+    for (const TomlTable& bin : bins) pass_over_reports_of_bin(bin);
     document.finish();
     return file;
 }

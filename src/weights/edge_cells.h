@@ -24,7 +24,7 @@ class EdgeCells {
 
     double reach() const { return reach_; }
     double boundary(int k) const {
-        return reach_ * std::sinh(steepness * k / a_side) / std::sinh(steepness);
+        return reach_ * (std::sinh(steepness * k / a_side) / std::sinh(steepness));
     }
     /// Cells a side that lie within a distance of the edge, as a whole.
     int whole_cells_within(double distance) const {

@@ -180,7 +180,7 @@ class Measurement {
         const EdgePlan& plan = estimator.plan(e);
         const EdgeCells& cells = tally_.cells(e);
         const BoxSide& side = boxes_.box[edge.box].sides[edge.side];
-        const double below = -cells.boundary(-plan.window.below);
+        const double below = cells.boundary(plan.window.below);
         const double above = cells.boundary(plan.window.above);
         EdgeReport report;
         report.property = boxes_.dimension[side.dimension].property;

@@ -269,7 +269,6 @@ TEST_CASE("faults of the table survey are named", "[job]") {
         plus("bad_rows = 'drop'"),
         plus("map_frame = 'equatorial'"),
         plus("prior = { kind = 'gaussian' }"),
-        plus("weights = 'measure'"),
         plus("weights = 'dunlin-weights.toml'"),
     };
     const char* const faults[] = {
@@ -307,8 +306,6 @@ TEST_CASE("faults of the table survey are named", "[job]") {
         "12:13: survey[1].map_frame: found \"equatorial\"; \"galactic\", \"icrs\" or "
         "\"ecliptic\" is allowed",
         "12:9: survey[1].prior.sd: missing; sd, or mean and covariance, is required",
-        "12:11: survey[1].weights: found \"measure\", not yet available; name a weights file, "
-        "or give each bin a weight",
         "12:11: survey[1].weights: there is no file \"dunlin-weights.toml\"; a readable file "
         "whose name ends in .toml is allowed; relative paths start at the job file's folder"};
     std::vector<Case> cases;
@@ -386,15 +383,18 @@ TEST_CASE("faults of the table survey.bin are named", "[job]") {
             {"weight = { mean = 3.75, sd = 0.05 }",
              "",
              "13:1: survey[1].bin[1].weight: missing; a table { mean, sd } or { x, x_sd, "
-             "alpha, alpha_sd } is required; or name a weights file in the survey's weights"},
+             "alpha, alpha_sd } is required; or name a weights file in the survey's weights, "
+             "or write \"measure\" there"},
             {"weight = { mean = 3.75, sd = 0.05 }",
              "weight = 3.75",
              "16:10: survey[1].bin[1].weight: found 3.75; a table { mean, sd } or { x, x_sd, "
              "alpha, alpha_sd } is allowed"},
             {"weight = { mean = 3.75, sd = 0.05 }",
              "weight = 'measure'",
-             "16:10: survey[1].bin[1].weight: found \"measure\", not yet available; give it as "
-             "numbers"},
+             "16:10: survey[1].bin[1].weight: found \"measure\"; a table { mean, sd } or { x, "
+             "x_sd, "
+             "alpha, alpha_sd } is allowed; leave it out, and write weights = \"measure\" in "
+             "the survey"},
             {"weight = { mean = 3.75, sd = 0.05 }",
              "weight = {}",
              "16:10: survey[1].bin[1].weight: no weight; a table { mean, sd } or { x, x_sd, "

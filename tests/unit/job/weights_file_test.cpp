@@ -107,8 +107,9 @@ TEST_CASE("faults of a weights file are reported with those of the job", "[job]"
         {"mean = 5",
          "maen = 5",
          "w.toml:10:1: bin[3].mean: missing; a finite number is required\nw.toml:12:1: "
-         "bin[3].maen: unknown key; known here: \"name\", \"mean\", \"sd\"; did you mean "
-         "\"mean\"?"},
+         "bin[3].maen: unknown key; known here: \"name\", \"mean\", \"sd\", \"sources\", "
+         "\"with_half_windows\", \"with_twice_windows\", \"scatter_free\", "
+         "\"experiment\", \"edge\"; did you mean \"mean\"?"},
         {"name = \"faint\"",
          "name = \"fiant\"",
          "j.toml:15:8: survey[1].bin[1].name: bin \"faint\" is not in the survey's weights "
