@@ -126,8 +126,8 @@ inline double integral(const std::function<double(double)>& f, double from, doub
     return sum * h / 3.0;
 }
 
-/// n(m) = 10^(0.6 (m-20)) / (1 + 10^(0.4 (m-20))), alpha 0.75, drawn from 15 to 24 by rejection.
-/// Weights as above (log-derivative of the exact count agrees to 1e-10).
+/// n(m) = 10^(0.6 (m-20)) / (1 + 10^(0.4 (m-20))), alpha 0.75, drawn from 15 to 24 by
+/// rejection. Weights as above (log-derivative of the exact count agrees to 1e-10).
 inline WeightCase curved_magnitude_case() {
     const auto density = [](double m) {
         return std::pow(10.0, 0.6 * (m - 20.0)) / (1.0 + std::pow(10.0, 0.4 * (m - 20.0)));
