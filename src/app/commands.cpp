@@ -20,15 +20,12 @@ namespace fs = std::filesystem;
 
 namespace {
 
-/// Where a command on a job file writes by default: a folder named after the job, here.
-fs::path folder_of(const CommandOptions& options) {
-    if (!options.output.empty()) return options.output;
-    return options.input.stem().string() + "-results";
-}
-
-Existing existing_of(const CommandOptions& options) {
-    if (options.resume) return Existing::keep;
-    return options.replace ? Existing::replace : Existing::refuse;
+/// What was measured on the way belongs to where the chain comes from.
+void keep_companions(const Job& job, Provenance& provenance) {
+    for (const Companion& companion : job.companions)
+        if (std::ranges::find(provenance.companions, companion.name, &Companion::name) ==
+            provenance.companions.end())
+            provenance.companions.push_back(companion);
 }
 
 /// Everything up to a chain, as `run` and `sample` have it in common.
@@ -46,14 +43,16 @@ Outcome make_chain(const CommandOptions& options,
         std::ranges::copy(names_of_weights_files(written), std::back_inserter(files));
     prepare_output(folder, files, existing);
     const InputRecord inputs = record_inputs(written, terminal);
-    const Job job = with_measured_weights(
+    Job job = with_measured_weights(
         {written, inputs, options.n_threads()}, folder, existing, counts_anew, terminal);
-    const Provenance provenance = provenance_of(job, inputs);
+    Provenance provenance = provenance_of(job, inputs);
     StoredChain stored;
     if (options.resume) stored = find_stored_chain(lock, provenance, terminal);
     const CountsFile file = counts_anew
                                 ? make_counts(job, inputs, folder, terminal)
                                 : obtain_counts(job, inputs, folder, existing, terminal);
+    measure_dispersions(job, file.counts, terminal);
+    keep_companions(job, provenance);
     return sample_into_chain(
         {job, file.counts, provenance, lock, options}, std::move(stored), terminal);
 }

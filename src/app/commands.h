@@ -3,6 +3,8 @@
 #pragma once
 
 #include <filesystem>
+#include <string>
+#include <vector>
 
 #include "deviascope/core/error.h"
 #include "deviascope/core/parallel.h"
@@ -19,8 +21,11 @@ struct CommandOptions {
     bool resume = false;
     bool strict = false;
     bool maps = false;
-    bool experiment = false;  ///< of `weigh`: --check
-    int rows_per_block = 0;   ///< rows stored at a time; 0: by the clock
+    bool experiment = false;                 ///< of `weigh`: --check
+    std::string reference = "cmb-velocity";  ///< name of a prior
+    std::string clustering;                  ///< name of a prior; empty: none
+    std::vector<std::string> vary;           ///< PATH=VALUES of a sweep
+    int rows_per_block = 0;                  ///< rows stored at a time; 0: by the clock
 
     /// Threads to use.
     int n_threads() const { return threads > 0 ? threads : default_threads(); }
@@ -34,5 +39,7 @@ ExitCode weigh_command(const CommandOptions& options);
 ExitCode sample_command(const CommandOptions& options);
 ExitCode summarise_command(const CommandOptions& options);
 ExitCode mock_command(const CommandOptions& options);
+ExitCode compare_command(const CommandOptions& options);
+ExitCode sweep_command(const CommandOptions& options);
 
 }  // namespace deviascope

@@ -42,7 +42,33 @@ struct Command {
     bool maps;                       ///< takes --maps
     bool experiment;                 ///< takes --check
     Action action;
+    /// Adds options of its own; null: it has none.
+    void (*add_options)(CLI::App&, CommandOptions&) = nullptr;
 };
+
+void add_compare_options(CLI::App& command, CommandOptions& options) {
+    command
+        .add_option("--reference",
+                    options.reference,
+                    "prior with the velocity to compare with; default: cmb-velocity")
+        ->option_text("NAME");
+    command
+        .add_option("--clustering",
+                    options.clustering,
+                    "prior of dipoles by clustering, to hold the intrinsic ones against")
+        ->option_text("NAME");
+}
+
+void add_sweep_options(CLI::App& command, CommandOptions& options) {
+    command
+        .add_option("--vary",
+                    options.vary,
+                    "key and values: PATH=FIRST:LAST:STEP or PATH=VALUE,VALUE; may be repeated")
+        ->required()
+        ->take_all()
+        ->expected(1)
+        ->option_text("PATH=VALUES");
+}
 
 std::vector<Command> commands() {
     const char* job = "job file (TOML)";
@@ -108,6 +134,27 @@ std::vector<Command> commands() {
          false,
          false,
          deviascope::summarise_command},
+        {"compare",
+         "Holds the posterior against a reference velocity, rival hypotheses, each survey, and "
+         "the counts",
+         "JOB.toml",
+         job,
+         folder,
+         false,
+         true,
+         false,
+         deviascope::compare_command,
+         add_compare_options},
+        {"sweep",
+         "Runs the job again with other cuts, masks, priors or resolutions, one row each",
+         "JOB.toml",
+         job,
+         folder,
+         false,
+         true,
+         false,
+         deviascope::sweep_command,
+         add_sweep_options},
         {"mock",
          "Makes mock catalogues with known truth",
          "SCENARIO.toml",
@@ -160,6 +207,7 @@ void add_command(CLI::App& program,
                       "check the weights by an experiment on the full sky");
     if (command.strict)
         sub->add_flag("--strict", options.strict, "exit with 6 where the result is doubtful");
+    if (command.add_options != nullptr) command.add_options(*sub, options);
     sub->callback([&chosen, action = command.action] { chosen = action; });
 }
 

@@ -44,6 +44,16 @@ OutputError cannot_write(const fs::path& path, const std::string& reason) {
 
 }  // namespace
 
+fs::path folder_of(const CommandOptions& options) {
+    if (!options.output.empty()) return options.output;
+    return options.input.stem().string() + "-results";
+}
+
+Existing existing_of(const CommandOptions& options) {
+    if (options.resume) return Existing::keep;
+    return options.replace ? Existing::replace : Existing::refuse;
+}
+
 void make_folder(const fs::path& folder) {
     std::error_code failure;
     fs::create_directories(folder, failure);

@@ -6,10 +6,18 @@
 #include <string>
 #include <vector>
 
+#include "app/commands.h"
+
 namespace deviascope {
 
 /// What is to become of results that exist.
 enum class Existing { refuse, replace, keep };
+
+/// Where a command on a job file writes: the folder it was given, else one named after the
+/// job, here.
+std::filesystem::path folder_of(const CommandOptions& options);
+/// What its options make of results that exist.
+Existing existing_of(const CommandOptions& options);
 
 /// Makes the folder if it is not there. Errors: OutputError (cannot be made; a file stands
 /// there).

@@ -12,10 +12,16 @@
 #include "deviascope/chain/chain_file.h"
 #include "deviascope/core/error.h"
 #include "deviascope/core/grouped_number.h"
+#include "deviascope/core/random.h"
 #include "deviascope/core/version.h"
 #include "deviascope/counts/count_sources.h"
 #include "deviascope/counts/moments.h"
+#include "deviascope/job/dispersion_file.h"
 #include "deviascope/model/forecast.h"
+#include "deviascope/model/posterior.h"
+#include "deviascope/sky/position_match.h"
+#include "deviascope/summary/fit_check.h"
+#include "summary/draw_moments.h"
 
 namespace deviascope {
 
@@ -25,27 +31,33 @@ namespace {
 
 constexpr const char* cmb_prior_name = "cmb-velocity";
 
-/// The prior that `offset_from_cmb` refers to: the job's own copy, else the library's.
-Companion cmb_prior(const std::vector<Companion>& companions, const fs::path& folder) {
-    const auto own = std::find_if(companions.begin(), companions.end(), [](const Companion& c) {
-        return c.name == cmb_prior_name;
-    });
+/// A prior by name: the job's own copy, else the library's.
+Companion prior_named(const std::string& name,
+                      const std::vector<Companion>& companions,
+                      const fs::path& folder) {
+    const auto own = std::ranges::find(companions, name, &Companion::name);
     if (own != companions.end()) return *own;
-    if (const auto found = find_prior(cmb_prior_name, folder)) return *found;
-    throw UsageError({cmb_prior_name,
-                      "the prior file is not found",
-                      "the program's own priors folder holds it",
-                      "reinstall the program, or put cmb-velocity.toml beside the job"});
+    if (const auto found = find_prior(name, folder)) return *found;
+    throw UsageError({name,
+                      "there is no prior of this name",
+                      "a file beside the job or in its priors/, or one of the program's own",
+                      "check the name, or put " + name + ".toml beside the job"});
 }
 
-Eigen::Vector3d cmb_velocity(const Companion& companion, Frame frame) {
-    const VectorPrior prior = parse_prior(companion, frame);
-    const auto* gaussian = std::get_if<GaussianPrior>(&prior.kind());
-    if (gaussian != nullptr) return gaussian->mean;
-    throw UsageError({companion.path,
-                      fmt::format("is of kind {}", prior.kind_name()),
-                      "the reference for offsets must be a measured-velocity or gaussian prior",
-                      ""});
+/// Surveys in an order in which each comes after those it gives way to.
+std::vector<std::size_t> order_of_counting(const Job& job) {
+    std::vector<std::size_t> order;
+    std::vector<bool> placed(job.surveys.size(), false);
+    while (order.size() < job.surveys.size())
+        for (std::size_t survey = 0; survey < placed.size(); ++survey) {
+            const bool waits = std::ranges::any_of(job.deduplicate, [&](const auto& one) {
+                return one.second == survey && !placed[one.first];
+            });
+            if (placed[survey] || waits) continue;
+            placed[survey] = true;
+            order.push_back(survey);
+        }
+    return order;
 }
 
 [[noreturn]] void refuse_counts(const fs::path& counts, Existing existing) {
@@ -55,6 +67,15 @@ Eigen::Vector3d cmb_velocity(const Companion& companion, Frame frame) {
                           "give --replace to count anew, or another folder with -o"};
     if (existing == Existing::keep) throw UsageError(message);
     throw OutputError(message);
+}
+
+void say_what_was_counted(const SurveyCounts& counted, Terminal& terminal) {
+    terminal.say(fmt::format("Counted {}: {} of {} rows and {} of {} pixels kept.",
+                             counted.name,
+                             grouped(counted.cuts.rows_kept),
+                             grouped(counted.cuts.rows_read),
+                             grouped(counted.cuts.pixels_kept),
+                             grouped(counted.cuts.pixels_total)));
 }
 
 bool has_empty_bin(const Counts& counts) {
@@ -70,7 +91,43 @@ Job job_of(const Chain& chain) {
             if (companion.name == name) return companion;
         return std::nullopt;
     };
-    return parse_job(chain.provenance.job_text, chain.provenance.job_name, finder);
+    Job job = parse_job(chain.provenance.job_text, chain.provenance.job_name, finder);
+    if (const auto measured = finder(dispersion_file_name)) adopt_dispersion(job, *measured);
+    return job;
+}
+
+/// Rows of parameters drawn from the posterior's Gaussian.
+Eigen::MatrixXd rows_about_mode(const Posterior& posterior, std::uint64_t seed) {
+    constexpr Eigen::Index n_draws = 1000;
+    const CoordinateGaussian& gaussian = *posterior.approximation();
+    Eigen::MatrixXd coordinates(posterior.n_coordinates(), n_draws);
+    for (Eigen::Index draw = 0; draw < n_draws; ++draw) {
+        Stream stream(seed, Purpose::laplace_draw, 1, static_cast<std::uint64_t>(draw), 0);
+        Eigen::VectorXd standard(posterior.n_coordinates());
+        for (double& one : standard) one = normal(stream);
+        coordinates.col(draw) = gaussian.mean + gaussian.factor * standard;
+    }
+    Eigen::MatrixXd rows(posterior.space().n_parameters(), n_draws);
+    posterior.to_parameters(coordinates, rows);
+    return rows;
+}
+
+/// Dispersions at the mode, one for each bin that asks.
+std::vector<MeasuredDispersion> dispersions_at_mode(const Job& job, const Counts& counts) {
+    const Posterior posterior(counts, job.model, job.seed);
+    const Eigen::MatrixXd rows = rows_about_mode(posterior, job.seed);
+    const DrawMoments moments = moments_of(rows);
+    const auto checks =
+        check_fit(counts, posterior.space(), moments.mean, moments.covariance, 1);
+    std::vector<MeasuredDispersion> measured;
+    for (const BinPlace& place : job.measure_dispersion)
+        for (std::size_t t = 0; t < checks.size(); ++t) {
+            const BinTerm& term = posterior.space().terms()[t];
+            if (term.survey == place.survey && term.bin == place.bin)
+                measured.push_back(
+                    {place, std::max(checks[t].dispersion, 1.0), checks[t].dispersion_sd});
+        }
+    return measured;
 }
 
 }  // namespace
@@ -93,7 +150,7 @@ Provenance provenance_of(const Job& job, const InputRecord& inputs) {
     provenance.job_name = job.name;
     provenance.job_text = job.text;
     provenance.companions = job.companions;
-    const Companion reference = cmb_prior(job.companions, job.folder);
+    const Companion reference = prior_named(cmb_prior_name, job.companions, job.folder);
     const bool known = std::any_of(job.companions.begin(),
                                    job.companions.end(),
                                    [](const Companion& c) { return c.name == cmb_prior_name; });
@@ -113,22 +170,31 @@ InputRecord record_inputs(const Job& job, Terminal& terminal) {
     return record;
 }
 
-Counts count_surveys(const Job& job, Terminal& terminal) {
+Counts count_surveys(const Job& job, Terminal& terminal, KeptPositions* kept) {
     Counts counts;
     counts.nside = job.nside;
     counts.frame = job.frame;
+    counts.surveys.resize(job.surveys.size());
     const Pixelisation grid(job.nside);
-    for (const SurveyInput& survey : job.surveys) {
-        counts.surveys.push_back(
-            count_survey(survey, grid, job.frame, ending_on_request(terminal.progress())));
-        const SurveyCounts& counted = counts.surveys.back();
-        terminal.say(fmt::format("Counted {}: {} of {} rows and {} of {} pixels kept.",
-                                 counted.name,
-                                 grouped(counted.cuts.rows_kept),
-                                 grouped(counted.cuts.rows_read),
-                                 grouped(counted.cuts.pixels_kept),
-                                 grouped(counted.cuts.pixels_total)));
+    KeptPositions positions(job.surveys.size());
+    std::vector<std::optional<PositionIndex>> index(job.surveys.size());
+    for (const std::size_t s : order_of_counting(job)) {
+        std::vector<Duplicates> duplicates;
+        for (const Deduplication& one : job.deduplicate)
+            if (one.second == s)
+                duplicates.push_back({job.surveys[one.first].name, &*index[one.first]});
+        const bool is_first = std::ranges::any_of(
+            job.deduplicate, [&](const Deduplication& one) { return one.first == s; });
+        counts.surveys[s] = count_survey(job.surveys[s],
+                                         grid,
+                                         job.frame,
+                                         ending_on_request(terminal.progress()),
+                                         duplicates,
+                                         is_first || kept ? &positions[s] : nullptr);
+        if (is_first) index[s].emplace(positions[s], job.match_arcsec * radians_per_arcsec);
+        say_what_was_counted(counts.surveys[s], terminal);
     }
+    if (kept != nullptr) *kept = std::move(positions);
     return counts;
 }
 
@@ -161,6 +227,44 @@ std::size_t warn_of_counts_and_priors(const Counts& counts,
     const std::size_t n = warn_of_counts(counts, terminal);
     for (const std::string& warning : warnings) terminal.warn(warning);
     return n + warnings.size();
+}
+
+VectorPrior prior_of(const std::string& name,
+                     const std::vector<Companion>& companions,
+                     const fs::path& folder,
+                     Frame frame) {
+    return parse_prior(prior_named(name, companions, folder), frame);
+}
+
+GaussianPrior reference_velocity(const std::string& name,
+                                 const std::vector<Companion>& companions,
+                                 const fs::path& folder,
+                                 Frame frame) {
+    const Companion companion = prior_named(name, companions, folder);
+    const VectorPrior prior = parse_prior(companion, frame);
+    const auto* gaussian = std::get_if<GaussianPrior>(&prior.kind());
+    if (gaussian != nullptr && !gaussian->mean.isZero(0.0)) return *gaussian;
+    throw UsageError({companion.path,
+                      fmt::format("is of kind {}", prior.kind_name()),
+                      "the reference for offsets must be a measured-velocity or gaussian prior",
+                      ""});
+}
+
+void measure_dispersions(Job& job, const Counts& counts, Terminal& terminal) {
+    if (job.measure_dispersion.empty()) return;
+    // A dispersion changes how much its bin says about the mode, and so, a little, itself.
+    constexpr int rounds = 2;
+    std::vector<MeasuredDispersion> measured;
+    for (int round = 0; round < rounds; ++round) {
+        measured = dispersions_at_mode(job, counts);
+        adopt_dispersion(job, dispersion_file(job, measured));
+    }
+    for (const MeasuredDispersion& one : measured)
+        terminal.say(fmt::format("Dispersion of {}/{}: {:.4f} +- {:.4f}, measured.",
+                                 job.surveys[one.place.survey].name,
+                                 job.surveys[one.place.survey].bins[one.place.bin].name,
+                                 one.value,
+                                 one.sd));
 }
 
 CountsFile make_counts(const Job& job,
@@ -205,7 +309,7 @@ Summary summarise_into(const Chain& chain,
     options.title = job.title;
     options.seed = job.seed;
     options.cmb_velocity =
-        cmb_velocity(cmb_prior(chain.provenance.companions, folder), job.frame);
+        reference_velocity(cmb_prior_name, chain.provenance.companions, folder, job.frame).mean;
     options.job_warnings = job.warnings;
     options.threads = threads;
     options.effective_draws_wanted = job.ensemble.effective_draws;

@@ -10,6 +10,7 @@
 #include "deviascope/counts/counts_file.h"
 #include "deviascope/job/job.h"
 #include "deviascope/model/parameter_space.h"
+#include "deviascope/sky/direction.h"
 #include "deviascope/summary/summary.h"
 
 namespace deviascope {
@@ -28,9 +29,30 @@ InputRecord record_inputs(const Job& job, Terminal& terminal);
 /// request to end can be heard: the progress throws Interrupted.
 Progress ending_on_request(Progress show);
 
-/// catalogue -> counts: counts every survey; writes nothing.
-/// Errors: Interrupted while catalogues are read.
-Counts count_surveys(const Job& job, Terminal& terminal);
+/// Positions of the sources of each survey that are counted, in the job's frame.
+using KeptPositions = std::vector<std::vector<Direction>>;
+
+/// catalogue -> counts: counts every survey, those that others give way to first; writes
+/// nothing. Errors: Interrupted while catalogues are read.
+/// @param kept  takes the positions of what is counted; null: they are not kept
+Counts count_surveys(const Job& job, Terminal& terminal, KeptPositions* kept = nullptr);
+
+/// counts -> model: measures the dispersions that the job asks for from the counts, and puts
+/// them in force (README, "Dispersion").
+void measure_dispersions(Job& job, const Counts& counts, Terminal& terminal);
+
+/// A prior by its name: the job's own copy, else the library's. Errors: UsageError.
+VectorPrior prior_of(const std::string& name,
+                     const std::vector<Companion>& companions,
+                     const std::filesystem::path& folder,
+                     Frame frame);
+
+/// The same, as a Gaussian to compare velocities with.
+/// Errors: UsageError (no such prior; another kind).
+GaussianPrior reference_velocity(const std::string& name,
+                                 const std::vector<Companion>& companions,
+                                 const std::filesystem::path& folder,
+                                 Frame frame);
 
 /// What is suspicious about the inputs; returns how many warnings it gave.
 std::size_t warn_of_counts(const Counts& counts, Terminal& terminal);

@@ -70,14 +70,13 @@ void look_at_files(const SurveyInput& survey,
 }
 
 void count_rows(const Selection& selection,
+                RowCounter& counter,
                 CutTable& cuts,
-                std::vector<BinTally>& tallies,
                 const Progress& progress) {
     const SurveyInput& survey = selection.input;
     ensure(!survey.catalogue.empty(), "bins with select have a catalogue");
     RowProgress row_progress(survey, progress);
     look_at_files(survey, selection.rows, row_progress, cuts.report.warnings);
-    RowCounter counter(selection, cuts, tallies);
     TableChunk chunk;
     for (const auto& path : survey.catalogue) {
         const auto reader = open_table(path, survey.table, selection.rows.columns);
@@ -150,12 +149,14 @@ SurveyCounts assembled(const Selection& selection,
 SurveyCounts count_survey(const SurveyInput& survey,
                           const Pixelisation& grid,
                           Frame frame,
-                          const Progress& progress) {
+                          const Progress& progress,
+                          const std::vector<Duplicates>& duplicates,
+                          std::vector<Direction>* kept) {
     ensure(!survey.bins.empty(), "a survey has bins");
     const RowSelection rows(survey);
     const SkyCuts sky(survey, grid, frame);
     const Selection selection{survey, rows, sky, grid, frame};
-    CutTable cuts(survey, rows, sky);
+    CutTable cuts(survey, rows, sky, duplicates);
     warn_of_idle_exclusions(selection, cuts);
     warn_of_sampled_exposures(selection, cuts);
 
@@ -163,7 +164,8 @@ SurveyCounts count_survey(const SurveyInput& survey,
     for (const BinInput& bin : survey.bins)
         tallies.emplace_back(fmt::format("survey {}, bin {}", survey.name, bin.name), grid);
     if (!rows.selecting_bins.empty()) {
-        count_rows(selection, cuts, tallies, progress);
+        RowCounter counter(selection, cuts, tallies, duplicates, kept);
+        count_rows(selection, counter, cuts, progress);
     } else if (!survey.catalogue.empty()) {
         cuts.report.warnings.emplace_back(
             "the catalogue is not read for counting: every bin has a count map");

@@ -13,7 +13,10 @@ constexpr std::size_t no_line = static_cast<std::size_t>(-1);
 
 }  // namespace
 
-CutTable::CutTable(const SurveyInput& input, const RowSelection& selection, const SkyCuts& sky)
+CutTable::CutTable(const SurveyInput& input,
+                   const RowSelection& selection,
+                   const SkyCuts& sky,
+                   const std::vector<Duplicates>& duplicates)
     : missing(selection.properties.size(), no_line) {
     position = add_line("position missing or out of range");
     for (const ColumnRange& range : selection.survey) {
@@ -30,6 +33,11 @@ CutTable::CutTable(const SurveyInput& input, const RowSelection& selection, cons
     for (const BinInput& bin : input.bins)
         bin_exposure.push_back(
             bin.exposure ? add_line(fmt::format("exposure of bin {} 0", bin.name)) : no_line);
+    for (const Duplicates& other : duplicates)
+        duplicate.push_back(
+            add_line(fmt::format("in {} too, within {:g} arcsec",
+                                 other.survey,
+                                 other.positions->radius() / radians_per_arcsec)));
     count_pixels(sky);
 }
 

@@ -8,12 +8,16 @@
 #include "counts/row_selection.h"
 #include "counts/sky_cuts.h"
 #include "deviascope/catalogue/cut_report.h"
+#include "deviascope/counts/count_sources.h"
 
 namespace deviascope {
 
 /// A CutReport that is being filled, and the numbers of its lines.
 struct CutTable {
-    CutTable(const SurveyInput& input, const RowSelection& selection, const SkyCuts& sky);
+    CutTable(const SurveyInput& input,
+             const RowSelection& selection,
+             const SkyCuts& sky,
+             const std::vector<Duplicates>& duplicates);
 
     void remove_rows(std::size_t line, std::int64_t n = 1) {
         report.cuts[line].rows_removed += n;
@@ -29,6 +33,7 @@ struct CutTable {
     std::size_t hole = 0;
     std::size_t no_bin = 0;
     std::vector<std::size_t> bin_exposure;  ///< of each bin
+    std::vector<std::size_t> duplicate;     ///< of each survey of `duplicates`
 
   private:
     std::size_t add_line(const std::string& name);

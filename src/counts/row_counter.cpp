@@ -17,8 +17,15 @@ constexpr std::size_t none = static_cast<std::size_t>(-1);
 
 RowCounter::RowCounter(const Selection& selection,
                        CutTable& cuts,
-                       std::vector<BinTally>& tallies)
-    : selection_(selection), places_(selection), cuts_(cuts), tallies_(tallies) {}
+                       std::vector<BinTally>& tallies,
+                       const std::vector<Duplicates>& duplicates,
+                       std::vector<Direction>* kept)
+    : selection_(selection),
+      places_(selection),
+      cuts_(cuts),
+      tallies_(tallies),
+      duplicates_(duplicates),
+      kept_(kept) {}
 
 void RowCounter::add(const TableChunk& chunk,
                      const std::filesystem::path& path,
@@ -99,7 +106,17 @@ std::size_t RowCounter::cut_by_bins(const TableChunk& chunk, std::size_t row) {
         n_bins_[row] == 1 ? static_cast<std::size_t>(bin_[row]) : exposed_bin(chunk, row);
     if (!selection_.sky.exposes(bin, places_.pixel(row), places_.direction(row)))
         return cuts_.bin_exposure[bin];
+    const std::size_t duplicate = duplicate_of(row);
+    if (duplicate != none) return cuts_.duplicate[duplicate];
+    if (kept_ != nullptr) kept_->push_back(places_.direction(row));
     tallies_[bin].add(places_.pixel(row));
+    return none;
+}
+
+/// The first survey that has the source too; none: no other has it.
+std::size_t RowCounter::duplicate_of(std::size_t row) const {
+    for (std::size_t other = 0; other < duplicates_.size(); ++other)
+        if (duplicates_[other].positions->has_neighbour(places_.direction(row))) return other;
     return none;
 }
 

@@ -10,6 +10,7 @@
 #include "counts/offending_rows.h"
 #include "counts/position_watch.h"
 #include "counts/row_places.h"
+#include "deviascope/counts/count_sources.h"
 
 namespace deviascope {
 
@@ -17,7 +18,12 @@ namespace deviascope {
 class RowCounter {
   public:
     /// @param cuts, tallies  are added to; tallies: n_bins
-    RowCounter(const Selection& selection, CutTable& cuts, std::vector<BinTally>& tallies);
+    /// @param duplicates, kept  as in `count_survey`
+    RowCounter(const Selection& selection,
+               CutTable& cuts,
+               std::vector<BinTally>& tallies,
+               const std::vector<Duplicates>& duplicates,
+               std::vector<Direction>* kept);
 
     /// @param path, reader  the chunk came from, for messages
     void add(const TableChunk& chunk,
@@ -37,6 +43,7 @@ class RowCounter {
     std::size_t cut_of(const TableChunk& chunk, std::size_t row);
     std::size_t cut_by_bins(const TableChunk& chunk, std::size_t row);
     std::size_t cut_of_homeless(const TableChunk& chunk, std::size_t row) const;
+    std::size_t duplicate_of(std::size_t row) const;
     std::size_t exposed_bin(const TableChunk& chunk, std::size_t row);
     std::string place(std::size_t row) const;
 
@@ -44,6 +51,8 @@ class RowCounter {
     RowPlaces places_;
     CutTable& cuts_;
     std::vector<BinTally>& tallies_;
+    const std::vector<Duplicates>& duplicates_;
+    std::vector<Direction>* kept_;
     PositionWatch positions_;
     OffendingRows bad_positions_;
     OffendingRows in_two_bins_;

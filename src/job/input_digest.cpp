@@ -125,6 +125,11 @@ std::string digest_of_inputs(const Job& job, const std::vector<InputDigest>& inp
     text.add(static_cast<double>(job.nside));
     text.add(job.frame);
     text.add(job.surveys);
+    for (const Deduplication& one : job.deduplicate) {
+        text.add(job.surveys[one.first].name);
+        text.add(job.surveys[one.second].name);
+        text.add(job.match_arcsec);
+    }
     return text.digest();
 }
 

@@ -7,6 +7,7 @@
 
 #include "deviascope/job/job.h"
 #include "deviascope/sky/pixelisation.h"
+#include "job/deduplication_reader.h"
 #include "job/ensemble_reader.h"
 #include "job/frame_reader.h"
 #include "job/prior_reader.h"
@@ -19,6 +20,8 @@ namespace deviascope {
 
 namespace {
 
+/// Up to a degree: what lies farther apart is not the same source.
+const NumberRange match_range = above_up_to(0.0, 3600.0);
 constexpr std::int64_t largest_integer = std::numeric_limits<std::int64_t>::max();
 
 /// Hypotheses that every comparison knows already.
@@ -58,7 +61,7 @@ class JobReader {
         job_.model.engine = read_engine(ensemble);
         job_.ensemble = read_ensemble(ensemble, n);
         job_.ensemble.seed = job_.seed;
-        check_hypotheses();
+        read_hypotheses();
         document_.finish();
         job_.companions = around_.companions();
         job_.inputs = around_.inputs();
@@ -73,8 +76,8 @@ class JobReader {
             table.integer("seed", 0, largest_integer, required).value_or(0));
         job_.nside = read_nside(table);
         job_.frame = read_frame(table, "frame").value_or(Frame::galactic);
-        table.refuse_later("deduplicate");
-        table.refuse_later("match_arcsec");
+        job_.match_arcsec = table.number("match_arcsec", match_range).value_or(5.0);
+        table.texts("deduplicate");  // understood once the surveys are known
     }
 
     void read_velocity() {
@@ -104,26 +107,31 @@ class JobReader {
             for (std::string& warning : survey.warnings) {
                 job_.warnings.push_back(std::move(warning));
             }
+            for (const std::size_t bin : survey.measure_dispersion)
+                job_.measure_dispersion.push_back({job_.surveys.size() - 1, bin});
             model_complete_ = model_complete_ && survey.model_complete;
         }
+        job_.deduplicate = read_deduplication(root_.table("job"), job_.surveys);
         model_complete_ = model_complete_ && !tables.empty();
     }
 
-    /// Hypotheses are for comparisons: they have to be sound, and nothing else uses them.
-    void check_hypotheses() {
+    void read_hypotheses() {
         NameRule names(built_in_hypotheses);
         for (const TomlTable& table : root_.tables("hypothesis")) {
-            names.read(table);
-            check_replacement(table, "velocity");
-            check_replacement(table, "intrinsic");
+            Hypothesis hypothesis;
+            hypothesis.name = names.read(table);
+            const TomlTable velocity = table.table("velocity");
+            const TomlTable intrinsic = table.table("intrinsic");
+            if (velocity)
+                hypothesis.velocity =
+                    around_.read_prior(velocity, "prior", job_.frame, required);
+            if (intrinsic) {
+                hypothesis.intrinsic_shared = intrinsic.boolean("shared").value_or(false);
+                hypothesis.intrinsic =
+                    around_.read_prior(intrinsic, "prior", job_.frame, required);
+            }
+            job_.hypotheses.push_back(std::move(hypothesis));
         }
-    }
-
-    void check_replacement(const TomlTable& hypothesis, const std::string& key) {
-        if (!hypothesis.has(key)) return;
-        const TomlTable table = hypothesis.table(key);
-        if (key == "intrinsic") table.boolean("shared");
-        if (table) around_.read_prior(table, "prior", job_.frame, required);
     }
 
     TomlDocument document_;
@@ -140,6 +148,14 @@ Job named(Job job, const std::string& file_name) {
     return job;
 }
 
+Job read_text(const std::filesystem::path& path,
+              const std::string& text,
+              Surroundings surroundings) {
+    Job job = JobReader(text, path.string(), std::move(surroundings)).read();
+    job.folder = path.parent_path();
+    return named(std::move(job), path.filename().string());
+}
+
 Job read_file(const std::filesystem::path& path, Surroundings surroundings) {
     const auto text = text_of_file(path);
     if (!text) {
@@ -148,9 +164,7 @@ Job read_file(const std::filesystem::path& path, Surroundings surroundings) {
                           "a job file (TOML) is required",
                           "check the path and its permissions"});
     }
-    Job job = JobReader(*text, path.string(), std::move(surroundings)).read();
-    job.folder = path.parent_path();
-    return named(std::move(job), path.filename().string());
+    return read_text(path, *text, std::move(surroundings));
 }
 
 }  // namespace
@@ -161,6 +175,10 @@ bool Job::is_unmeasured() const {
 
 Job read_job(const std::filesystem::path& path) {
     return read_file(path, Surroundings::on_disk(path.parent_path()));
+}
+
+Job read_job(const std::filesystem::path& path, const std::string& text) {
+    return read_text(path, text, Surroundings::on_disk(path.parent_path()));
 }
 
 Job read_job_to_weigh(const std::filesystem::path& path) {

@@ -129,15 +129,15 @@ BinInput read_bin_input(const TomlTable& bin,
     return input;
 }
 
+bool asks_for_dispersion(const TomlTable& bin) {
+    return bin.has_text("dispersion") && bin.text("dispersion") == "measure";
+}
+
 BinModel read_bin_model(const TomlTable& bin) {
     BinModel model;
     model.bias_ratio = bin.number("bias", at_least(0)).value_or(1.0);
-    const bool measured = bin.has_text("dispersion") && bin.text("dispersion") == "measure";
-    if (measured) {
-        bin.refuse_later("dispersion");
-    } else {
+    if (!asks_for_dispersion(bin))
         model.dispersion = bin.number("dispersion", above(0)).value_or(1.0);
-    }
     return model;
 }
 
@@ -222,6 +222,8 @@ SurveyReading read_survey(const TomlTable& table,
     for (const TomlTable& bin : bins) {
         reading.input.bins.push_back(
             read_bin_input(bin, reading.input, table.has("catalogue"), bin_rule, surroundings));
+        if (asks_for_dispersion(bin))
+            reading.measure_dispersion.push_back(reading.model.bins.size());
         reading.model.bins.push_back(read_bin_model(bin));
         check_wall(bin, reading.model.bins.back().bias_ratio, prior);
         bin_names.push_back(reading.input.bins.back().name);

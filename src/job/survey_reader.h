@@ -21,6 +21,7 @@ struct SurveyReading {
     SurveyModel model;
     SurveyWeighing weighing;
     std::vector<std::string> warnings;
+    std::vector<std::size_t> measure_dispersion;  ///< bins that ask for it
     bool model_complete = true;  ///< false where a fault leaves weights or prior unknown
 };
 

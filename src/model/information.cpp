@@ -133,6 +133,16 @@ Eigen::MatrixXd expected_information(const Counts& counts,
     return derivatives(counts, space, parameters, only_survey).information;
 }
 
+Eigen::MatrixXd bin_information(const Counts& counts,
+                                const BinTerm& term,
+                                Eigen::Index n_parameters,
+                                const Eigen::Ref<const Eigen::VectorXd>& parameters) {
+    Derivatives all{Eigen::VectorXd::Zero(n_parameters),
+                    Eigen::MatrixXd::Zero(n_parameters, n_parameters)};
+    add_bin(counts, Pixelisation(counts.nside), term, parameters, all);
+    return all.information;
+}
+
 Eigen::MatrixXd eliminate(const Eigen::MatrixXd& information,
                           const std::vector<Eigen::Index>& keep,
                           const std::vector<Eigen::Index>& eliminate) {

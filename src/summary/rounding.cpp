@@ -55,4 +55,11 @@ double half_width(const Interval& interval) {
     return 0.5 * (interval[1] - interval[0]);
 }
 
+ScalarEstimate in_unit(ScalarEstimate estimate, double unit) {
+    for (double* value : {&estimate.median, &estimate.mean, &estimate.sd}) *value /= unit;
+    for (Interval* interval : {&estimate.interval68, &estimate.interval95})
+        *interval = {(*interval)[0] / unit, (*interval)[1] / unit};
+    return estimate;
+}
+
 }  // namespace deviascope

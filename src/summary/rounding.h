@@ -23,4 +23,7 @@ std::string rounded(const Interval& interval, double uncertainty);
 /// Half the width of an interval: the uncertainty by which its numbers are rounded.
 double half_width(const Interval& interval);
 
+/// An estimate in another unit: location and spread divided by it.
+ScalarEstimate in_unit(ScalarEstimate estimate, double unit);
+
 }  // namespace deviascope

@@ -1,61 +1,20 @@
 // SPDX-License-Identifier: GPL-2.0-or-later
 #include <cmath>
-#include <nlohmann/json.hpp>
 
 #include "deviascope/core/physical_constants.h"
 #include "deviascope/summary/summary.h"
+#include "summary/json_parts.h"
 
 namespace deviascope {
 namespace {
 
-using Json = nlohmann::ordered_json;
-
-Json number(double value) {
-    return std::isfinite(value) ? Json(value) : Json();
-}
-
-Json interval(const Interval& ends, double unit = 1.0) {
-    if (!std::isfinite(ends[0]) || !std::isfinite(ends[1])) return {};
-    return Json::array({ends[0] * unit, ends[1] * unit});
-}
-
-template <class Value>
-Json or_null(const std::optional<Value>& value) {
-    return value ? number(*value) : Json();
-}
-
-/// A constant is nothing estimated: all null.
-ScalarEstimate unless_constant(const ScalarEstimate& estimate) {
-    return estimate.is_constant() ? ScalarEstimate{} : estimate;
-}
-
-Json scalar(const ScalarEstimate& given, double unit = 1.0) {
-    const ScalarEstimate estimate = unless_constant(given);
-    return {{"median", number(estimate.median * unit)},
-            {"mean", number(estimate.mean * unit)},
-            {"sd", number(estimate.sd * unit)},
-            {"interval68", interval(estimate.interval68, unit)},
-            {"interval95", interval(estimate.interval95, unit)}};
-}
-
 Json vector_moments(const VectorSummary& vector) {
     Json mean, covariance;
     if (vector.amplitude_free) {
-        mean = Json::array();
-        covariance = Json::array();
-        for (Eigen::Index row = 0; row < 3; ++row) {
-            mean.push_back(number(vector.mean[row]));
-            covariance.push_back(Json::array({number(vector.covariance(row, 0)),
-                                              number(vector.covariance(row, 1)),
-                                              number(vector.covariance(row, 2))}));
-        }
+        mean = vector_of(vector.mean);
+        covariance = matrix_of(vector.covariance);
     }
     return {{"mean", mean}, {"covariance", covariance}};
-}
-
-Json lon_lat(const std::optional<LonLat>& place) {
-    if (!place) return {{"lon_deg", Json()}, {"lat_deg", Json()}};
-    return {{"lon_deg", number(place->lon_deg)}, {"lat_deg", number(place->lat_deg)}};
 }
 
 Json region(const std::optional<SkyRegion>& sky) {
@@ -103,21 +62,18 @@ Json velocity(const Summary& summary) {
 }
 
 Json bin(const BinSummary& bin) {
-    const ScalarEstimate monopole = unless_constant(bin.monopole);
     const ScalarEstimate weight = unless_constant(bin.weight);
-    return {
-        {"survey", bin.survey},
-        {"bin", bin.bin},
-        {"sources", bin.sources},
-        {"pixels", bin.pixels},
-        {"sky_fraction", number(bin.sky_fraction)},
-        {"monopole",
-         {{"median", number(monopole.median)}, {"interval68", interval(monopole.interval68)}}},
-        {"weight",
-         {{"median", number(weight.median)},
-          {"interval68", interval(weight.interval68)},
-          {"prior_mean", number(bin.weight_prior_mean)},
-          {"prior_sd", number(bin.weight_prior_sd)}}}};
+    return {{"survey", bin.survey},
+            {"bin", bin.bin},
+            {"sources", bin.sources},
+            {"pixels", bin.pixels},
+            {"sky_fraction", number(bin.sky_fraction)},
+            {"monopole", median_and_interval(bin.monopole)},
+            {"weight",
+             {{"median", number(weight.median)},
+              {"interval68", interval(weight.interval68)},
+              {"prior_mean", number(bin.weight_prior_mean)},
+              {"prior_sd", number(bin.weight_prior_sd)}}}};
 }
 
 Json verdict(const SeparationEntry& entry) {
@@ -178,8 +134,7 @@ std::string to_json(const Summary& summary) {
                        {"separation", separation(summary)},
                        {"sampling", sampling(summary.sampling)},
                        {"warnings", Json(summary.warnings)}};
-    constexpr int indent = 2;
-    return json.dump(indent, ' ', false, Json::error_handler_t::replace) + "\n";
+    return page_of(json);
 }
 
 }  // namespace deviascope

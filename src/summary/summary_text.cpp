@@ -15,19 +15,6 @@ namespace {
 
 constexpr double thousandth = 1e-3;  // amplitudes are printed in this unit
 
-std::string heading(const std::string& text, char line = '-') {
-    const std::string folded_text = folded(text, 0);
-    const std::size_t longest = std::min(width_of(text), page_width);
-    return folded_text + std::string(longest, line) + "\n";
-}
-
-ScalarEstimate in_unit(ScalarEstimate estimate, double unit) {
-    for (double* value : {&estimate.median, &estimate.mean, &estimate.sd}) *value /= unit;
-    for (Interval* interval : {&estimate.interval68, &estimate.interval95})
-        *interval = {(*interval)[0] / unit, (*interval)[1] / unit};
-    return estimate;
-}
-
 // ---- head and warnings ----
 
 std::string head(const Summary& summary) {
@@ -48,14 +35,6 @@ std::string head(const Summary& summary) {
             grouped(summary.sampling.n_draws),
             name_of(summary.frame)),
         0);
-    return text;
-}
-
-std::string warnings_block(const std::vector<std::string>& warnings) {
-    if (warnings.empty()) return "No warnings.\n";
-    std::string text = heading(fmt::format("WARNINGS ({})", warnings.size()), '!');
-    for (std::size_t number = 0; number < warnings.size(); ++number)
-        text += folded(warnings[number], 5, fmt::format("{:>2}.  ", number + 1));
     return text;
 }
 

@@ -1,6 +1,8 @@
 // SPDX-License-Identifier: GPL-2.0-or-later
 #include "summary/text_table.h"
 
+#include <fmt/format.h>
+
 #include <algorithm>
 #include <numeric>
 
@@ -136,6 +138,19 @@ std::string TextTable::text() const {
         result +=
             (text.empty() ? blanks(margin) + std::string(longest - margin, '-') : text) + "\n";
     return result;
+}
+
+std::string heading(const std::string& text, char line) {
+    const std::size_t longest = std::min(width_of(text), page_width);
+    return folded(text, 0) + std::string(longest, line) + "\n";
+}
+
+std::string warnings_block(const std::vector<std::string>& warnings) {
+    if (warnings.empty()) return "No warnings.\n";
+    std::string text = heading(fmt::format("WARNINGS ({})", warnings.size()), '!');
+    for (std::size_t number = 0; number < warnings.size(); ++number)
+        text += folded(warnings[number], 5, fmt::format("{:>2}.  ", number + 1));
+    return text;
 }
 
 }  // namespace deviascope

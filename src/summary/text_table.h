@@ -17,6 +17,12 @@ std::size_t width_of(const std::string& text);
 /// line are cut. The first line begins with `lead` in place of the last blanks of its indent.
 std::string folded(const std::string& text, std::size_t indent, const std::string& lead = "");
 
+/// A heading of the page, folded, with a line of its own under it.
+std::string heading(const std::string& text, char line = '-');
+
+/// The warnings at the top of a page, numbered; a sentence where there are none.
+std::string warnings_block(const std::vector<std::string>& warnings);
+
 /// A table in aligned columns, two blanks in from the margin and three between columns.
 /// A first cell that leaves no room for its row stands on a line of its own; a last column that
 /// is aligned to the left is folded.

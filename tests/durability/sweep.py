@@ -31,7 +31,7 @@ import time
 import h5py
 import numpy
 
-SECONDS_A_RUN = 60
+SECONDS_A_RUN = 600  # far beyond what a run takes; a machine may be busy
 JOB = """[job]
 seed = 20260817
 nside = 4

@@ -9,14 +9,14 @@
 #include <string>
 
 #include "deviascope/core/parallel.h"
+#include "deviascope/ensemble/memory_sink.h"
 #include "deviascope/ensemble/monitored.h"
 #include "deviascope/ensemble/sampler.h"
 #include "deviascope/model/posterior.h"
-#include "memory_sink.h"
 #include "simulated_sky.h"
 
 using namespace deviascope;
-using deviascope::test::MemorySink;
+using deviascope::MemorySink;
 using deviascope::test::SkyTruth;
 
 namespace {

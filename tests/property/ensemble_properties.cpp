@@ -8,9 +8,9 @@
 #include <vector>
 
 #include "deviascope/ensemble/diagnostics.h"
+#include "deviascope/ensemble/memory_sink.h"
 #include "deviascope/ensemble/sampler.h"
 #include "ensemble/split_chains.h"
-#include "memory_sink.h"
 #include "test_targets.h"
 
 using namespace deviascope;

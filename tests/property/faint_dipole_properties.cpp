@@ -5,9 +5,9 @@
 #include <cmath>
 #include <numeric>
 
+#include "deviascope/ensemble/memory_sink.h"
 #include "deviascope/ensemble/sampler.h"
 #include "deviascope/model/posterior.h"
-#include "memory_sink.h"
 #include "simulated_sky.h"
 
 using namespace deviascope;
@@ -65,7 +65,7 @@ double probability_by_quadrature(const Posterior& posterior, double r_small, dou
 double probability_by_sampling(const Posterior& posterior, double r_small, std::uint64_t seed) {
     EnsembleOptions options;
     options.seed = seed;
-    test::MemorySink sink;
+    MemorySink sink;
     REQUIRE(sample(posterior, options, sink).end == Outcome::End::converged);
     const Draws& draws = sink.draws;
     const Eigen::Index n = draws.n_rows * draws.n_replicates * draws.n_walkers;

@@ -5,11 +5,11 @@
 #include <cmath>
 
 #include "deviascope/ensemble/diagnostics.h"
+#include "deviascope/ensemble/memory_sink.h"
 #include "deviascope/ensemble/monitored.h"
 #include "deviascope/ensemble/sampler.h"
 #include "deviascope/model/posterior.h"
 #include "kolmogorov.h"
-#include "memory_sink.h"
 #include "synthetic_counts.h"
 
 using namespace deviascope;
@@ -50,7 +50,7 @@ Sampled sample_with(const Posterior& target, const KernelFractions& kernels, dou
     options.kernels = kernels;
     options.effective_draws = wanted;
     options.threads = 2;
-    test::MemorySink sink;
+    MemorySink sink;
     Sampled sampled;
     sampled.outcome = sample(target, options, sink);
     sampled.draws = std::move(sink.draws);

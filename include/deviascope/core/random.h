@@ -16,13 +16,16 @@ enum class Purpose : std::uint64_t {
     predictive = 3,       ///< (replicate, walker, step)
     start = 4,            ///< (replicate, walker, attempt)
     laplace_draw = 5,     ///< (0, draw, 0)
-    prior_draw = 6,       ///< (vector, draw, 0)
+    prior_draw = 6,       ///< (0, draw, 0)
     mock_source = 7,      ///< (source, survey, attempt)
     bootstrap = 8,        ///< (source, survey, block of replicates)
     mock_population = 9,  ///< (0, survey, 0): total numbers
     spectral_index = 20,  ///< (source, survey, 0): where the catalogue has none
     sky_experiment = 21,  ///< (source, survey, 0)
     added_scatter = 22,   ///< (source, survey, level)
+    evidence = 30,        ///< (which estimate, draw, 0)
+    comparison = 31,      ///< (0, fit, 0): seeds of the runs of a comparison
+    reference_draw = 32,  ///< (0, draw, 0): of a velocity to compare with
     test = 1000           ///< tests only
 };
 

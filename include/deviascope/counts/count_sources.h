@@ -5,8 +5,16 @@
 #include "deviascope/core/progress.h"
 #include "deviascope/counts/count_map.h"
 #include "deviascope/counts/survey_input.h"
+#include "deviascope/sky/position_match.h"
 
 namespace deviascope {
+
+/// Sources of another survey, in the job's frame: what lies within their radius of one is not
+/// counted.
+struct Duplicates {
+    std::string survey;  ///< the other's name
+    const PositionIndex* positions = nullptr;
+};
 
 /// Counts a survey's sources in the pixels of the job's grid.
 ///
@@ -24,6 +32,9 @@ namespace deviascope {
 /// the source; missing values of properties that the bins select on (where no other value of
 /// that bin fails); in no bin; exposure of a bin 0. Sources of count maps enter it as rows do.
 /// @param grid, frame  of the job
+/// @param duplicates   surveys that go before this one
+/// @param kept         takes the positions of the sources that are counted, in the job's
+/// frame; null: they are not kept
 /// @return counts and a table of cuts that adds up; independent of the order of rows and files
 /// Errors: InputError: bad positions (unless skipped), a source in two bins (count, first five
 /// rows), a map that does not fit, an exposure outside 0 … 1, a count map in another frame or
@@ -33,6 +44,8 @@ namespace deviascope {
 SurveyCounts count_survey(const SurveyInput& survey,
                           const Pixelisation& grid,
                           Frame frame,
-                          const Progress& progress);
+                          const Progress& progress,
+                          const std::vector<Duplicates>& duplicates = {},
+                          std::vector<Direction>* kept = nullptr);
 
 }  // namespace deviascope

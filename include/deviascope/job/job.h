@@ -31,6 +31,25 @@ struct SurveyWeighing {
     bool unmeasured = false;
 };
 
+/// A rival hypothesis: priors in place of the job's; what is empty stays as it is.
+struct Hypothesis {
+    std::string name;
+    std::optional<VectorPrior> velocity;
+    std::optional<VectorPrior> intrinsic;  ///< of every survey, or of all where shared
+    bool intrinsic_shared = false;         ///< with `intrinsic` only
+};
+
+/// Sources of `second` that lie where one of `first` does are not counted; places in
+/// `Job::surveys`.
+struct Deduplication {
+    std::size_t first = 0, second = 0;
+};
+
+/// A bin of a survey, as their places in the job.
+struct BinPlace {
+    std::size_t survey = 0, bin = 0;
+};
+
 /// A job file, understood: the options of every stage. Paths in `surveys` are those of
 /// `inputs`.
 struct Job {
@@ -44,8 +63,14 @@ struct Job {
     std::vector<SurveyInput> surveys;
     std::vector<SurveyWeighing> weighing;  ///< of each survey
     ModelOptions model;
-    EnsembleOptions ensemble;       ///< threads, stop and progress are the command's to fill
-    std::vector<InputFile> inputs;  ///< each file once, in job order
+    EnsembleOptions ensemble;  ///< threads, stop and progress are the command's to fill
+    std::vector<Hypothesis> hypotheses;
+    std::vector<Deduplication> deduplicate;  ///< no survey depends on itself, however long the
+                                             ///< way round
+    double match_arcsec = 5.0;
+    /// Bins whose dispersion is to be measured from their counts; 1 until then.
+    std::vector<BinPlace> measure_dispersion;
+    std::vector<InputFile> inputs;      ///< each file once, in job order
     std::vector<Companion> companions;  ///< priors and weights files that were read
     std::vector<std::string> warnings;  ///< for instance bins that share one alpha
 
@@ -80,6 +105,8 @@ std::string weights_file_text(const MeasuredWeights& weights, const std::string&
 /// The digest that a measured weights file carries; empty where it carries none.
 /// Errors: UsageError where the text is no weights file.
 std::string digest_in_weights_file(const Companion& file);
+/// The same from a text that stands for the file of that path.
+Job read_job(const std::filesystem::path& path, const std::string& text);
 
 /// The same from a text, without looking for input files: for chains that are read back.
 /// @param name        of the job, as faults shall call it

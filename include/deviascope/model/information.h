@@ -38,6 +38,13 @@ Eigen::MatrixXd expected_information(const Counts& counts,
                                      const Eigen::Ref<const Eigen::VectorXd>& parameters,
                                      int only_survey = -1);
 
+/// The same of the counts of one bin alone: n_parameters x n_parameters, with ln M of that bin
+/// but zero outside its own parameters.
+Eigen::MatrixXd bin_information(const Counts& counts,
+                                const BinTerm& term,
+                                Eigen::Index n_parameters,
+                                const Eigen::Ref<const Eigen::VectorXd>& parameters);
+
 /// Schur complement: information on the rows and columns `keep` with those of `eliminate`
 /// marginalised. Directions of the eliminated block that the counts do not determine
 /// (eigenvalue of its correlation form below 1e-12 of the largest) are left out: the

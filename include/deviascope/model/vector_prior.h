@@ -16,25 +16,30 @@ namespace deviascope {
 /// Constant density inside the ball |v| < max, 0 < max <= 1.
 struct UniformVectorPrior {
     double max = 0.0;
+    bool operator==(const UniformVectorPrior&) const = default;
 };
 /// Uniform in amplitude 0 … max, isotropic in direction: density 1 / (4 pi max |v|^2);
 /// 0 < max <= 1.
 struct UniformAmplitudePrior {
     double max = 0.0;
+    bool operator==(const UniformAmplitudePrior&) const = default;
 };
 /// Gaussian in the vector. Covariance symmetric positive definite; |mean| < 1.
 struct GaussianPrior {
     Eigen::Vector3d mean = Eigen::Vector3d::Zero();
     Eigen::Matrix3d covariance = Eigen::Matrix3d::Identity();
+    bool operator==(const GaussianPrior&) const = default;
 };
 /// Along a fixed direction (in the job's frame), amplitude uniform in 0 … max, 0 < max <= 1.
 struct AxisPrior {
     Direction axis = Direction::UnitZ();
     double max = 0.0;
+    bool operator==(const AxisPrior&) const = default;
 };
 /// Not sampled; |value| < 1.
 struct FixedPrior {
     Eigen::Vector3d value = Eigen::Vector3d::Zero();
+    bool operator==(const FixedPrior&) const = default;
 };
 
 /// A measured speed and direction, as published.
@@ -73,6 +78,8 @@ class VectorPrior {
 
     const std::string& name() const { return name_; }
     const Kind& kind() const { return kind_; }
+    /// The same density (its name may differ).
+    bool operator==(const VectorPrior& other) const { return kind_ == other.kind_; }
     std::string kind_name() const;       ///< `uniform-vector`, …
     Eigen::Index n_coordinates() const;  ///< 3, 1 or 0
 

@@ -7,9 +7,9 @@
 #include <sstream>
 
 #include "deviascope/ensemble/diagnostics.h"
+#include "deviascope/ensemble/memory_sink.h"
 #include "deviascope/ensemble/sampler.h"
 #include "deviascope/model/posterior.h"
-#include "memory_sink.h"
 #include "python_check.h"
 #include "simulated_sky.h"
 #include "temporary_folder.h"
@@ -90,7 +90,7 @@ TEST_CASE("a sampled posterior agrees with brute force on a grid", "[model][ense
     EnsembleOptions options;
     options.seed = 20260817;
     options.effective_draws = 20000;
-    test::MemorySink sink;
+    MemorySink sink;
     REQUIRE(sample(posterior, options, sink).end == Outcome::End::converged);
 
     const Draws& draws = sink.draws;

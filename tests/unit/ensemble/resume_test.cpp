@@ -4,8 +4,8 @@
 #include <utility>
 
 #include "deviascope/core/error.h"
+#include "deviascope/ensemble/memory_sink.h"
 #include "deviascope/ensemble/sampler.h"
-#include "memory_sink.h"
 #include "same_chain.h"
 #include "test_targets.h"
 

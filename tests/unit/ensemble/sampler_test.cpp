@@ -1,4 +1,5 @@
 // SPDX-License-Identifier: GPL-2.0-or-later
+#include "deviascope/ensemble/memory_sink.h"
 #include "deviascope/ensemble/sampler.h"
 
 #include <algorithm>
@@ -15,7 +16,6 @@
 
 #include "deviascope/core/error.h"
 #include "deviascope/ensemble/diagnostics.h"
-#include "memory_sink.h"
 #include "test_targets.h"
 
 using namespace deviascope;

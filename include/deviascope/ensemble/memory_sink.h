@@ -1,13 +1,14 @@
 // SPDX-License-Identifier: GPL-2.0-or-later
-// Keeps a whole run in memory.
+// model -> ENSEMBLE -> chain
 #pragma once
 
 #include <vector>
 
 #include "deviascope/ensemble/draws.h"
 
-namespace deviascope::test {
+namespace deviascope {
 
+/// Keeps a whole run in memory: for runs that are looked at and not stored.
 class MemorySink : public DrawSink {
   public:
     void warm_up(const WarmUp& warm_up) override {
@@ -38,4 +39,4 @@ class MemorySink : public DrawSink {
     }
 };
 
-}  // namespace deviascope::test
+}  // namespace deviascope
