@@ -317,7 +317,9 @@ class Comparer {
         const std::vector<double> one = sources_on_sky(first), other = sources_on_sky(second);
         const double share_of_pixel =
             std::numbers::pi * radius * radius / Pixelisation(counts_->nside).solid_angle();
-        SurveyOverlap overlap{first.name, second.name};
+        SurveyOverlap overlap;
+        overlap.first = first.name;
+        overlap.second = second.name;
         overlap.match_arcsec = job_.match_arcsec;
         for (std::size_t p = 0; p < one.size(); ++p) {
             if (one[p] < 0.0 || other[p] < 0.0) continue;

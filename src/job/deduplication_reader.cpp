@@ -32,11 +32,10 @@ std::optional<Deduplication> parsed(const std::string& written,
     return Deduplication{*first, *second};
 }
 
-/// True where every bin of a survey is counted from its catalogue.
+/// True where some bin of a survey is counted from its catalogue.
 bool has_positions(const SurveyInput& survey) {
     return !survey.catalogue.empty() &&
-           std::ranges::none_of(survey.bins,
-                                [](const BinInput& bin) { return bin.counts.has_value(); });
+           std::ranges::any_of(survey.bins, [](const BinInput& bin) { return !bin.counts; });
 }
 
 /// Whether `from` depends on `to`: is deduplicated over it, directly or by way of others.
@@ -62,10 +61,10 @@ std::vector<Deduplication> read_deduplication(const TomlTable& job,
         for (const std::size_t survey : {one->first, one->second})
             if (!has_positions(surveys[survey]))
                 job.fault(key,
-                          fmt::format("\"{}\": {} has bins without positions of sources",
+                          fmt::format("\"{}\": {} has no positions of sources",
                                       written,
                                       surveys[survey].name),
-                          "surveys whose bins all select from a catalogue are allowed");
+                          "surveys with bins that select from a catalogue are allowed");
         if (depends(one->first, one->second, all)) {
             job.fault(key,
                       fmt::format("\"{}\" closes a circle", written),

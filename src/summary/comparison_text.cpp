@@ -28,9 +28,17 @@ std::string probability(double value) {
     return plain(value, "{:.2g}");
 }
 
+/// Two decimals, three where the error is known so well.
 std::string with_error(const LogEvidence& found) {
-    return std::isnan(found.value) ? "-"
-                                   : fmt::format("{:.2f} +- {:.2f}", found.value, found.error);
+    if (std::isnan(found.value)) return "-";
+    if (!(found.error > 0.0)) return fmt::format("{:.3f}", found.value);
+    return found.error < 0.005 ? fmt::format("{:.3f} +- {:.3f}", found.value, found.error)
+                               : fmt::format("{:.2f} +- {:.2f}", found.value, found.error);
+}
+
+/// A probability counted in 100,000 draws for each draw of a posterior.
+std::string rare(double value) {
+    return value < 1e-5 ? "< 1e-5" : probability(value);
 }
 
 /// `412 (380 to 440)`.
@@ -54,12 +62,7 @@ std::string shift(const VelocityOffset& offset) {
 std::string offset_block(const Comparison& all) {
     std::string text = heading("Against the velocity of " + all.reference);
     TextTable table("lrrrrr");
-    table.row({"velocity from",
-               "speed (km/s)",
-               "angle (deg)",
-               "ratio of speeds",
-               "chi2 (3)",
-               "sigma"});
+    table.row({"", "speed (km/s)", "angle (deg)", "ratio of speeds", "chi2 (3)", "sigma"});
     const auto add = [&](const std::string& name, const SurveyFit& fit) {
         table.row({name,
                    speed(fit),
@@ -68,14 +71,14 @@ std::string offset_block(const Comparison& all) {
                    plain(fit.offset.chi2, "{:.2f}"),
                    sigma(fit.offset.sigma)});
     };
-    for (const SurveyFit& fit : all.alone) add(fit.name + " alone", fit);
+    for (const SurveyFit& fit : all.alone) add(fit.name, fit);
     if (all.alone.size() > 2)
         for (const SurveyFit& fit : all.without) add("without " + fit.name, fit);
-    add("all together", all.joint);
+    add("joint", all.joint);
     text += table.text();
     text +=
         folded(fmt::format("From the draws, without taking them for Gaussian (Raveri & Doux "
-                           "2021), all together: {} sigma. Angles and ratios are medians "
+                           "2021), joint: {} sigma. Angles and ratios are medians "
                            "with 68 % intervals, against draws from the reference.",
                            shift(all.joint.offset)),
                0);
@@ -128,24 +131,20 @@ std::string width_table(const Comparison& all) {
 
 std::string hypotheses_block(const Comparison& all) {
     std::string text = heading("Hypotheses");
-    TextTable table("lllrrrr");
-    table.row({"",
-               "velocity",
-               "intrinsic",
-               "ln evidence",
-               "ln Bayes",
-               "Savage-Dickey",
-               "importance"});
+    TextTable priors("lll");
+    priors.row({"", "velocity", "intrinsic dipole"});
+    for (const HypothesisResult& one : all.hypotheses)
+        priors.row({one.name, one.velocity, one.intrinsic});
+    TextTable table("lrrrr");
+    table.row({"", "ln evidence", "ln Bayes factor", "Savage-Dickey", "importance"});
     const double best = all.hypotheses[best_hypothesis(all.hypotheses)].evidence.bridge.value;
     for (const HypothesisResult& one : all.hypotheses)
         table.row({one.name,
-                   one.velocity,
-                   one.intrinsic,
                    with_error(one.evidence.bridge),
                    plain(one.evidence.bridge.value - best, "{:.2f}"),
                    with_error(one.savage_dickey),
                    with_error(one.evidence.importance)});
-    text += table.text() + "\n" + width_table(all) + "\n";
+    text += priors.text() + "\n" + table.text() + "\n" + width_table(all) + "\n";
     text += folded(verdict(all), 0);
     text += folded(
         "Evidence by bridge sampling (Meng & Wong 1996), relative to the isotropic sky; a "
@@ -171,7 +170,7 @@ std::string intrinsic_block(const Comparison& all) {
                    with_interval(amplitude),
                    rounded(amplitude.interval95, half_width(amplitude.interval68)),
                    short_number(one.prior_median_amplitude / thousandth),
-                   one.clustering_probability ? probability(*one.clustering_probability) : ""});
+                   one.clustering_probability ? rare(*one.clustering_probability) : ""});
     }
     text += table.text();
     if (!all.clustering.empty())
@@ -223,16 +222,16 @@ std::string place(const ResidualPixel& pixel, Frame frame) {
 
 std::string fit_block(const Comparison& all) {
     std::string text = heading("Does the model fit?");
-    TextTable table("lrrrrrl");
-    table.row(
-        {"bin", "dispersion", "p", "p (l = 2)", "p (l = 3)", "p (l = 4)", "furthest pixel"});
+    TextTable table("lrrrl");
+    table.row({"bin", "dispersion", "p", "p of l = 2, 3, 4", "furthest pixel"});
     for (const FitCheck& check : all.fit)
         table.row({check.survey + " " + check.bin,
                    fmt::format("{:.4f} +- {:.4f}", check.dispersion, check.dispersion_sd),
                    probability(check.probability),
-                   probability(check.power[0].probability),
-                   probability(check.power[1].probability),
-                   probability(check.power[2].probability),
+                   fmt::format("{}  {}  {}",
+                               probability(check.power[0].probability),
+                               probability(check.power[1].probability),
+                               probability(check.power[2].probability)),
                    check.largest.empty()
                        ? "-"
                        : fmt::format("{:+.1f} sigma at {}",

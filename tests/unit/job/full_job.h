@@ -83,7 +83,8 @@ mean = 3.7
 sd = 0.04
 )";
 
-/// The full job without what this version does not have yet.
+/// The full job, alone: without the survey it is to be deduplicated over, and with other
+/// kernels than the default.
 inline std::string available_job() {
     std::string job = with(full_job, "deduplicate = [ \"dunlin over lantern\" ]\n", "");
     return with(job,

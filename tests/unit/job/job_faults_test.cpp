@@ -57,10 +57,11 @@ TEST_CASE("faults of the table job are named", "[job]") {
                "nside = 64\ntitle = 7",
                "4:9: job.title: found 7; a text that is not empty is allowed"},
               {"nside = 64",
-               "nside = 64\ndeduplicate = ['dunlin over lantern']\nmatch_arcsec = 5.0",
-               "4:15: job.deduplicate: found [\"dunlin over lantern\"], not yet available; "
-               "leave it out\n"
-               "j.toml:5:16: job.match_arcsec: found 5.0, not yet available; leave it out"},
+               "nside = 64\ndeduplicate = ['dunlin over lantern']\nmatch_arcsec = 0.0",
+               "4:15: job.deduplicate: found \"dunlin over lantern\"; texts of the form \"dunlin "
+               "over lantern\", two surveys of the job, are allowed\n"
+               "j.toml:5:16: job.match_arcsec: found 0.0; a number above 0 and at most 3600 is "
+               "allowed"},
               {"[velocity]",
                "[outlook]\n[velocity]",
                "4:2: outlook: unknown key; known here: \"job\", \"monopole\", \"velocity\", "

@@ -48,10 +48,10 @@ std::string told(const Job& job) {
 
 }  // namespace
 
-TEST_CASE("the full example is refused only for what is not yet available", "[job]") {
+TEST_CASE("the full example is refused only for the survey it lacks", "[job]") {
     CHECK(faults_of(full_job, with_weights) ==
-          "j.toml:6:15: job.deduplicate: found [\"dunlin over lantern\"], not yet available; "
-          "leave it out");
+          "j.toml:6:15: job.deduplicate: found \"dunlin over lantern\"; texts of the form "
+          "\"dunlin over lantern\", two surveys of the job, are allowed");
 }
 
 TEST_CASE("every key of the full example arrives where it belongs", "[job]") {
