@@ -23,7 +23,8 @@ Direction crowded(Stream& stream) {
     const double a = uniform(stream), b = uniform(stream);
     if (kind == 0) return direction_of(360.0 * a, std::asin(2.0 * b - 1.0) * 180.0 / M_PI);
     const double spread = 0.02;  // degrees: several radii
-    if (kind == 1) return direction_of(360.0 * a, (b < 0.5 ? 90.0 : -90.0) * (1 - spread * b / 90));
+    if (kind == 1)
+        return direction_of(360.0 * a, (b < 0.5 ? 90.0 : -90.0) * (1 - spread * b / 90));
     return direction_of(spread * (a - 0.5), 180.0 * b - 90.0);
 }
 
@@ -70,9 +71,9 @@ TEST_CASE("matches are those of a k-d tree, at poles and at longitude 0 too", "[
         std::ostringstream text;
         text.precision(17);
         text << radius;
-        const auto result =
-            test::run_python(fs::path(DEVIASCOPE_TEST_DATA) / "reference/position_match/match.py",
-                             {folder.path() / "first", folder.path() / "second", text.str()});
+        const auto result = test::run_python(
+            fs::path(DEVIASCOPE_TEST_DATA) / "reference/position_match/match.py",
+            {folder.path() / "first", folder.path() / "second", text.str()});
         REQUIRE(result.exit_code == 0);
         std::istringstream expected(result.output);
         const PositionIndex index(first, radius);

@@ -26,47 +26,48 @@ void check(const std::string& job, const std::vector<Case>& cases) {
 }  // namespace
 
 TEST_CASE("faults of the table job are named", "[job]") {
-    check(plain_job,
-          {
-              {"seed = 1", "", "1:1: job.seed: missing; an integer of at least 0 is required"},
-              {"seed = 1",
-               "seed = -1",
-               "2:8: job.seed: found -1; an integer of at least 0 is allowed"},
-              {"seed = 1",
-               "seed = 1.0",
-               "2:8: job.seed: found 1.0; an integer of at least 0 is allowed"},
-              {"seed = 1",
-               "sede = 1",
-               "1:1: job.seed: missing; an integer of at least 0 is required\n"
-               "j.toml:2:1: job.sede: unknown key; known here: \"title\", \"seed\", \"nside\", "
-               "\"frame\", \"deduplicate\", \"match_arcsec\"; did you mean \"seed\"?"},
-              {"nside = 64",
-               "",
-               "1:1: job.nside: missing; a power of two from 1 to 1024 is required"},
-              {"nside = 64",
-               "nside = 60",
-               "3:9: job.nside: found 60; a power of two from 1 to 1024 is allowed"},
-              {"nside = 64",
-               "nside = 2048",
-               "3:9: job.nside: found 2048; a power of two from 1 to 1024 is allowed"},
-              {"nside = 64",
-               "nside = 64\nframe = 'galatic'",
-               "4:9: job.frame: found \"galatic\"; \"galactic\", \"icrs\" or \"ecliptic\" is "
-               "allowed; did you mean \"galactic\"?"},
-              {"nside = 64",
-               "nside = 64\ntitle = 7",
-               "4:9: job.title: found 7; a text that is not empty is allowed"},
-              {"nside = 64",
-               "nside = 64\ndeduplicate = ['dunlin over lantern']\nmatch_arcsec = 0.0",
-               "4:15: job.deduplicate: found \"dunlin over lantern\"; texts of the form \"dunlin "
-               "over lantern\", two surveys of the job, are allowed\n"
-               "j.toml:5:16: job.match_arcsec: found 0.0; a number above 0 and at most 3600 is "
-               "allowed"},
-              {"[velocity]",
-               "[outlook]\n[velocity]",
-               "4:2: outlook: unknown key; known here: \"job\", \"monopole\", \"velocity\", "
-               "\"intrinsic\", \"survey\", \"ensemble\", \"hypothesis\""},
-          });
+    check(
+        plain_job,
+        {
+            {"seed = 1", "", "1:1: job.seed: missing; an integer of at least 0 is required"},
+            {"seed = 1",
+             "seed = -1",
+             "2:8: job.seed: found -1; an integer of at least 0 is allowed"},
+            {"seed = 1",
+             "seed = 1.0",
+             "2:8: job.seed: found 1.0; an integer of at least 0 is allowed"},
+            {"seed = 1",
+             "sede = 1",
+             "1:1: job.seed: missing; an integer of at least 0 is required\n"
+             "j.toml:2:1: job.sede: unknown key; known here: \"title\", \"seed\", \"nside\", "
+             "\"frame\", \"deduplicate\", \"match_arcsec\"; did you mean \"seed\"?"},
+            {"nside = 64",
+             "",
+             "1:1: job.nside: missing; a power of two from 1 to 1024 is required"},
+            {"nside = 64",
+             "nside = 60",
+             "3:9: job.nside: found 60; a power of two from 1 to 1024 is allowed"},
+            {"nside = 64",
+             "nside = 2048",
+             "3:9: job.nside: found 2048; a power of two from 1 to 1024 is allowed"},
+            {"nside = 64",
+             "nside = 64\nframe = 'galatic'",
+             "4:9: job.frame: found \"galatic\"; \"galactic\", \"icrs\" or \"ecliptic\" is "
+             "allowed; did you mean \"galactic\"?"},
+            {"nside = 64",
+             "nside = 64\ntitle = 7",
+             "4:9: job.title: found 7; a text that is not empty is allowed"},
+            {"nside = 64",
+             "nside = 64\ndeduplicate = ['dunlin over lantern']\nmatch_arcsec = 0.0",
+             "4:15: job.deduplicate: found \"dunlin over lantern\"; texts of the form \"dunlin "
+             "over lantern\", two surveys of the job, are allowed\n"
+             "j.toml:5:16: job.match_arcsec: found 0.0; a number above 0 and at most 3600 is "
+             "allowed"},
+            {"[velocity]",
+             "[outlook]\n[velocity]",
+             "4:2: outlook: unknown key; known here: \"job\", \"monopole\", \"velocity\", "
+             "\"intrinsic\", \"survey\", \"ensemble\", \"hypothesis\""},
+        });
 }
 
 TEST_CASE("faults of the table priors are named", "[job]") {
@@ -422,9 +423,10 @@ TEST_CASE("faults of the table survey.bin are named", "[job]") {
              "j.toml:18:14: survey[1].bin[1].dispersion: found 0; a finite number above 0 is "
              "allowed"},
             {"weight = { mean = 3.75, sd = 0.05 }",
-             "weight = { mean = 3.75, sd = 0.05 }\ndispersion = 'measure'",
-             "17:14: survey[1].bin[1].dispersion: found \"measure\", not yet available; leave "
-             "it out"},
+             "weight = { mean = 3.75, sd = 0.05 }\ndispersion = 'measured'",
+             "17:14: survey[1].bin[1].dispersion: found \"measured\"; a finite number above 0 "
+             "is "
+             "allowed"},
             {"weight = { mean = 3.75, sd = 0.05 }",
              "weight = { mean = 3.75, sd = 0.05 }\nbiass = 1",
              "17:1: survey[1].bin[1].biass: unknown key; known here: \"name\", \"select\", "

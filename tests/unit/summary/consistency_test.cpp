@@ -45,8 +45,8 @@ const std::vector<VelocityGaussian> three{survey({1e-3, 2e-3, -1e-3}, 4e-4, 0.3)
 
 TEST_CASE("two surveys: consistency is the chi-square of their difference", "[summary]") {
     const Consistency found = consistency_of({three[0], three[1]});
-    const GaussianDifference pair = difference_of(three[0].mean - three[1].mean,
-                                                  three[0].covariance + three[1].covariance);
+    const GaussianDifference pair =
+        difference_of(three[0].mean - three[1].mean, three[0].covariance + three[1].covariance);
     CHECK(found.chi2 == Approx(pair.chi2).epsilon(1e-10));
     CHECK(found.degrees == 3.0);
     CHECK(found.sigma == Approx(pair.sigma).epsilon(1e-10));
@@ -72,8 +72,8 @@ TEST_CASE("taking the prior out gives the likelihood back", "[summary]") {
         CHECK(back->covariance.isApprox(likelihood.covariance, 1e-9));
     }
     SECTION("a posterior that is the prior says nothing") {
-        CHECK_FALSE(without_prior({prior.mean, prior.covariance},
-                                  VectorPrior("measured", prior)));
+        CHECK_FALSE(
+            without_prior({prior.mean, prior.covariance}, VectorPrior("measured", prior)));
         CHECK_FALSE(without_prior({prior.mean, 0.97 * prior.covariance},
                                   VectorPrior("measured", prior)));
     }

@@ -24,8 +24,9 @@ Eigen::VectorXd row_at(const ParameterSpace& space,
     row.head<3>() = velocity;
     for (const BinTerm& term : space.terms()) {
         row.segment<3>(term.intrinsic) = dipole;
-        row[term.weight] = space.options().surveys[term.survey].weights.mean[
-            static_cast<Eigen::Index>(term.bin)];
+        row[term.weight] = space.options()
+                               .surveys[term.survey]
+                               .weights.mean[static_cast<Eigen::Index>(term.bin)];
         row[term.monopole] = NAN;
     }
     return row;
@@ -44,10 +45,9 @@ std::vector<FitCheck> check(const Counts& counts,
 }
 
 const std::vector<synthetic::Survey> cut_sky{
-    {"dunlin",
-     {{"faint", 40000, 3.0}},
-     Eigen::Vector3d::Zero(),
-     [](const Direction& n) { return std::abs(n.z()) > 0.3 ? 1.0 - 0.4 * n.x() : 0.0; }}};
+    {"dunlin", {{"faint", 40000, 3.0}}, Eigen::Vector3d::Zero(), [](const Direction& n) {
+         return std::abs(n.z()) > 0.3 ? 1.0 - 0.4 * n.x() : 0.0;
+     }}};
 
 }  // namespace
 
@@ -129,8 +129,7 @@ TEST_CASE("a quadrupole in the counts is found as one", "[summary]") {
         bin.count[p] = static_cast<std::uint32_t>(
             std::lround(bin.count[p] * (1.0 + 0.02 * n.x() * n.y())));
     }
-    const FitCheck found =
-        check(counts, synthetic::make_model(surveys, none, none)).front();
+    const FitCheck found = check(counts, synthetic::make_model(surveys, none, none)).front();
     CHECK(found.power[0].probability < 1e-6);
     CHECK(found.power[2].probability > 1e-4);
 }
@@ -147,11 +146,11 @@ TEST_CASE("clumped counts are over-dispersed by what they were made with", "[sum
         const double mean = 0.3 * bin.count[p];
         if (mean > 0.0) bin.count[p] += synthetic::draw_poisson(stream, mean);
     }
-    const FitCheck found =
-        check(counts, synthetic::make_model(surveys, none, none)).front();
+    const FitCheck found = check(counts, synthetic::make_model(surveys, none, none)).front();
     CHECK(is_over_dispersed(found));
     CHECK(std::abs(found.dispersion - expected) < 4.0 * found.dispersion_sd);
-    CHECK(found.dispersion_sd == Approx(expected * std::sqrt(2.0 / found.degrees)).epsilon(0.1));
+    CHECK(found.dispersion_sd ==
+          Approx(expected * std::sqrt(2.0 / found.degrees)).epsilon(0.1));
     SECTION("a dispersion that says so mends it") {
         surveys[0].bins[0].dispersion = found.dispersion;
         const FitCheck mended =

@@ -41,8 +41,7 @@ TEST_CASE("nested fits differ by the difference of their covariances", "[summary
 
 TEST_CASE("fits of the same data have no scatter to be measured in", "[summary]") {
     CHECK(std::isnan(nested_difference(velocity(1.1e-3, 1e-4), velocity(1e-3, 1e-4)).sigma));
-    CHECK(std::isnan(
-        nested_difference(velocity(1.1e-3, 1.01e-4), velocity(1e-3, 1e-4)).sigma));
+    CHECK(std::isnan(nested_difference(velocity(1.1e-3, 1.01e-4), velocity(1e-3, 1e-4)).sigma));
     VelocityGaussian crossed = velocity(1e-3, 1e-4);
     crossed.covariance(0, 0) *= 4.0;
     crossed.covariance(1, 1) *= 0.5;
