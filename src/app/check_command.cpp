@@ -85,15 +85,6 @@ std::string line_of_sampling(const Job& job, const ParameterSpace& space) {
         grouped(job.ensemble.max_steps));
 }
 
-/// The job with the weights it asks to be measured.
-Job weighed(const Job& job, const CommandOptions& options, Terminal& terminal) {
-    if (!job.is_unmeasured()) return job;
-    const InputRecord inputs{digests_of_inputs(job, ending_on_request(terminal.progress())),
-                             ""};
-    return with_measured_weights(
-        {job, inputs, options.n_threads()}, {}, Existing::refuse, true, terminal);
-}
-
 }  // namespace
 
 ExitCode check_command(const CommandOptions& options) {
@@ -101,7 +92,7 @@ ExitCode check_command(const CommandOptions& options) {
     const Job written = read_job(options.input);
     for (const std::string& warning : written.warnings) terminal.warn(warning);
     terminal.say(fmt::format("{}: {}", written.name, written.title));
-    const Job job = weighed(written, options, terminal);
+    const Job job = weighed(written, options.n_threads(), terminal);
     const Counts counts = count_surveys(job, terminal);
     const Posterior posterior(counts, job.model, job.seed);
     const std::vector<std::string> doubts = posterior.warnings();

@@ -12,6 +12,7 @@
 #include "app/fit.h"
 #include "app/hypotheses.h"
 #include "app/steps.h"
+#include "app/weigh_step.h"
 #include "deviascope/sky/position_match.h"
 #include "deviascope/summary/comparison.h"
 #include "summary/draw_moments.h"
@@ -343,11 +344,16 @@ class Comparer {
 
 ExitCode compare_command(const CommandOptions& options) {
     Terminal terminal(options.quiet);
-    Job job = read_job(options.input);
+    const Job written = read_job(options.input);
     const std::filesystem::path folder = folder_of(options);
     prepare_output(
         folder, {"compare.json", "compare.txt", "compare.csv"}, existing_of(options));
-    const InputRecord inputs = record_inputs(job, terminal);
+    const InputRecord inputs = record_inputs(written, terminal);
+    Job job = with_measured_weights({written, inputs, options.n_threads()},
+                                    folder,
+                                    existing_of(options),
+                                    false,
+                                    terminal);
     const CountsFile file = obtain_counts(job, inputs, folder, existing_of(options), terminal);
     measure_dispersions(job, file.counts, terminal);
     const Comparison comparison = Comparer(job, file.counts, options, terminal).compare();

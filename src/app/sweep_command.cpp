@@ -7,6 +7,7 @@
 #include "app/commands.h"
 #include "app/fit.h"
 #include "app/steps.h"
+#include "app/weigh_step.h"
 #include "deviascope/job/variation.h"
 #include "deviascope/summary/sweep.h"
 #include "summary/draw_moments.h"
@@ -55,8 +56,9 @@ SweepRow row_of(const Fit& fit, const Counts& counts) {
     return row;
 }
 
-SweepRow run(Job& job, const CommandOptions& options, Terminal& terminal) {
+SweepRow run(const Job& written, const CommandOptions& options, Terminal& terminal) {
     Terminal silent(true);
+    Job job = weighed(written, options.n_threads(), silent);
     const auto counts = std::make_shared<Counts>(count_surveys(job, silent));
     measure_dispersions(job, *counts, silent);
     Fitter fitter(job, options, terminal);
@@ -81,9 +83,9 @@ void warn_of_rows(Sweep& sweep) {
 
 ExitCode sweep_command(const CommandOptions& options) {
     Terminal terminal(options.quiet);
-    Job job = read_job(options.input);
+    const Job job = read_job(options.input);
     const std::filesystem::path folder = folder_of(options);
-    std::vector<Variant> variants = variants_of(job, options);
+    const std::vector<Variant> variants = variants_of(job, options);
     prepare_output(folder, {"sweep.json", "sweep.csv"}, existing_of(options));
     for (const std::string& warning : job.warnings) terminal.warn(warning);
 
@@ -92,7 +94,7 @@ ExitCode sweep_command(const CommandOptions& options) {
     sweep.frame = job.frame;
     sweep.rows.push_back(run(job, options, terminal));
     terminal.say("Run: the job as it is.");
-    for (Variant& variant : variants) {
+    for (const Variant& variant : variants) {
         SweepRow row = run(variant.job, options, terminal);
         row.path = variant.path;
         row.value = variant.value;

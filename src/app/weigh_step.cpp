@@ -183,4 +183,11 @@ Job with_measured_weights(const WeighStep& step,
     return measured.empty() ? job : completed(job, measured);
 }
 
+Job weighed(const Job& job, int threads, Terminal& terminal) {
+    if (!job.is_unmeasured()) return job;
+    const InputRecord inputs{digests_of_inputs(job, ending_on_request(terminal.progress())),
+                             ""};
+    return with_measured_weights({job, inputs, threads}, {}, Existing::refuse, true, terminal);
+}
+
 }  // namespace deviascope

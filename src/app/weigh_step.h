@@ -45,4 +45,7 @@ Job with_measured_weights(const WeighStep& step,
                           bool anew,
                           Terminal& terminal);
 
+/// The same, always measured and never written; a job that asks for nothing is left as it is.
+Job weighed(const Job& job, int threads, Terminal& terminal);
+
 }  // namespace deviascope

@@ -273,12 +273,6 @@ void TomlTable::refuse(const std::string& key, std::string why, std::string reme
     if (find(key)) fault(key, std::move(why), "", std::move(remedy));
 }
 
-void TomlTable::refuse_later(const std::string& key, std::string remedy) const {
-    const toml::node* node = find(key);
-    if (node)
-        fault(key, "found " + shown(*node) + ", not yet available", "", std::move(remedy));
-}
-
 void TomlTable::ignore_unknown_keys() const {
     if (table_) document_->visits_[table_].ignore_rest = true;
 }

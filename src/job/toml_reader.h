@@ -142,8 +142,6 @@ class TomlTable {
     void adopt(const std::string& key, const std::vector<Message>& faults) const;
     /// Makes a key known that must not be there, for the reason given.
     void refuse(const std::string& key, std::string why, std::string remedy) const;
-    /// A key, or a value, of a later version.
-    void refuse_later(const std::string& key, std::string remedy = "leave it out") const;
     /// No faults for keys that nobody asks for: where what is known hangs on a faulty value.
     void ignore_unknown_keys() const;
     /// Line of a key's value, from 1; of the table where it is absent.

@@ -140,9 +140,6 @@ TEST_CASE("each kind of value says what was found and what is allowed", "[job]")
              t.choice("k", {"galactic", "icrs"});
          },
          "found 7; \"galactic\" or \"icrs\" is allowed"},
-        {"k = 1",
-         [](TomlTable t) { t.refuse_later("k"); },
-         "found 1, not yet available; leave it out"},
     };
     for (const Case& c : cases) {
         INFO(c.text);

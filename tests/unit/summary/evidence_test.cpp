@@ -2,6 +2,7 @@
 #include "deviascope/summary/evidence.h"
 
 #include <Eigen/Cholesky>
+#include <Eigen/LU>
 #include <boost/math/distributions/normal.hpp>
 #include <catch2/catch.hpp>
 #include <cmath>
