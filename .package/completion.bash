@@ -4,12 +4,12 @@ _deviascope() {
     local word=${COMP_WORDS[COMP_CWORD]} previous=${COMP_WORDS[COMP_CWORD-1]} command=${COMP_WORDS[1]}
     COMPREPLY=()
     if [ "$COMP_CWORD" -eq 1 ]; then
-        mapfile -t COMPREPLY < <(compgen -W "run check count weigh sample summarise mock --help --version" -- "$word")
+        mapfile -t COMPREPLY < <(compgen -W "run check count weigh sample summarise compare sweep mock --help --version" -- "$word")
         return
     fi
     case $previous in
         -o|--output) mapfile -t COMPREPLY < <(compgen -d -- "$word"); return ;;
-        --threads) return ;;
+        --threads|--reference|--clustering|--vary) return ;;
     esac
     if [[ $word == -* ]]; then
         local options="--help --threads --quiet"
@@ -19,6 +19,8 @@ _deviascope() {
             summarise) options+=" --output --replace --strict" ;;
             count) options+=" --output --replace --maps" ;;
             weigh) options+=" --output --replace --check" ;;
+            compare) options+=" --output --replace --strict --reference --clustering" ;;
+            sweep) options+=" --output --replace --strict --vary" ;;
             mock) options+=" --output --replace" ;;
         esac
         mapfile -t COMPREPLY < <(compgen -W "$options" -- "$word")

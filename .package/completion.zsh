@@ -9,6 +9,8 @@ commands=(
     'weigh:measures the kinematic weights of bins'
     'sample:samples the posterior'
     'summarise:summarises a chain'
+    'compare:holds the posterior against a reference velocity, rival hypotheses, surveys and counts'
+    'sweep:runs the job again with other cuts, masks, priors or resolutions'
     'mock:makes mock catalogues with known truth'
 )
 everywhere=('--help[help]' '--threads[threads to use]:number:' '--quiet[no progress and no report]')
@@ -31,5 +33,7 @@ case $command in
     count) _arguments $everywhere $writes '--maps[write maps too]' '1:job:_files -g "*.toml"' ;;
     weigh) _arguments $everywhere $writes '--check[full-sky experiment]' '1:job:_files -g "*.toml"' ;;
     summarise) _arguments $everywhere $writes $strict '1:chain:_files -g "*.h5"' ;;
+    compare) _arguments $everywhere $writes $strict '--reference[prior with the velocity to compare with]:name:' '--clustering[prior of dipoles by clustering]:name:' '1:job:_files -g "*.toml"' ;;
+    sweep) _arguments $everywhere $writes $strict '*--vary[key and values]:path=values:' '1:job:_files -g "*.toml"' ;;
     mock) _arguments $everywhere $writes '1:scenario:_files -g "*.toml"' ;;
 esac
