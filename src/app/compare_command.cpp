@@ -3,8 +3,6 @@
 
 #include <algorithm>
 #include <cmath>
-#include <numbers>
-#include <numeric>
 #include <set>
 #include <utility>
 
@@ -13,6 +11,7 @@
 #include "app/hypotheses.h"
 #include "app/steps.h"
 #include "app/weigh_step.h"
+#include "deviascope/counts/sky_overlap.h"
 #include "deviascope/sky/position_match.h"
 #include "deviascope/summary/comparison.h"
 #include "summary/draw_moments.h"
@@ -64,10 +63,11 @@ class Comparer {
     Comparison compare() {
         compare_hypotheses();
         compare_surveys();
+        const DrawMoments joint = moments_of(joint_->parameters());
         all_.fit = check_fit(*counts_,
                              joint_->posterior->space(),
-                             moments_of(joint_->parameters()).mean,
-                             moments_of(joint_->parameters()).covariance,
+                             joint.mean,
+                             joint.covariance,
                              options_.n_threads());
         find_overlaps();
         all_.warnings = job_.warnings;
@@ -274,8 +274,13 @@ class Comparer {
         const std::vector<std::optional<PositionIndex>> positions = indexed_positions(radius);
         for (std::size_t a = 0; a < counts_->surveys.size(); ++a)
             for (std::size_t b = a + 1; b < counts_->surveys.size(); ++b) {
-                SurveyOverlap overlap =
-                    overlap_of(counts_->surveys[a], counts_->surveys[b], radius);
+                const SkyOverlap sky = sky_overlap(*counts_, a, b, radius);
+                SurveyOverlap overlap{counts_->surveys[a].name,
+                                      counts_->surveys[b].name,
+                                      sky.shared_sky_fraction,
+                                      job_.match_arcsec,
+                                      std::nullopt,
+                                      sky.expected_by_chance};
                 if (positions[a] && positions[b])
                     overlap.matches = positions[a]->matches_of(*positions[b]);
                 all_.overlap.push_back(overlap);
@@ -298,38 +303,6 @@ class Comparer {
         return indices;
     }
 
-    /// Sources of a survey in each pixel of the sky, -1 outside its footprints.
-    std::vector<double> sources_on_sky(const SurveyCounts& survey) const {
-        const Pixelisation grid(counts_->nside);
-        std::vector<double> sources(static_cast<std::size_t>(grid.n_pixels()), -1.0);
-        for (const BinCounts& bin : survey.bins) {
-            const Footprint& footprint = survey.footprints[bin.footprint];
-            for (std::size_t p = 0; p < bin.count.size(); ++p) {
-                double& there = sources[static_cast<std::size_t>(footprint.pixel[p])];
-                there = std::max(there, 0.0) + static_cast<double>(bin.count[p]);
-            }
-        }
-        return sources;
-    }
-
-    SurveyOverlap overlap_of(const SurveyCounts& first,
-                             const SurveyCounts& second,
-                             double radius) const {
-        const std::vector<double> one = sources_on_sky(first), other = sources_on_sky(second);
-        const double share_of_pixel =
-            std::numbers::pi * radius * radius / Pixelisation(counts_->nside).solid_angle();
-        SurveyOverlap overlap;
-        overlap.first = first.name;
-        overlap.second = second.name;
-        overlap.match_arcsec = job_.match_arcsec;
-        for (std::size_t p = 0; p < one.size(); ++p) {
-            if (one[p] < 0.0 || other[p] < 0.0) continue;
-            overlap.shared_sky_fraction += 1.0 / static_cast<double>(one.size());
-            overlap.expected_by_chance += other[p] * -std::expm1(-one[p] * share_of_pixel);
-        }
-        return overlap;
-    }
-
     const Job& job_;
     std::shared_ptr<const Counts> counts_;
     const CommandOptions& options_;
@@ -349,11 +322,8 @@ ExitCode compare_command(const CommandOptions& options) {
     prepare_output(
         folder, {"compare.json", "compare.txt", "compare.csv"}, existing_of(options));
     const InputRecord inputs = record_inputs(written, terminal);
-    Job job = with_measured_weights({written, inputs, options.n_threads()},
-                                    folder,
-                                    existing_of(options),
-                                    false,
-                                    terminal);
+    Job job = with_measured_weights(
+        {written, inputs, options.n_threads()}, folder, existing_of(options), false, terminal);
     const CountsFile file = obtain_counts(job, inputs, folder, existing_of(options), terminal);
     measure_dispersions(job, file.counts, terminal);
     const Comparison comparison = Comparer(job, file.counts, options, terminal).compare();
