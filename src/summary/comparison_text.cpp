@@ -144,7 +144,10 @@ std::string hypotheses_block(const Comparison& all) {
                    plain(one.evidence.bridge.value - best, "{:.2f}"),
                    with_error(one.savage_dickey),
                    with_error(one.evidence.importance)});
-    text += priors.text() + "\n" + table.text() + "\n" + width_table(all) + "\n";
+    for (const std::string& part : {priors.text(), table.text(), width_table(all)}) {
+        text += part;
+        text += '\n';
+    }
     text += folded(verdict(all), 0);
     text += folded(
         "Evidence by bridge sampling (Meng & Wong 1996), relative to the isotropic sky; a "
@@ -186,7 +189,7 @@ std::string consistency_words(const Comparison& all) {
     if (found.n_surveys < 2)
         return "Fewer than two surveys hold the velocity by themselves: nothing to compare.";
     return fmt::format(
-        "All {} surveys that hold the velocity by themselves: chi2 {:.2f} for {:.0f} degrees "
+        "The {} surveys that hold the velocity by themselves: chi2 {:.2f} for {:.0f} degrees "
         "of "
         "freedom, p = {:.2g}, {:.1f} sigma; ln of the suspiciousness (Handley & Lemos 2019) "
         "{:.2f}{}.",
@@ -203,6 +206,7 @@ std::string consistency_words(const Comparison& all) {
 }
 
 std::string surveys_block(const Comparison& all) {
+    if (all.alone.size() < 2) return "";
     std::string text = heading("Survey against survey");
     TextTable table("lrr");
     table.row({"difference of velocities", "chi2 (3)", "sigma"});
@@ -250,7 +254,7 @@ std::string fit_block(const Comparison& all) {
 
 std::string overlap_block(const Comparison& all) {
     if (all.overlap.empty()) return "";
-    std::string text = "\n" + heading("Sky and sources in common");
+    std::string text = heading("Sky and sources in common");
     TextTable table("lrrrr");
     table.row({"", "shared sky", "radius (arcsec)", "matches", "by chance"});
     for (const SurveyOverlap& one : all.overlap)
@@ -270,13 +274,18 @@ std::string overlap_block(const Comparison& all) {
 
 std::string to_text(const Comparison& all) {
     std::string text = heading(all.job + ": comparison", '=');
-    text += "\n" + warnings_block(all.warnings);
-    text += "\n" + offset_block(all);
-    text += "\n" + hypotheses_block(all);
-    text += "\n" + intrinsic_block(all);
-    if (all.alone.size() > 1) text += "\n" + surveys_block(all);
-    text += "\n" + fit_block(all);
-    return text + overlap_block(all);
+    for (const std::string& block : {warnings_block(all.warnings),
+                                     offset_block(all),
+                                     hypotheses_block(all),
+                                     intrinsic_block(all),
+                                     surveys_block(all),
+                                     fit_block(all),
+                                     overlap_block(all)}) {
+        if (block.empty()) continue;
+        text += '\n';
+        text += block;
+    }
+    return text;
 }
 
 }  // namespace deviascope

@@ -25,6 +25,11 @@ std::string cell(double value) {
     return std::isfinite(value) ? fmt::format("{}", value) : "";
 }
 
+void add_cell(std::string& line, double value) {
+    line += ',';
+    line += cell(value);
+}
+
 /// A field of CSV, quoted where it must be.
 std::string field(const std::string& text) {
     if (text.find_first_of(",\"\n") == std::string::npos) return text;
@@ -109,7 +114,7 @@ std::string to_csv(const Sweep& sweep) {
                             field(row.value),
                             row.sources,
                             cell(row.sky_fraction));
-        for (const double value : row.velocity.mean) text += "," + cell(value);
+        for (const double value : row.velocity.mean) add_cell(text, value);
         for (const double value : {speed.median,
                                    speed.interval68[0],
                                    speed.interval68[1],
@@ -117,10 +122,9 @@ std::string to_csv(const Sweep& sweep) {
                                    row.galactic ? row.galactic->lat_deg : NAN,
                                    row.difference.chi2,
                                    row.difference.sigma})
-            text += "," + cell(value);
+            add_cell(text, value);
         text += row.converged ? ",true" : ",false";
-        for (const SweptDipole& dipole : row.intrinsic)
-            text += "," + cell(dipole.amplitude.median);
+        for (const SweptDipole& dipole : row.intrinsic) add_cell(text, dipole.amplitude.median);
         text += "\n";
     }
     return text;
