@@ -131,8 +131,10 @@ std::string to_csv(const Sweep& sweep) {
 }
 
 std::string to_text(const Sweep& sweep) {
-    std::string text =
-        heading(sweep.job + ": sweep", '=') + "\n" + warnings_block(sweep.warnings) + "\n";
+    std::string text = heading(sweep.job + ": sweep", '=');
+    text += '\n';
+    text += warnings_block(sweep.warnings);
+    text += '\n';
     TextTable table("lrrrrrr");
     table.row(
         {"", "sources", "speed (km/s)", "l (deg)", "b (deg)", "intrinsic (10^-3)", "sigma"});
