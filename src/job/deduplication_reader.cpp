@@ -55,19 +55,20 @@ std::vector<Deduplication> read_deduplication(const TomlTable& job,
     for (const std::string& written : job.texts(key)) {
         const auto one = parsed(written, surveys);
         if (!one) {
-            job.fault(key, fmt::format("\"{}\"", written), std::string(form) + " are allowed");
+            job.fault(
+                key, fmt::format("found \"{}\"", written), std::string(form) + " are allowed");
             continue;
         }
         for (const std::size_t survey : {one->first, one->second})
             if (!has_positions(surveys[survey]))
                 job.fault(key,
-                          fmt::format("\"{}\": {} has no positions of sources",
+                          fmt::format("found \"{}\": {} has no positions of sources",
                                       written,
                                       surveys[survey].name),
                           "surveys with bins that select from a catalogue are allowed");
         if (depends(one->first, one->second, all)) {
             job.fault(key,
-                      fmt::format("\"{}\" closes a circle", written),
+                      fmt::format("found \"{}\", which closes a circle", written),
                       "a survey may not give way to one that gives way to it");
             continue;
         }

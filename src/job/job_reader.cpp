@@ -76,8 +76,8 @@ class JobReader {
             table.integer("seed", 0, largest_integer, required).value_or(0));
         job_.nside = read_nside(table);
         job_.frame = read_frame(table, "frame").value_or(Frame::galactic);
-        job_.match_arcsec = table.number("match_arcsec", match_range).value_or(5.0);
         table.texts("deduplicate");  // understood once the surveys are known
+        job_.match_arcsec = table.number("match_arcsec", match_range).value_or(5.0);
     }
 
     void read_velocity() {

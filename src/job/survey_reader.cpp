@@ -222,9 +222,9 @@ SurveyReading read_survey(const TomlTable& table,
     for (const TomlTable& bin : bins) {
         reading.input.bins.push_back(
             read_bin_input(bin, reading.input, table.has("catalogue"), bin_rule, surroundings));
-        if (asks_for_dispersion(bin))
-            reading.measure_dispersion.push_back(reading.model.bins.size());
         reading.model.bins.push_back(read_bin_model(bin));
+        if (asks_for_dispersion(bin))
+            reading.measure_dispersion.push_back(reading.model.bins.size() - 1);
         check_wall(bin, reading.model.bins.back().bias_ratio, prior);
         bin_names.push_back(reading.input.bins.back().name);
     }

@@ -41,14 +41,12 @@ double information_gained(const VelocityGaussian& posterior, const VectorPrior& 
 std::optional<VelocityGaussian> without_prior(const VelocityGaussian& posterior,
                                               const VectorPrior& prior) {
     if (!(posterior.covariance.diagonal().array() > 0.0).all()) return std::nullopt;
-    const Eigen::Matrix3d sigma = posterior.covariance.inverse();
-    Eigen::Matrix3d information = sigma;
-    Eigen::Vector3d weighted = sigma * posterior.mean;
-    if (const auto* gaussian = std::get_if<GaussianPrior>(&prior.kind())) {
-        const Eigen::Matrix3d precision = gaussian->covariance.inverse();
-        information -= precision;
-        weighted -= precision * gaussian->mean;
-    }
+    const auto* gaussian = std::get_if<GaussianPrior>(&prior.kind());
+    if (gaussian == nullptr) return posterior;
+    const Eigen::Matrix3d whole = posterior.covariance.inverse();
+    const Eigen::Matrix3d own = gaussian->covariance.inverse();
+    const Eigen::Matrix3d information = whole - own;
+    const Eigen::Vector3d weighted = whole * posterior.mean - own * gaussian->mean;
     // In units of the posterior: what is left must be a part of it that can be told from noise.
     constexpr double least_share = 0.05;
     const Eigen::Matrix3d factor = posterior.covariance.llt().matrixL();

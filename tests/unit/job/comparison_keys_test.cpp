@@ -58,7 +58,7 @@ TEST_CASE("deduplication that cannot be carried out is refused", "[job]") {
                Catch::Contains("two surveys of the job"));
     CHECK_THAT(faults_of(deduplicated("[\"dunlin over lantern\", \"lantern over gnomon\", "
                                       "\"gnomon over dunlin\"]")),
-               Catch::Contains("\"gnomon over dunlin\" closes a circle"));
+               Catch::Contains("\"gnomon over dunlin\", which closes a circle"));
 }
 
 TEST_CASE("a dispersion to be measured is 1 until it is", "[job]") {

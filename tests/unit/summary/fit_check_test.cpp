@@ -118,8 +118,9 @@ TEST_CASE("a dipole that the model lacks does not leak into the multipoles", "[s
 }
 
 TEST_CASE("a quadrupole in the counts is found as one", "[summary]") {
-    std::vector<synthetic::Survey> surveys = cut_sky;
-    surveys[0].bins[0].sources = 1e6;
+    // On the full sky, where multipoles do not mix: 10^6 sources and 0.05 x y give sum lambda
+    // (0.05 x y)^2 = 10^6 0.0025 / 15 = 167.
+    const std::vector<synthetic::Survey> surveys{{"dunlin", {{"faint", 1e6, 3.0}}}};
     Counts counts = synthetic::make_counts(8, Eigen::Vector3d::Zero(), surveys, seed);
     BinCounts& bin = counts.surveys[0].bins[0];
     const Footprint& footprint = counts.surveys[0].footprints[0];
@@ -127,7 +128,7 @@ TEST_CASE("a quadrupole in the counts is found as one", "[summary]") {
     for (std::size_t p = 0; p < bin.count.size(); ++p) {
         const Direction n = grid.centre(footprint.pixel[p]);
         bin.count[p] = static_cast<std::uint32_t>(
-            std::lround(bin.count[p] * (1.0 + 0.02 * n.x() * n.y())));
+            std::lround(bin.count[p] * (1.0 + 0.05 * n.x() * n.y())));
     }
     const FitCheck found = check(counts, synthetic::make_model(surveys, none, none)).front();
     CHECK(found.power[0].probability < 1e-6);
