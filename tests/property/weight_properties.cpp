@@ -67,11 +67,11 @@ TEST_CASE("pulls of measured weights are standard normal, 8 catalogues", "[weigh
     check_pulls(100'000, 8, 20260817, 0.18, 0.80);
 }
 
-TEST_CASE("pulls of measured weights, 100 catalogues of 10^5 sources", "[weights][long]") {
+TEST_CASE("pulls of measured weights, 100 catalogues of 10^5 sources", "[.][weights][long]") {
     check_pulls(100'000, 100, 52001, 0.05, 0.22);
 }
 
-TEST_CASE("pulls of measured weights, 100 catalogues of 10^6 sources", "[weights][long]") {
+TEST_CASE("pulls of measured weights, 100 catalogues of 10^6 sources", "[.][weights][long]") {
     check_pulls(1'000'000, 100, 52002, 0.05, 0.22);
 }
 
