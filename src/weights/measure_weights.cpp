@@ -90,7 +90,7 @@ class Measurement {
         for (const std::int64_t source : tally_.first_without_index())
             places.push_back(sources_.place_of(source));
         throw InputError({"survey " + survey_.name,
-                          fmt::format("{} at the edges of bins no spectral index alpha: {}{}",
+                          fmt::format("{} no spectral index alpha at the edges of bins: {}{}",
                                       n == 1 ? "1 source has" : grouped(n) + " sources have",
                                       fmt::join(places, ", "),
                                       n > std::ssize(places) ? ", …" : ""),
