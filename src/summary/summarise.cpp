@@ -11,6 +11,7 @@
 #include "deviascope/core/physical_constants.h"
 #include "deviascope/summary/summary.h"
 #include "summary/cautions.h"
+#include "summary/weight_modes.h"
 
 namespace deviascope {
 namespace {
@@ -287,6 +288,23 @@ std::vector<BinSummary> bins_of(const Rows& rows,
     return bins;
 }
 
+/// Modes of the weights of one survey.
+WeightModes modes_of(const Rows& rows,
+                     const Counts& counts,
+                     const ParameterSpace& space,
+                     std::size_t survey) {
+    const WeightPrior& prior = space.options().surveys[survey].weights;
+    Eigen::VectorXd n(prior.mean.size());
+    Eigen::MatrixXd draws(rows.rows(), prior.mean.size());
+    for (const BinTerm& term : space.terms()) {
+        if (term.survey != survey) continue;
+        const auto bin = static_cast<Eigen::Index>(term.bin);
+        n[bin] = static_cast<double>(counts.surveys[survey].bins[term.bin].total());
+        draws.col(bin) = rows.col(term.weight);
+    }
+    return weight_modes(n, prior, draws);
+}
+
 // ---- separation ----
 
 Separation separation_from(const Rows& rows,
@@ -329,6 +347,8 @@ Summary summarise(const Chain& chain,
                              std::make_move_iterator(vectors.end()));
     summary.offset_from_cmb = offset_of(rows, space.vectors().front(), options.cmb_velocity);
     summary.bins = bins_of(rows, chain.counts, space);
+    for (std::size_t survey = 0; survey < chain.counts.surveys.size(); ++survey)
+        summary.weight_modes.push_back(modes_of(rows, chain.counts, space, survey));
     summary.separation = separation_from(rows, chain.counts, space, summary.velocity);
     for (const SurveyCounts& survey : chain.counts.surveys) {
         summary.cuts.push_back(survey.cuts);

@@ -76,6 +76,27 @@ Json bin(const BinSummary& bin) {
               {"prior_sd", number(bin.weight_prior_sd)}}}};
 }
 
+Json weight_mode(const WeightMode& mode) {
+    const bool is_free = mode.prior_sd > 0.0;
+    return {{"mean", is_free ? number(mode.mean) : Json()},
+            {"sd", is_free ? number(mode.sd) : Json()},
+            {"prior_sd", is_free ? number(mode.prior_sd) : Json()}};
+}
+
+Json weight_modes(const Summary& summary) {
+    Json json = Json::object();
+    for (std::size_t survey = 0; survey < summary.weight_modes.size(); ++survey) {
+        const WeightModes& modes = summary.weight_modes[survey];
+        Json differential = weight_mode(modes.differential);
+        const double false_dipole = modes.differential.sd * summary.velocity.amplitude.median;
+        differential["false_dipole"] =
+            modes.differential.prior_sd > 0.0 ? number(false_dipole) : Json();
+        json[summary.survey_names[survey]] = {{"common", weight_mode(modes.common)},
+                                              {"differential", differential}};
+    }
+    return json;
+}
+
 Json verdict(const SeparationEntry& entry) {
     return entry.velocity_prior_share ? Json(entry.verdict) : Json();
 }
@@ -131,6 +152,7 @@ std::string to_json(const Summary& summary) {
                        {"velocity", velocity(summary)},
                        {"intrinsic", intrinsic},
                        {"bins", bins},
+                       {"weight_modes", weight_modes(summary)},
                        {"separation", separation(summary)},
                        {"sampling", sampling(summary.sampling)},
                        {"warnings", Json(summary.warnings)}};

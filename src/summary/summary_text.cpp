@@ -143,11 +143,43 @@ std::string vector_block(const VectorSummary& vector) {
 
 // ---- bins and separation ----
 
-std::string bins_block(const std::vector<BinSummary>& bins) {
+/// What the errors of the weights, taken together, do to the vectors.
+std::string modes_block(const Summary& summary) {
+    TextTable table("lrrrr");
+    table.row({"weights taken together",
+               "common factor",
+               "prior",
+               "shift left over",
+               "false dipole (10^-3)"});
+    bool any = false;
+    for (std::size_t survey = 0; survey < summary.weight_modes.size(); ++survey) {
+        const auto& [common, differential] = summary.weight_modes[survey];
+        if (common.prior_sd <= 0.0) continue;
+        any = true;
+        const auto pair = [](double mean, double sd) {
+            return rounded(mean, sd) + " +- " + rounded(sd, sd);
+        };
+        table.row({summary.survey_names[survey],
+                   pair(common.mean, common.sd),
+                   pair(1.0, common.prior_sd),
+                   pair(differential.mean, differential.sd),
+                   short_number(1e3 * differential.sd * summary.velocity.amplitude.median)});
+    }
+    if (!any) return "";
+    const std::string legend = folded(
+        "Common factor: the error that all weights of a survey share; it rescales the "
+        "velocity. Shift left over: what it does not explain; it fakes an intrinsic dipole "
+        "along the velocity, of the standard deviation given. Both are part of the posterior "
+        "above.",
+        2);
+    return fmt::format("\n{}{}", table.text(), legend);
+}
+
+std::string bins_block(const Summary& summary) {
     TextTable counts("lrrrrr"), weights("lrrr");
     counts.row({"bin", "sources", "pixels", "of the sky", "sources per sr", "68 % interval"});
     weights.row({"kinematic weight", "median", "68 % interval", "prior"});
-    for (const BinSummary& bin : bins) {
+    for (const BinSummary& bin : summary.bins) {
         const std::string name = bin.survey + " " + bin.bin;
         const double monopole = half_width(bin.monopole.interval68);
         counts.row({name,
@@ -168,7 +200,7 @@ std::string bins_block(const std::vector<BinSummary>& bins) {
              rounded(bin.weight.interval68, weight),
              rounded(bin.weight_prior_mean, prior_sd) + " +- " + rounded(prior_sd, prior_sd)});
     }
-    return heading("Bins") + counts.text() + "\n" + weights.text();
+    return heading("Bins") + counts.text() + "\n" + weights.text() + modes_block(summary);
 }
 
 std::string share_text(const std::optional<double>& share) {
@@ -318,7 +350,7 @@ std::string to_text(const Summary& summary) {
         blocks.back() += fmt::format("\n{}", offset_table(*summary.offset_from_cmb));
     for (const VectorSummary& vector : summary.intrinsic)
         blocks.push_back(vector_block(vector));
-    blocks.push_back(bins_block(summary.bins));
+    blocks.push_back(bins_block(summary));
     blocks.push_back(separation_block(summary));
     blocks.push_back(cuts_block(summary));
     blocks.push_back(sampling_block(summary.sampling));

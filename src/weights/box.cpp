@@ -81,6 +81,22 @@ Boxes::Boxes(const SurveyInput& survey, const std::vector<std::size_t>& bins) {
     }
 }
 
+std::size_t Boxes::first_like(std::size_t e) const {
+    const auto others = [&](const Edge& of) {
+        std::vector<BoxSide> sides = box[of.box].sides;
+        sides.erase(sides.begin() + static_cast<std::ptrdiff_t>(of.side));
+        return sides;
+    };
+    const auto dimension_at = [&](const Edge& of) {
+        return box[of.box].sides[of.side].dimension;
+    };
+    for (std::size_t i = 0; i < e; ++i)
+        if (edge[i].value == edge[e].value && dimension_at(edge[i]) == dimension_at(edge[e]) &&
+            others(edge[i]) == others(edge[e]))
+            return i;
+    return e;
+}
+
 bool Boxes::need_spectral_index() const {
     return std::ranges::any_of(edge,
                                [](const Edge& e) { return feels_spectral_index(e.kind); });

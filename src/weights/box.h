@@ -21,6 +21,7 @@ struct Dimension {
 struct BoxSide {
     std::size_t dimension = 0;
     double low = 0.0, high = 0.0;
+    bool operator==(const BoxSide&) const = default;
 };
 
 /// A bin: sources whose values lie inside all sides.
@@ -51,6 +52,10 @@ struct Boxes {
     Boxes(const SurveyInput& survey, const std::vector<std::size_t>& bins);
 
     bool need_spectral_index() const;
+
+    /// The first edge at which the same sources cross: equal in property and value, of boxes
+    /// whose other sides are equal (neighbouring bins share such an edge).
+    std::size_t first_like(std::size_t e) const;
 
     std::vector<Dimension> dimension;
     std::vector<Box> box;

@@ -5,6 +5,7 @@
 #include <array>
 #include <cmath>
 
+#include "core/lanes.h"
 #include "deviascope/core/parallel.h"
 #include "deviascope/core/random.h"
 
@@ -45,6 +46,12 @@ class Multiplicities {
     std::array<std::uint8_t, 1U << 16U> of_rank_{};
 };
 
+/// sum += factor times multiplicity, replicate by replicate.
+DEVIASCOPE_WIDEST_INSTRUCTIONS
+void add_multiples(const double* multiplicity, double factor, double* sum) {
+    for (std::size_t r = 0; r < CrossingTally::block; ++r) sum[r] += factor * multiplicity[r];
+}
+
 const Multiplicities& multiplicities() {
     static const Multiplicities table;
     return table;
@@ -57,8 +64,13 @@ CrossingTally::CrossingTally(const Boxes& boxes, const TallyOptions& options)
       options_(options),
       extent_(2 * boxes.edge.size(), 0.0),
       sources_in_box_(boxes.box.size(), 0) {
-    for (const Edge& edge : boxes.edge) cells_.emplace_back(neighbourhood_of(edge.kind));
-    n_slots_ = slot_of_box(boxes.box.size());
+    for (std::size_t e = 0; e < boxes.edge.size(); ++e) {
+        cells_.emplace_back(neighbourhood_of(boxes.edge[e].kind));
+        sums_of_.push_back(options.weights_vary ? e : boxes.first_like(e));
+        first_slot_.push_back(n_slots_);
+        if (sums_of_[e] == e) n_slots_ += EdgeCells::number;
+    }
+    n_slots_ += boxes.box.size();
     const auto replicates = static_cast<std::size_t>(options.replicates);
     blocks_.resize((replicates + block - 1) / block);
     const std::size_t n_index = options.index_varies ? n_slots_ : 0;
@@ -92,13 +104,21 @@ void CrossingTally::look_at(const SourceBatch& batch,
     slice.sources_in_box.assign(sources_in_box_.size(), 0);
     slice.without_index.clear();
     slice.n_without_index = 0;
-    for (std::size_t row = begin; row < end; ++row)
-        if (batch.kept[row] != 0) look_at_row(batch, row, slice);
+    std::vector<double> y(boxes_.dimension.size());
+    for (std::size_t row = begin; row < end; ++row) {
+        if (batch.kept[row] == 0) continue;
+        for (std::size_t d = 0; d < y.size(); ++d)
+            y[d] = coordinate_of(boxes_.dimension[d].kind, batch.value[d][row]);
+        look_at_row(batch, row, y, slice);
+    }
 }
 
 /// A source inside a box may cross any of its edges; one that misses a single side may cross
 /// the edges of that side; any other lies across a corner and crosses nothing.
-void CrossingTally::look_at_row(const SourceBatch& batch, std::size_t row, Slice& slice) const {
+void CrossingTally::look_at_row(const SourceBatch& batch,
+                                std::size_t row,
+                                const std::vector<double>& y,
+                                Slice& slice) const {
     for (std::size_t b = 0; b < boxes_.box.size(); ++b) {
         if (!batch.weight.empty() && batch.weight[b][row] == 0.0) continue;
         const std::vector<BoxSide>& sides = boxes_.box[b].sides;
@@ -112,10 +132,10 @@ void CrossingTally::look_at_row(const SourceBatch& batch, std::size_t row, Slice
         }
         if (n_missed > 1) continue;
         if (n_missed == 1) {
-            add_edges(batch, row, b, missed, slice);
+            add_edges(batch, row, y, b, missed, slice);
             continue;
         }
-        for (std::size_t s = 0; s < sides.size(); ++s) add_edges(batch, row, b, s, slice);
+        for (std::size_t s = 0; s < sides.size(); ++s) add_edges(batch, row, y, b, s, slice);
         const double weight = batch.weight.empty() ? 1.0 : batch.weight[b][row];
         const auto source = batch.first_source + static_cast<std::int64_t>(row);
         slice.terms.push_back({source, slot_of_box(b), weight, 0.0});
@@ -125,15 +145,18 @@ void CrossingTally::look_at_row(const SourceBatch& batch, std::size_t row, Slice
 
 void CrossingTally::add_edges(const SourceBatch& batch,
                               std::size_t row,
+                              const std::vector<double>& y,
                               std::size_t box,
                               std::size_t side,
                               Slice& slice) const {
-    const double value = batch.value[boxes_.box[box].sides[side].dimension][row];
+    const std::size_t dimension = boxes_.box[box].sides[side].dimension;
+    const double value = batch.value[dimension][row];
     const double weight = batch.weight.empty() ? 1.0 : batch.weight[box][row];
     const auto source = batch.first_source + static_cast<std::int64_t>(row);
     for (const std::size_t e : boxes_.edges_of_side[boxes_.first_side[box] + side]) {
+        if (sums_of_[e] != e) continue;
         const Edge& edge = boxes_.edge[e];
-        const double distance = std::abs(coordinate_of(edge.kind, value) - edge.centre);
+        const double distance = std::abs(y[dimension] - edge.centre);
         if (std::isnan(distance)) continue;
         const bool above = value >= edge.value;
         double& extent = slice.extent[2 * e + (above ? 1 : 0)];
@@ -150,10 +173,8 @@ void CrossingTally::add_edges(const SourceBatch& batch,
                 continue;
             }
         }
-        slice.terms.push_back({source,
-                               e * EdgeCells::number + cells_[e].cell(distance, above),
-                               weight,
-                               weight * index});
+        slice.terms.push_back(
+            {source, first_slot_[e] + cells_[e].cell(distance, above), weight, weight * index});
     }
 }
 
@@ -191,12 +212,10 @@ void CrossingTally::add_to_block(std::size_t number, const std::vector<Slice>& s
                               number);
                 multiplicities().draw(stream, multiplicity);
             }
-            double* count = &sums.count[term.slot * block];
-            for (std::size_t r = 0; r < block; ++r) count[r] += multiplicity[r] * term.weight;
-            if (!options_.index_varies || term.weight_times_index == 0.0) continue;
-            double* index = &sums.index[term.slot * block];
-            for (std::size_t r = 0; r < block; ++r)
-                index[r] += multiplicity[r] * term.weight_times_index;
+            const std::size_t place = term.slot * block;
+            add_multiples(multiplicity.data(), term.weight, &sums.count[place]);
+            if (term.weight_times_index != 0.0)
+                add_multiples(multiplicity.data(), term.weight_times_index, &sums.index[place]);
         }
     }
 }
@@ -210,7 +229,7 @@ std::vector<double> CrossingTally::sums(std::size_t edge,
     const std::vector<double>& values = index ? from.index : from.count;
     std::vector<double> out(EdgeCells::number);
     for (std::size_t cell = 0; cell < out.size(); ++cell)
-        out[cell] = values[(edge * EdgeCells::number + cell) * stride + lane];
+        out[cell] = values[(first_slot_[sums_of_[edge]] + cell) * stride + lane];
     return out;
 }
 

@@ -29,6 +29,8 @@ struct TallyOptions {
     int threads = 1;
     /// Whether 1 + alpha differs from source to source, so that its sums are kept.
     bool index_varies = false;
+    /// Whether batches carry weights, which differ from box to box.
+    bool weights_vary = false;
 };
 
 /// Sums over the sources of a survey, for the catalogue itself and for each bootstrap replicate
@@ -55,6 +57,8 @@ class CrossingTally {
     /// Whether sums with 1 + alpha are kept.
     bool index_varies() const { return options_.index_varies; }
     const EdgeCells& cells(std::size_t edge) const { return cells_[edge]; }
+    /// The edge whose sums an edge shares: itself, or an earlier one.
+    std::size_t sums_of(std::size_t edge) const { return sums_of_[edge]; }
 
     /// Of replicate `replicate` (0: the catalogue, 1 …: bootstrap), the sums of an edge's cells
     /// (EdgeCells::number of them).
@@ -66,8 +70,8 @@ class CrossingTally {
     /// Sources in a box, each once.
     std::int64_t sources_in_box(std::size_t box) const { return sources_in_box_[box]; }
     /// Largest distance from the edge, in y, of a source near it, below and above.
-    double extent_below(std::size_t edge) const { return extent_[2 * edge]; }
-    double extent_above(std::size_t edge) const { return extent_[2 * edge + 1]; }
+    double extent_below(std::size_t edge) const { return extent_[2 * sums_of_[edge]]; }
+    double extent_above(std::size_t edge) const { return extent_[2 * sums_of_[edge] + 1]; }
     /// Sources near some edge, or in a box, without a value of 1 + alpha.
     std::int64_t sources_without_index() const { return without_index_; }
     /// The numbers of the first of them, five at most.
@@ -99,9 +103,14 @@ class CrossingTally {
                  std::size_t begin,
                  std::size_t end,
                  Slice& slice) const;
-    void look_at_row(const SourceBatch& batch, std::size_t row, Slice& slice) const;
+    /// @param y  coordinates of the row, one a dimension
+    void look_at_row(const SourceBatch& batch,
+                     std::size_t row,
+                     const std::vector<double>& y,
+                     Slice& slice) const;
     void add_edges(const SourceBatch& batch,
                    std::size_t row,
+                   const std::vector<double>& y,
                    std::size_t box,
                    std::size_t side,
                    Slice& slice) const;
@@ -110,13 +119,15 @@ class CrossingTally {
     void add_to_block(std::size_t number, const std::vector<Slice>& slices);
     std::vector<double> sums(std::size_t edge, std::size_t replicate, bool index) const;
     std::size_t slot_of_box(std::size_t box) const {
-        return cells_.size() * EdgeCells::number + box;
+        return n_slots_ - boxes_.box.size() + box;
     }
 
     const Boxes& boxes_;
     TallyOptions options_;
     std::vector<EdgeCells> cells_;
-    std::size_t n_slots_;
+    std::vector<std::size_t> sums_of_;     // of each edge
+    std::vector<std::size_t> first_slot_;  // of each edge that has sums of its own
+    std::size_t n_slots_ = 0;
     Block catalogue_;  // a block of one replicate
     std::vector<Block> blocks_;
     std::vector<double> extent_;

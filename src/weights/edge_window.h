@@ -17,6 +17,7 @@ struct EdgeWindow {
     int below = 0;
     int above = 0;
     int n_cells() const { return below + above; }
+    bool operator==(const EdgeWindow&) const = default;
 };
 
 /// Degree of ln f in the windows that are used; its test is made with `test_degree`.
@@ -42,6 +43,7 @@ struct EdgePlan {
     bool too_few = false;    ///< of sources: nothing can be said
     bool unsettled = false;  ///< even in the narrowest windows ln f is no polynomial
     bool falls_off = false;  ///< far fewer sources outside than the inside lets expect
+    bool operator==(const EdgePlan&) const = default;
 };
 
 /// Chooses the window that balances bias and noise. Windows shrink from the whole neighbourhood

@@ -5,6 +5,7 @@
 #include <fmt/ranges.h>
 
 #include <algorithm>
+#include <array>
 #include <cmath>
 #include <limits>
 #include <utility>
@@ -45,8 +46,10 @@ class Measurement {
                   options.survey,
                   std::max(options.replicates, 4 * static_cast<int>(bins.size())),
                   options.threads,
-                  sources_.index_varies()}),
-          scatter_(boxes_, physics, options_, sources_.index_varies()) {
+                  sources_.index_varies(),
+                  sources_.weights_vary()}),
+          scatter_(
+              boxes_, physics, options_, sources_.index_varies(), sources_.weights_vary()) {
         if (options.experiment_speed > 0.0)
             experiment_.emplace(boxes_, options_, sources_.one_plus_alpha());
     }
@@ -62,7 +65,11 @@ class Measurement {
         const WeightEstimator estimator(boxes_, tally_, sources_.one_plus_alpha());
         refuse_empty_edges(estimator);
         find_replicates(estimator);
-        for (std::size_t b = 0; b < boxes_.box.size(); ++b) report_bin(estimator, b);
+        const auto chosen = estimator.weights(0, WindowWidth::chosen);
+        const auto half = estimator.weights(0, WindowWidth::half);
+        const auto twice = estimator.weights(0, WindowWidth::twice);
+        for (std::size_t b = 0; b < boxes_.box.size(); ++b)
+            report_bin(estimator, b, {chosen[b], half[b], twice[b]});
         refuse_unconstrained();
         if (scatter_.has_scatter()) report_scatter(estimator);
         warn_of_sources(estimator);
@@ -90,7 +97,7 @@ class Measurement {
         for (const std::int64_t source : tally_.first_without_index())
             places.push_back(sources_.place_of(source));
         throw InputError({"survey " + survey_.name,
-                          fmt::format("{} at the edges of bins no spectral index alpha: {}{}",
+                          fmt::format("{} no spectral index alpha at the edges of bins: {}{}",
                                       n == 1 ? "1 source has" : grouped(n) + " sources have",
                                       fmt::join(places, ", "),
                                       n > std::ssize(places) ? ", …" : ""),
@@ -130,11 +137,13 @@ class Measurement {
         replicate_.resize(n, n_boxes);
         half_.resize(n, n_boxes);
         parallel_for(tally_.n_replicates(), options_.threads, [&](std::size_t r) {
+            const auto chosen = estimator.weights(r + 1, WindowWidth::chosen);
+            const auto half = estimator.weights(r + 1, WindowWidth::half);
             for (std::size_t b = 0; b < boxes_.box.size(); ++b) {
                 const auto row = static_cast<Eigen::Index>(r);
                 const auto column = static_cast<Eigen::Index>(b);
-                replicate_(row, column) = estimator.weight(b, r + 1, WindowWidth::chosen);
-                half_(row, column) = estimator.weight(b, r + 1, WindowWidth::half);
+                replicate_(row, column) = chosen[b];
+                half_(row, column) = half[b];
             }
         });
         Eigen::Index kept = 0;
@@ -159,15 +168,18 @@ class Measurement {
         out_.replicates = static_cast<int>(kept);
     }
 
-    void report_bin(const WeightEstimator& estimator, std::size_t b) {
+    /// @param weight  with the chosen windows, half and twice as wide ones
+    void report_bin(const WeightEstimator& estimator,
+                    std::size_t b,
+                    const std::array<double, 3>& weight) {
         const auto column = static_cast<Eigen::Index>(b);
         BinReport bin;
         bin.name = name(b);
-        bin.mean = estimator.weight(b, 0, WindowWidth::chosen);
+        bin.mean = weight[0];
         bin.sd = std::sqrt(out_.covariance(column, column));
         bin.sources = tally_.sources_in_box(b);
-        bin.with_half_windows = estimator.weight(b, 0, WindowWidth::half);
-        bin.with_twice_windows = estimator.weight(b, 0, WindowWidth::twice);
+        bin.with_half_windows = weight[1];
+        bin.with_twice_windows = weight[2];
         for (std::size_t e = 0; e < boxes_.edge.size(); ++e)
             if (boxes_.edge[e].box == b) bin.edges.push_back(report_edge(estimator, e));
         if (experiment_) bin.experiment = experiment_->result(b, estimator, tally_, bin.sd);
@@ -244,12 +256,12 @@ class Measurement {
     }
 
     void report_scatter(const WeightEstimator& estimator) {
-        std::vector<double> n, observed, free;
+        std::vector<double> n, observed;
+        const std::vector<double> free = scatter_.weights(estimator, sources_.one_plus_alpha());
         for (std::size_t b = 0; b < boxes_.box.size(); ++b) {
             n.push_back(tally_.in_box(b, 0));
             observed.push_back(out_.bins[b].mean);
-            free.push_back(scatter_.weight(b, estimator, sources_.one_plus_alpha()));
-            if (std::isfinite(free.back())) out_.bins[b].scatter_free = free.back();
+            if (std::isfinite(free[b])) out_.bins[b].scatter_free = free[b];
         }
         const bool known = std::ranges::all_of(free, [](double w) { return std::isfinite(w); });
         if (known && n.size() > 1) out_.scatter_shift = shift_of_velocity(n, observed, free);

@@ -18,7 +18,8 @@ constexpr std::size_t rows_a_slice = 4096;
 ScatterFreeTally::ScatterFreeTally(const Boxes& boxes,
                                    const SourcePhysics& physics,
                                    const WeighOptions& options,
-                                   bool index_varies)
+                                   bool index_varies,
+                                   bool weights_vary)
     : boxes_(boxes), options_(options) {
     for (const Dimension& dimension : boxes.dimension) {
         const auto known = physics.scatter.find(dimension.property);
@@ -27,7 +28,8 @@ ScatterFreeTally::ScatterFreeTally(const Boxes& boxes,
         error_.push_back(counts ? known->second : PropertyError{});
     }
     if (!has_scatter()) return;
-    TallyOptions tally{options.seed, options.survey, 0, options.threads, index_varies};
+    TallyOptions tally{
+        options.seed, options.survey, 0, options.threads, index_varies, weights_vary};
     for (const double lambda : added_variances)
         levels_.push_back({lambda, CrossingTally(boxes, tally)});
 }
@@ -84,23 +86,28 @@ void ScatterFreeTally::add(const SourceBatch& batch) {
     }
 }
 
-double ScatterFreeTally::weight(std::size_t box,
-                                const WeightEstimator& observed,
-                                double one_plus_alpha) const {
+std::vector<double> ScatterFreeTally::weights(const WeightEstimator& observed,
+                                              double one_plus_alpha) const {
     const auto n = std::ssize(levels_) + 1;
     Eigen::MatrixXd powers(n, 3);
-    Eigen::VectorXd weights(n);
-    powers.row(0) << 1.0, 0.0, 0.0;
-    weights[0] = observed.weight(box, 0, WindowWidth::chosen);
+    Eigen::MatrixXd found(n, std::ssize(boxes_.box));
+    const auto put = [&](Eigen::Index row, double lambda, const WeightEstimator& estimator) {
+        powers.row(row) << 1.0, lambda, lambda * lambda;
+        const std::vector<double> weights = estimator.weights(0, WindowWidth::chosen);
+        for (std::size_t b = 0; b < weights.size(); ++b)
+            found(row, static_cast<Eigen::Index>(b)) = weights[b];
+    };
+    put(0, 0.0, observed);
     for (Eigen::Index i = 1; i < n; ++i) {
         const Level& level = levels_[static_cast<std::size_t>(i - 1)];
-        const WeightEstimator estimator(boxes_, level.tally, one_plus_alpha, observed);
-        powers.row(i) << 1.0, level.lambda, level.lambda * level.lambda;
-        weights[i] = estimator.weight(box, 0, WindowWidth::chosen);
+        put(i, level.lambda, {boxes_, level.tally, one_plus_alpha, observed});
     }
-    if (!weights.allFinite()) return weights.sum();
-    const Eigen::VectorXd parabola = powers.colPivHouseholderQr().solve(weights);
-    return parabola[0] - parabola[1] + parabola[2];
+    std::vector<double> out;
+    for (Eigen::Index b = 0; b < found.cols(); ++b) {
+        const Eigen::VectorXd parabola = powers.colPivHouseholderQr().solve(found.col(b));
+        out.push_back(parabola[0] - parabola[1] + parabola[2]);  // NaN where one is
+    }
+    return out;
 }
 
 ScatterShift shift_of_velocity(const std::vector<double>& n,

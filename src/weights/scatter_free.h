@@ -24,15 +24,14 @@ class ScatterFreeTally {
     ScatterFreeTally(const Boxes& boxes,
                      const SourcePhysics& physics,
                      const WeighOptions& options,
-                     bool index_varies);
+                     bool index_varies,
+                     bool weights_vary);
 
     /// Whether any property that the boxes select on scatters.
     bool has_scatter() const;
     void add(const SourceBatch& batch);
-    /// Weight of a box without scatter. NaN where a fit fails.
-    double weight(std::size_t box,
-                  const WeightEstimator& observed,
-                  double one_plus_alpha) const;
+    /// Weights of the boxes without scatter. NaN where a fit fails.
+    std::vector<double> weights(const WeightEstimator& observed, double one_plus_alpha) const;
 
   private:
     struct Level {

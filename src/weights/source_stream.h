@@ -31,6 +31,9 @@ class SourceStream {
     /// Whether `one_plus_alpha` of the batches is filled.
     bool index_varies() const { return index_varies_; }
 
+    /// Whether `weight` of the batches is filled.
+    bool weights_vary() const { return !exposure_.empty(); }
+
     /// Calls `use` with one batch after another. Errors: InputError: rows with bad positions
     /// (unless they are to be skipped); files that cannot be read; what `progress` throws.
     void read(const std::function<void(const SourceBatch&)>& use);

@@ -70,7 +70,7 @@ double WeightEstimator::mean_index(std::size_t edge,
                         density_degree);
 }
 
-double WeightEstimator::term(std::size_t edge, std::size_t replicate, WindowWidth width) const {
+double WeightEstimator::rate(std::size_t edge, std::size_t replicate, WindowWidth width) const {
     const EdgePlan& plan = plans_[edge];
     if (plan.method == EdgeMethod::end_of_property) return 0.0;
     const EdgeWindow& window = window_of(plan, width);
@@ -81,19 +81,29 @@ double WeightEstimator::term(std::size_t edge, std::size_t replicate, WindowWidt
     const auto density =
         fit.fit(within(count, window), near_catalogue ? &*densities_[edge] : nullptr);
     if (!density) return no_number;
-    const Edge& of = boxes_.edge[edge];
-    const double sign = of.upper ? -1.0 : 1.0;
-    return sign * speed_of(of.kind) * density->at_edge() * mean_index(edge, replicate, window) /
-           sums_.in_box(of.box, replicate);
+    return speed_of(boxes_.edge[edge].kind) * density->at_edge() *
+           mean_index(edge, replicate, window);
 }
 
-double WeightEstimator::weight(std::size_t box,
-                               std::size_t replicate,
-                               WindowWidth width) const {
-    double sum = 2.0;
-    for (std::size_t e = 0; e < boxes_.edge.size(); ++e)
-        if (boxes_.edge[e].box == box) sum += term(e, replicate, width);
-    return sum;
+double WeightEstimator::term(std::size_t edge, std::size_t replicate, WindowWidth width) const {
+    const Edge& of = boxes_.edge[edge];
+    const double sign = of.upper ? -1.0 : 1.0;
+    return sign * rate(edge, replicate, width) / sums_.in_box(of.box, replicate);
+}
+
+std::vector<double> WeightEstimator::weights(std::size_t replicate, WindowWidth width) const {
+    std::vector<double> weight(boxes_.box.size(), 2.0);
+    std::vector<double> rates(boxes_.edge.size());
+    for (std::size_t e = 0; e < boxes_.edge.size(); ++e) {
+        const Edge& edge = boxes_.edge[e];
+        const std::size_t first = sums_.sums_of(e);
+        // Edges that share their sums differ in which side is inside, hence in their windows.
+        const bool is_known = first != e && plans_[first] == plans_[e];
+        rates[e] = is_known ? rates[first] : rate(e, replicate, width);
+        weight[edge.box] +=
+            (edge.upper ? -1.0 : 1.0) * rates[e] / sums_.in_box(edge.box, replicate);
+    }
+    return weight;
 }
 
 }  // namespace deviascope

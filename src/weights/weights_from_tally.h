@@ -35,8 +35,8 @@ class WeightEstimator {
     const EdgePlan& plan(std::size_t edge) const { return plans_[edge]; }
     /// What an edge adds to the weight of its box; NaN where a fit fails.
     double term(std::size_t edge, std::size_t replicate, WindowWidth width) const;
-    /// The weight of a box; NaN where a fit fails.
-    double weight(std::size_t box, std::size_t replicate, WindowWidth width) const;
+    /// The weights of all boxes; NaN where a fit fails.
+    std::vector<double> weights(std::size_t replicate, WindowWidth width) const;
     /// The fitted density at an edge of the catalogue itself.
     const std::optional<FittedDensity>& density(std::size_t edge) const {
         return densities_[edge];
@@ -48,6 +48,8 @@ class WeightEstimator {
 
   private:
     void fit_catalogue();
+    /// Sources that cross an edge upwards per ln delta: v f <1 + alpha>; NaN where a fit fails.
+    double rate(std::size_t edge, std::size_t replicate, WindowWidth width) const;
     double mean_index(std::size_t edge, std::size_t replicate, const EdgeWindow& window) const;
 
     const Boxes& boxes_;

@@ -81,12 +81,13 @@ inline CatalogueWeights weights_of_catalogue(const WeightCase& population,
     const auto n_boxes = static_cast<Eigen::Index>(boxes.box.size());
     Eigen::MatrixXd replicate(n_replicates, n_boxes);
     CatalogueWeights out;
-    for (std::size_t b = 0; b < boxes.box.size(); ++b) {
-        out.mean.push_back(estimator.weight(b, 0, WindowWidth::chosen));
-        out.in_bin.push_back(tally.in_box(b, 0));
-        for (Eigen::Index r = 0; r < n_replicates; ++r)
-            replicate(r, static_cast<Eigen::Index>(b)) =
-                estimator.weight(b, static_cast<std::size_t>(r) + 1, WindowWidth::chosen);
+    out.mean = estimator.weights(0, WindowWidth::chosen);
+    for (std::size_t b = 0; b < boxes.box.size(); ++b) out.in_bin.push_back(tally.in_box(b, 0));
+    for (Eigen::Index r = 0; r < n_replicates; ++r) {
+        const auto found =
+            estimator.weights(static_cast<std::size_t>(r) + 1, WindowWidth::chosen);
+        for (Eigen::Index b = 0; b < n_boxes; ++b)
+            replicate(r, b) = found[static_cast<std::size_t>(b)];
     }
     const Eigen::MatrixXd centred = replicate.rowwise() - replicate.colwise().mean();
     out.covariance = centred.transpose() * centred / static_cast<double>(n_replicates - 1);

@@ -55,6 +55,20 @@ struct BinSummary {
     double weight_prior_mean = 0.0, weight_prior_sd = 0.0;
 };
 
+/// One combination of the weights of a survey.
+struct WeightMode {
+    double mean = 0.0;      ///< posterior
+    double sd = 0.0;        ///< posterior
+    double prior_sd = 0.0;  ///< 0: the weights are fixed
+};
+
+/// The common and the differential mode of a survey's weights (README, "The summary, number by
+/// number"): the first rescales the velocity, the second fakes an intrinsic dipole.
+struct WeightModes {
+    WeightMode common;        ///< factor on the prior means; prior mean 1
+    WeightMode differential;  ///< shift of the weights that the factor leaves; prior mean 0
+};
+
 struct SamplingSummary {
     bool converged = false;
     Outcome outcome;
@@ -73,6 +87,7 @@ struct Summary {
     std::optional<CmbOffset> offset_from_cmb;  ///< empty where the velocity is zero
     std::vector<VectorSummary> intrinsic;
     std::vector<BinSummary> bins;
+    std::vector<WeightModes> weight_modes;  ///< per survey, job order
     Separation separation;
     SamplingSummary sampling;
     std::vector<CutReport> cuts;  ///< per survey, job order

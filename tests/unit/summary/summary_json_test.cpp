@@ -29,6 +29,8 @@ const char* const schema = R"({
 "bins": [{"survey": "dunlin", "bin": "faint", "sources": 0, "pixels": 0, "sky_fraction": 0,
   "monopole": {"median": 0, "interval68": [0,0]},
   "weight": {"median": 0, "interval68": [0,0], "prior_mean": 0, "prior_sd": 0}}],
+"weight_modes": {"dunlin": {"common": {"mean": 0, "sd": 0, "prior_sd": 0},
+  "differential": {"mean": 0, "sd": 0, "prior_sd": 0, "false_dipole": 0}}},
 "separation": {"dunlin": {"weight_spread": 0, "velocity_prior_share": 0, "verdict": ""},
   "joint": {"velocity_prior_share": 0, "verdict": ""}},
 "sampling": {"converged": true, "replicates": 4, "walkers": 144, "steps": 0, "discarded": 0,
@@ -46,6 +48,7 @@ Summary single() {
     Summary summary = example::summary();
     summary.intrinsic.resize(1);
     summary.bins.resize(1);
+    summary.weight_modes = {{{1.001, 0.004, 0.005}, {0.01, 0.02, 0.03}}};
     summary.separation.surveys.resize(1);
     summary.cuts.resize(1);
     summary.survey_names.resize(1);
@@ -113,6 +116,7 @@ TEST_CASE("what is undefined or constant is null in summary.json", "[summary]") 
     summary.offset_from_cmb.reset();
     summary.intrinsic = {example::unseen("dunlin")};
     summary.bins[0].weight = estimate_of({3.75, 3.75});
+    summary.weight_modes = {{{1.0, 0.0, 0.0}, {0.0, 0.0, 0.0}}};
     summary.separation.joint.velocity_prior_share.reset();
     summary.sampling.walker_rhat_max = std::numeric_limits<double>::quiet_NaN();
     const Json json = Json::parse(to_json(summary));
@@ -129,6 +133,8 @@ TEST_CASE("what is undefined or constant is null in summary.json", "[summary]") 
     CHECK(json["intrinsic"]["dunlin"]["direction"]["region68"]["radius_deg"].is_null());
     CHECK(json["bins"][0]["weight"]["median"].is_null());
     CHECK(json["bins"][0]["weight"]["prior_mean"] == 3.75);
+    CHECK(json["weight_modes"]["dunlin"]["common"]["mean"].is_null());
+    CHECK(json["weight_modes"]["dunlin"]["differential"]["false_dipole"].is_null());
     CHECK(json["separation"]["joint"]["velocity_prior_share"].is_null());
     CHECK(json["sampling"]["walker_rhat_max"].is_null());
 }
