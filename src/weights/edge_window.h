@@ -50,10 +50,11 @@ struct EdgePlan {
 /// by factors of sqrt(2). In each, ln f at the edge is fitted with degrees 2 and 4; their
 /// difference is what the lower degree misses. The widest window in which, and in the next
 /// narrower of which, that difference stays within two of its standard deviations shows no
-/// bias; the window used is half as wide, where the bias is smaller by a factor of 16 (both
-/// sides) or 8 (one side): at most a fifth of the noise. Outside the catalogue's extent there
-/// is no window. Where sources fall off at the edge itself (less than 0.7 of what the inside
-/// lets expect, at five standard deviations), the catalogue is taken to end there.
+/// bias; the window used is half as wide, where a smooth density's bias is smaller by a factor
+/// of 16 (both sides) or 8 (one side): below a tenth, or a quarter, of the noise. Outside the
+/// catalogue's extent there is no window. Where sources fall off at the edge itself (less than
+/// 0.7 of what the inside lets expect, at five standard deviations), the catalogue is taken to
+/// end there.
 EdgePlan plan_edge(const EdgeNeighbourhood& edge);
 
 /// The counts of a window's cells.
