@@ -146,11 +146,8 @@ std::string vector_block(const VectorSummary& vector) {
 /// What the errors of the weights, taken together, do to the vectors.
 std::string modes_block(const Summary& summary) {
     TextTable table("lrrrr");
-    table.row({"weights taken together",
-               "common factor",
-               "prior",
-               "shift left over",
-               "false dipole (10^-3)"});
+    table.row(
+        {"weights of", "common factor", "prior", "shift left over", "false dipole (10^-3)"});
     bool any = false;
     for (std::size_t survey = 0; survey < summary.weight_modes.size(); ++survey) {
         const auto& [common, differential] = summary.weight_modes[survey];

@@ -224,7 +224,7 @@ TEST_CASE(
     check_recovery(0.05, 0.8613, 500'000);
 }
 
-TEST_CASE("photometric redshifts of three qualities", "[app][long]") {
+TEST_CASE("photometric redshifts of three qualities", "[.long][app]") {
     check_recovery(0.01, 0.9937, 1'500'000);
     check_recovery(0.03, 0.9457, 1'500'000);
     check_recovery(0.05, 0.8613, 1'500'000);
