@@ -85,8 +85,7 @@ std::string table_of_scatter(const MeasuredWeights& weights) {
     if (weights.scatter_shift)
         text += fmt::format(
             "\nWith weights of scatter-free distributions the velocity would come out {:.4f} "
-            "of "
-            "the true one with a\nfree intrinsic dipole, {:.4f} without one. The weights as "
+            "of the true one with a\nfree intrinsic dipole, {:.4f} without one. The weights as "
             "observed are the right ones for this catalogue.\n",
             weights.scatter_shift->free_intrinsic,
             weights.scatter_shift->no_intrinsic);

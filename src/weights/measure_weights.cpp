@@ -298,10 +298,8 @@ class Measurement {
         if (named) return;
         out_.warnings.emplace_back(
             "no select names a flux or magnitude: where the catalogue has such a limit, "
-            "sources "
-            "cross it too, and the weights lack x (1 + alpha), about 2; write the limit into "
-            "the "
-            "survey's select");
+            "sources cross it too, and the weights lack x (1 + alpha), about 2; write the "
+            "limit into the survey's select");
     }
 
     const SurveyInput& survey_;

@@ -109,10 +109,8 @@ TEST_CASE("weights at edges of flux need a spectral index", "[job]") {
     };
     CHECK(faults(measuring_job("")) ==
           "j.toml:8:1: survey[1].alpha: missing; to measure weights at edges of flux or "
-          "magnitude, "
-          "alpha = { mean, sd } or a column alpha is required; alpha = 1 for bolometric fluxes "
-          "and "
-          "magnitudes");
+          "magnitude, alpha = { mean, sd } or a column alpha is required; alpha = 1 for "
+          "bolometric fluxes and magnitudes");
     const std::string in_redshift = with(measuring_job(""),
                                          "select = { flux = [10.0, 20.0] }",
                                          "select = { redshift = [0, 1] }");

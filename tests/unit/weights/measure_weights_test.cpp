@@ -212,9 +212,8 @@ TEST_CASE("what cannot be measured is refused with its reason", "[weights]") {
         CHECK(
             survey.refusal() ==
             "survey dunlin: weights are to be measured at edges of flux or magnitude, and "
-            "there "
-            "is no spectral index; a column alpha, or alpha = { mean = …, sd = … }; add one of "
-            "them (alpha = 1 for bolometric fluxes and magnitudes)");
+            "there is no spectral index; a column alpha, or alpha = { mean = …, sd = … }; add "
+            "one of them (alpha = 1 for bolometric fluxes and magnitudes)");
     }
     SECTION("a spectral index that is missing") {
         survey.physics.alpha.reset();
@@ -260,10 +259,8 @@ TEST_CASE("what cannot be measured is refused with its reason", "[weights]") {
         survey.draw(10);
         CHECK(survey.refusal() ==
               "survey dunlin, bin all: an edge at flux -1; edges at positive fluxes and sizes "
-              "and "
-              "at redshifts above -1 have a weight that can be measured; use -inf for a side "
-              "that "
-              "is open, or give the bin its weight");
+              "and at redshifts above -1 have a weight that can be measured; use -inf for a "
+              "side that is open, or give the bin its weight");
     }
     SECTION("ranges that exclude each other") {
         survey.input.select = {{"flux", 5.0, infinity}};
@@ -271,8 +268,7 @@ TEST_CASE("what cannot be measured is refused with its reason", "[weights]") {
         survey.draw(10);
         CHECK(survey.refusal() ==
               "survey dunlin, bin all: its flux and the survey's leave nothing: [5, 2); ranges "
-              "of "
-              "the bin and of the survey that overlap; correct one of the two");
+              "of the bin and of the survey that overlap; correct one of the two");
     }
 }
 
