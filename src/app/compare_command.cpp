@@ -165,26 +165,11 @@ class Comparer {
         found.prior_median_amplitude = prior.median_amplitude(job_.seed);
         found.amplitude = fit.amplitude(v);
         if (!options_.clustering.empty())
-            found.clustering_probability = clustering_probability(fit.vector(v));
+            found.clustering_probability = chance_of_length(
+                prior_of(options_.clustering, job_.companions, job_.folder, job_.frame),
+                fit.vector(v),
+                job_.seed);
         all_.intrinsic.push_back(std::move(found));
-    }
-
-    /// How often a draw from the clustering prior is as long as one from the posterior.
-    double clustering_probability(const Eigen::Matrix3Xd& vector) const {
-        const VectorPrior prior =
-            prior_of(options_.clustering, job_.companions, job_.folder, job_.frame);
-        constexpr std::uint64_t n_draws = 100000;
-        std::vector<double> length(n_draws);
-        for (std::uint64_t draw = 0; draw < n_draws; ++draw) {
-            Stream stream(job_.seed, Purpose::prior_draw, 1, draw, 0);
-            length[draw] = prior.draw(stream).norm();
-        }
-        std::ranges::sort(length);
-        double sum = 0.0;
-        for (Eigen::Index draw = 0; draw < vector.cols(); ++draw)
-            sum += static_cast<double>(
-                length.end() - std::ranges::lower_bound(length, vector.col(draw).norm()));
-        return sum / static_cast<double>(n_draws) / static_cast<double>(vector.cols());
     }
 
     // ---- surveys ----

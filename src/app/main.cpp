@@ -30,21 +30,32 @@ using deviascope::CommandOptions;
 using deviascope::ExitCode;
 using Action = std::function<ExitCode(const CommandOptions&)>;
 
-/// A command as the table below describes it.
+/// A command as the table below describes it; what it does not take is left out there.
 struct Command {
     const char* name;
     const char* description;
-    const char* input;  ///< name of its argument
-    const char* input_description;
-    const char* output_description;  ///< null where it writes nothing
-    bool resume;                     ///< takes --resume
-    bool strict;                     ///< takes --strict
-    bool maps;                       ///< takes --maps
-    bool experiment;                 ///< takes --check
+    const char* input = "JOB.toml";  ///< name of its argument
+    const char* input_description = "job file (TOML)";
+    /// Null where it writes nothing.
+    const char* output_description =
+        "folder for the results; default: the job's name with -results, here";
+    bool resume = false;  ///< takes --resume
+    bool strict = false;  ///< takes --strict
     Action action;
     /// Adds options of its own; null: it has none.
     void (*add_options)(CLI::App&, CommandOptions&) = nullptr;
 };
+
+void add_count_options(CLI::App& command, CommandOptions& options) {
+    command.add_flag("--maps",
+                     options.maps,
+                     "write the counts and exposure of every bin as HEALPix maps too");
+}
+
+void add_weigh_options(CLI::App& command, CommandOptions& options) {
+    command.add_flag(
+        "--check", options.experiment, "check the weights by an experiment on the full sky");
+}
 
 void add_compare_options(CLI::App& command, CommandOptions& options) {
     command
@@ -71,102 +82,57 @@ void add_sweep_options(CLI::App& command, CommandOptions& options) {
 }
 
 std::vector<Command> commands() {
-    const char* job = "job file (TOML)";
-    const char* folder = "folder for the results; default: the job's name with -results, here";
     return {
-        {"run",
-         "The whole job: counts, samples and summarises",
-         "JOB.toml",
-         job,
-         folder,
-         true,
-         true,
-         false,
-         false,
-         deviascope::run_command},
-        {"check",
-         "Checks a job and its inputs, and says what would be done; writes nothing",
-         "JOB.toml",
-         job,
-         nullptr,
-         false,
-         true,
-         false,
-         false,
-         deviascope::check_command},
-        {"count",
-         "Counts the sources of every survey into counts.h5",
-         "JOB.toml",
-         job,
-         folder,
-         false,
-         false,
-         true,
-         false,
-         deviascope::count_command},
-        {"weigh",
-         "Measures the kinematic weights of bins from the catalogues themselves",
-         "JOB.toml",
-         job,
-         folder,
-         false,
-         false,
-         false,
-         true,
-         deviascope::weigh_command},
-        {"sample",
-         "Samples the posterior into chains.h5, from the folder's counts.h5 if it fits",
-         "JOB.toml",
-         job,
-         folder,
-         true,
-         true,
-         false,
-         false,
-         deviascope::sample_command},
-        {"summarise",
-         "Summarises a chain into summary.json and summary.txt",
-         "chains.h5",
-         "chain file",
-         "folder for the summary; default: beside the chain",
-         false,
-         true,
-         false,
-         false,
-         deviascope::summarise_command},
-        {"compare",
-         "Holds the posterior against a reference velocity, rival hypotheses, each survey, and "
-         "the counts",
-         "JOB.toml",
-         job,
-         folder,
-         false,
-         true,
-         false,
-         false,
-         deviascope::compare_command,
-         add_compare_options},
-        {"sweep",
-         "Runs the job again with other cuts, masks, priors or resolutions, one row each",
-         "JOB.toml",
-         job,
-         folder,
-         false,
-         true,
-         false,
-         false,
-         deviascope::sweep_command,
-         add_sweep_options},
-        {"mock",
-         "Makes mock catalogues with known truth",
-         "SCENARIO.toml",
-         "scenario file (TOML)",
-         "folder for the catalogues; default: the scenario's name, here",
-         false,
-         false,
-         false,
-         false,
-         deviascope::mock_command},
+        {.name = "run",
+         .description = "The whole job: counts, samples and summarises",
+         .resume = true,
+         .strict = true,
+         .action = deviascope::run_command},
+        {.name = "check",
+         .description =
+             "Checks a job and its inputs, and says what would be done; writes nothing",
+         .output_description = nullptr,
+         .strict = true,
+         .action = deviascope::check_command},
+        {.name = "count",
+         .description = "Counts the sources of every survey into counts.h5",
+         .action = deviascope::count_command,
+         .add_options = add_count_options},
+        {.name = "weigh",
+         .description = "Measures the kinematic weights of bins from the catalogues themselves",
+         .action = deviascope::weigh_command,
+         .add_options = add_weigh_options},
+        {.name = "sample",
+         .description =
+             "Samples the posterior into chains.h5, from the folder's counts.h5 if it fits",
+         .resume = true,
+         .strict = true,
+         .action = deviascope::sample_command},
+        {.name = "summarise",
+         .description = "Summarises a chain into summary.json and summary.txt",
+         .input = "chains.h5",
+         .input_description = "chain file",
+         .output_description = "folder for the summary; default: beside the chain",
+         .strict = true,
+         .action = deviascope::summarise_command},
+        {.name = "compare",
+         .description = "Holds the posterior against a reference velocity, rival hypotheses, "
+                        "each survey, and the counts",
+         .strict = true,
+         .action = deviascope::compare_command,
+         .add_options = add_compare_options},
+        {.name = "sweep",
+         .description =
+             "Runs the job again with other cuts, masks, priors or resolutions, one row each",
+         .strict = true,
+         .action = deviascope::sweep_command,
+         .add_options = add_sweep_options},
+        {.name = "mock",
+         .description = "Makes mock catalogues with known truth",
+         .input = "SCENARIO.toml",
+         .input_description = "scenario file (TOML)",
+         .output_description = "folder for the catalogues; default: the scenario's name, here",
+         .action = deviascope::mock_command},
     };
 }
 
@@ -199,14 +165,6 @@ void add_command(CLI::App& program,
             ->check(CLI::Range(1, 1'000'000))
             ->group("");
     }
-    if (command.maps)
-        sub->add_flag("--maps",
-                      options.maps,
-                      "write the counts and exposure of every bin as HEALPix maps too");
-    if (command.experiment)
-        sub->add_flag("--check",
-                      options.experiment,
-                      "check the weights by an experiment on the full sky");
     if (command.strict)
         sub->add_flag("--strict", options.strict, "exit with 6 where the result is doubtful");
     if (command.add_options != nullptr) command.add_options(*sub, options);

@@ -79,6 +79,11 @@ void prepare_output(const fs::path& folder,
                        "that was cut off"});
 }
 
+void refuse_misfit(const Message& message, Existing existing) {
+    if (existing == Existing::keep) throw UsageError(message);
+    throw OutputError(message);
+}
+
 void remove_results(const fs::path& folder, const std::vector<std::string>& files) {
     for (const std::string& file : present_in(folder, files)) {
         std::error_code failure;

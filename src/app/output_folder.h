@@ -7,6 +7,7 @@
 #include <vector>
 
 #include "app/commands.h"
+#include "deviascope/core/error.h"
 
 namespace deviascope {
 
@@ -31,6 +32,10 @@ void make_folder(const std::filesystem::path& folder);
 void prepare_output(const std::filesystem::path& folder,
                     const std::vector<std::string>& files,
                     Existing existing);
+
+/// Refuses results that exist and do not fit: they were to be kept, or are not to be replaced.
+/// Errors: UsageError, OutputError.
+[[noreturn]] void refuse_misfit(const Message& message, Existing existing);
 
 /// Removes those of `files` that are in the folder. Errors: OutputError.
 void remove_results(const std::filesystem::path& folder, const std::vector<std::string>& files);

@@ -12,7 +12,6 @@
 #include "deviascope/chain/chain_file.h"
 #include "deviascope/core/error.h"
 #include "deviascope/core/grouped_number.h"
-#include "deviascope/core/random.h"
 #include "deviascope/core/version.h"
 #include "deviascope/counts/count_sources.h"
 #include "deviascope/counts/moments.h"
@@ -21,7 +20,6 @@
 #include "deviascope/model/posterior.h"
 #include "deviascope/sky/position_match.h"
 #include "deviascope/summary/fit_check.h"
-#include "summary/draw_moments.h"
 
 namespace deviascope {
 
@@ -60,15 +58,6 @@ std::vector<std::size_t> order_of_counting(const Job& job) {
     return order;
 }
 
-[[noreturn]] void refuse_counts(const fs::path& counts, Existing existing) {
-    const Message message{counts.string(),
-                          "was made from other inputs or cuts",
-                          "counts are used again only for the same inputs and cuts",
-                          "give --replace to count anew, or another folder with -o"};
-    if (existing == Existing::keep) throw UsageError(message);
-    throw OutputError(message);
-}
-
 void say_what_was_counted(const SurveyCounts& counted, Terminal& terminal) {
     terminal.say(fmt::format("Counted {}: {} of {} rows and {} of {} pixels kept.",
                              counted.name,
@@ -96,29 +85,10 @@ Job job_of(const Chain& chain) {
     return job;
 }
 
-/// Rows of parameters drawn from the posterior's Gaussian.
-Eigen::MatrixXd rows_about_mode(const Posterior& posterior, std::uint64_t seed) {
-    constexpr Eigen::Index n_draws = 1000;
-    const CoordinateGaussian& gaussian = *posterior.approximation();
-    Eigen::MatrixXd coordinates(posterior.n_coordinates(), n_draws);
-    for (Eigen::Index draw = 0; draw < n_draws; ++draw) {
-        Stream stream(seed, Purpose::laplace_draw, 1, static_cast<std::uint64_t>(draw), 0);
-        Eigen::VectorXd standard(posterior.n_coordinates());
-        for (double& one : standard) one = normal(stream);
-        coordinates.col(draw) = gaussian.mean + gaussian.factor * standard;
-    }
-    Eigen::MatrixXd rows(posterior.space().n_parameters(), n_draws);
-    posterior.to_parameters(coordinates, rows);
-    return rows;
-}
-
 /// Dispersions at the mode, one for each bin that asks.
 std::vector<MeasuredDispersion> dispersions_at_mode(const Job& job, const Counts& counts) {
     const Posterior posterior(counts, job.model, job.seed);
-    const Eigen::MatrixXd rows = rows_about_mode(posterior, job.seed);
-    const DrawMoments moments = moments_of(rows);
-    const auto checks =
-        check_fit(counts, posterior.space(), moments.mean, moments.covariance, 1);
+    const auto checks = check_fit_at_mode(counts, posterior, job.seed);
     std::vector<MeasuredDispersion> measured;
     for (const BinPlace& place : job.measure_dispersion)
         for (std::size_t t = 0; t < checks.size(); ++t) {
@@ -295,7 +265,12 @@ CountsFile obtain_counts(const Job& job,
                 fmt::format("Counts taken from {}: its inputs are unchanged.", path.string()));
             return file;
         }
-        if (existing != Existing::replace) refuse_counts(path, existing);
+        if (existing != Existing::replace)
+            refuse_misfit({path.string(),
+                           "was made from other inputs or cuts",
+                           "counts are used again only for the same inputs and cuts",
+                           "give --replace to count anew, or another folder with -o"},
+                          existing);
     }
     return make_counts(job, inputs, folder, terminal);
 }

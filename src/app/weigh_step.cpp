@@ -115,12 +115,11 @@ std::optional<std::string> stored_weights(const fs::path& path,
     if (!text) return std::nullopt;
     if (digest_in_weights_file({"", path.string(), *text}) == digest) return text;
     if (existing == Existing::replace) return std::nullopt;
-    const Message message{path.string(),
-                          "was measured from other inputs or settings",
-                          "measured weights are used again only for the same inputs",
-                          "give --replace to measure anew, or another folder with -o"};
-    if (existing == Existing::keep) throw UsageError(message);
-    throw OutputError(message);
+    refuse_misfit({path.string(),
+                   "was measured from other inputs or settings",
+                   "measured weights are used again only for the same inputs",
+                   "give --replace to measure anew, or another folder with -o"},
+                  existing);
 }
 
 }  // namespace

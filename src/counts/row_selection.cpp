@@ -10,28 +10,23 @@
 
 namespace deviascope {
 
-namespace {
-
-/// Index of `name` in `names`, put at the end where it is not there yet.
-std::size_t index_of(std::vector<std::string>& names, const std::string& name) {
+std::size_t index_among(std::vector<std::string>& names, const std::string& name) {
     const auto found = std::ranges::find(names, name);
     const auto index = static_cast<std::size_t>(found - names.begin());
     if (found == names.end()) names.push_back(name);
     return index;
 }
 
-}  // namespace
-
 RowSelection::RowSelection(const SurveyInput& input) {
     const auto column = [&](const std::string& property) {
         const auto found = input.columns.find(property);
         ensure(found != input.columns.end(), "a selected property has a column");
-        return index_of(columns, found->second);
+        return index_among(columns, found->second);
     };
     const auto resolved = [&](const std::vector<PropertyRange>& ranges) {
         std::vector<ColumnRange> out;
         for (const PropertyRange& range : ranges) {
-            const std::size_t property = index_of(properties, range.property);
+            const std::size_t property = index_among(properties, range.property);
             out.push_back({property,
                            column(range.property),
                            range.low,

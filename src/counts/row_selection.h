@@ -27,6 +27,9 @@ struct Verdict {
                             ///< the first whose value is missing
 };
 
+/// Index of a name among `names`, put at their end where it is not there yet.
+std::size_t index_among(std::vector<std::string>& names, const std::string& name);
+
 /// The selections of a survey, with property names resolved to columns of a chunk.
 struct RowSelection {
     explicit RowSelection(const SurveyInput& survey);

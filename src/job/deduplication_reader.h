@@ -11,8 +11,8 @@
 namespace deviascope {
 
 /// `deduplicate` of the job table: texts `FIRST over SECOND`. Faults: another form, a survey
-/// that is not there or has no positions (count maps alone), the same pair twice, a survey that
-/// would depend on itself.
+/// that is not there or has no positions (count maps alone), a survey that would depend on
+/// itself.
 std::vector<Deduplication> read_deduplication(const TomlTable& job,
                                               const std::vector<SurveyInput>& surveys);
 

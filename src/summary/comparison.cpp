@@ -6,6 +6,7 @@
 #include <algorithm>
 #include <cmath>
 
+#include "deviascope/core/random.h"
 #include "summary/rounding.h"
 
 namespace deviascope {
@@ -159,6 +160,23 @@ void warn_of_overlap(const Comparison& all, Warnings& warnings) {
 }
 
 }  // namespace
+
+double chance_of_length(const VectorPrior& prior,
+                        const Eigen::Matrix3Xd& vectors,
+                        std::uint64_t seed) {
+    constexpr std::uint64_t n_draws = 100000;
+    std::vector<double> length(n_draws);
+    for (std::uint64_t draw = 0; draw < n_draws; ++draw) {
+        Stream stream(seed, Purpose::prior_draw, 1, draw, 0);
+        length[draw] = prior.draw(stream).norm();
+    }
+    std::ranges::sort(length);
+    double sum = 0.0;
+    for (Eigen::Index draw = 0; draw < vectors.cols(); ++draw)
+        sum += static_cast<double>(length.end() -
+                                   std::ranges::lower_bound(length, vectors.col(draw).norm()));
+    return sum / static_cast<double>(n_draws) / static_cast<double>(vectors.cols());
+}
 
 std::size_t best_hypothesis(const std::vector<HypothesisResult>& hypotheses) {
     std::size_t best = 0;

@@ -5,6 +5,7 @@
 
 #include "deviascope/core/physical_constants.h"
 #include "deviascope/summary/comparison.h"
+#include "summary/rounding.h"
 
 namespace deviascope {
 namespace {
@@ -17,15 +18,12 @@ class Lines {
              const std::string& quantity,
              double value,
              double error = VelocityOffset::undefined) {
-        text_ +=
-            fmt::format("{},{},{},{},{}\n", table, row, quantity, cell(value), cell(error));
+        text_ += fmt::format(
+            "{},{},{},{},{}\n", table, row, quantity, csv_number(value), csv_number(error));
     }
     const std::string& text() const { return text_; }
 
   private:
-    static std::string cell(double value) {
-        return std::isfinite(value) ? fmt::format("{}", value) : "";
-    }
     std::string text_ = "table,row,quantity,value,error\n";
 };
 

@@ -8,9 +8,11 @@
 #include <vector>
 
 #include "deviascope/core/parallel.h"
+#include "deviascope/core/random.h"
 #include "deviascope/model/expected_counts.h"
 #include "deviascope/model/information.h"
 #include "deviascope/summary/significance.h"
+#include "summary/draw_moments.h"
 #include "summary/residual_power.h"
 
 namespace deviascope {
@@ -144,6 +146,22 @@ FitCheck check_bin(const Counts& counts,
     return check;
 }
 
+/// Rows of parameters drawn from the posterior's Gaussian.
+Eigen::MatrixXd rows_about_mode(const Posterior& posterior, std::uint64_t seed) {
+    constexpr Eigen::Index n_draws = 1000;
+    const CoordinateGaussian& gaussian = *posterior.approximation();
+    Eigen::MatrixXd coordinates(posterior.n_coordinates(), n_draws);
+    for (Eigen::Index draw = 0; draw < n_draws; ++draw) {
+        Stream stream(seed, Purpose::laplace_draw, 1, static_cast<std::uint64_t>(draw), 0);
+        Eigen::VectorXd standard(posterior.n_coordinates());
+        for (double& one : standard) one = normal(stream);
+        coordinates.col(draw) = gaussian.mean + gaussian.factor * standard;
+    }
+    Eigen::MatrixXd rows(posterior.space().n_parameters(), n_draws);
+    posterior.to_parameters(coordinates, rows);
+    return rows;
+}
+
 }  // namespace
 
 std::vector<FitCheck> check_fit(const Counts& counts,
@@ -156,6 +174,13 @@ std::vector<FitCheck> check_fit(const Counts& counts,
         checks[term] = check_bin(counts, space, space.terms()[term], mean, covariance);
     });
     return checks;
+}
+
+std::vector<FitCheck> check_fit_at_mode(const Counts& counts,
+                                        const Posterior& posterior,
+                                        std::uint64_t seed) {
+    const DrawMoments moments = moments_of(rows_about_mode(posterior, seed));
+    return check_fit(counts, posterior.space(), moments.mean, moments.covariance, 1);
 }
 
 bool is_over_dispersed(const FitCheck& check) {

@@ -55,6 +55,10 @@ double half_width(const Interval& interval) {
     return 0.5 * (interval[1] - interval[0]);
 }
 
+std::string csv_number(double value) {
+    return std::isfinite(value) ? fmt::format("{}", value) : "";
+}
+
 ScalarEstimate in_unit(ScalarEstimate estimate, double unit) {
     for (double* value : {&estimate.median, &estimate.mean, &estimate.sd}) *value /= unit;
     for (Interval* interval : {&estimate.interval68, &estimate.interval95})

@@ -17,6 +17,9 @@ std::string rounded(double value, double uncertainty);
 /// A number to three significant digits.
 std::string short_number(double value);
 
+/// A field of CSV: the shortest form that reads back to the same bits; empty where not finite.
+std::string csv_number(double value);
+
 /// `2.41 to 2.93`, to the digits of an uncertainty.
 std::string rounded(const Interval& interval, double uncertainty);
 

@@ -21,13 +21,9 @@ std::string name_of_row(const SweepRow& row) {
     return row.path.empty() ? "the job as it is" : row.path + " = " + row.value;
 }
 
-std::string cell(double value) {
-    return std::isfinite(value) ? fmt::format("{}", value) : "";
-}
-
 void add_cell(std::string& line, double value) {
     line += ',';
-    line += cell(value);
+    line += csv_number(value);
 }
 
 /// A field of CSV, quoted where it must be.
@@ -113,7 +109,7 @@ std::string to_csv(const Sweep& sweep) {
                             field(row.path),
                             field(row.value),
                             row.sources,
-                            cell(row.sky_fraction));
+                            csv_number(row.sky_fraction));
         for (const double value : row.velocity.mean) add_cell(text, value);
         for (const double value : {speed.median,
                                    speed.interval68[0],

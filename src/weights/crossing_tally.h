@@ -35,9 +35,9 @@ struct TallyOptions {
 
 /// Sums over the sources of a survey, for the catalogue itself and for each bootstrap replicate
 /// (Efron 1979, Ann. Stat. 7, 1; with Poisson(1) multiplicities in place of multinomial ones,
-/// Hanley & MacGibbon
-/// 2006, Comput. Methods Programs Biomed. 83, 57): for every edge the weights of sources in
-/// each cell, and those times 1 + alpha; for every box the weights of the sources in it.
+/// Hanley & MacGibbon 2006, Comput. Methods Programs Biomed. 83, 57): for every edge the
+/// weights of sources in each cell, and those times 1 + alpha; for every box the weights of
+/// the sources in it.
 ///
 /// A source near an edge of a box is one that lies inside all its other sides. In a replicate
 /// it counts with its own multiplicity everywhere, so that what edges, bins and totals share is

@@ -15,10 +15,12 @@ Displaced displaced_by_boost(const std::string& property);
 /// The coordinate y of a property in which a boost by the Doppler factor delta is exactly a
 /// displacement, y' = y + v ln delta:
 ///
-///   flux       y = ln S       v = 1 + alpha                     from S' = S delta^(1+alpha)
-///   magnitude  y = m          v = -(2.5 / ln 10) (1 + alpha)    from m' = m - 2.5 (1+alpha) lg
-///   delta redshift   y = ln(1+z)    v = -1                            from 1+z' = (1+z) /
-///   delta size       y = ln s       v = -1                            from s' = s / delta
+///   flux       y = ln S      v = 1 + alpha       from S' = S delta^(1+alpha)
+///   magnitude  y = m         v = -k (1 + alpha)  from m' = m - k (1+alpha) ln delta
+///   redshift   y = ln(1+z)   v = -1              from 1+z' = (1+z) / delta
+///   size       y = ln s      v = -1              from s' = s / delta
+///
+/// with k = 2.5 / ln 10.
 ///
 /// @return  NaN where it is not defined (a flux or size not above 0, z not above -1)
 /// Source: sky/boost.h.

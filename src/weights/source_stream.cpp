@@ -16,14 +16,6 @@ namespace deviascope {
 
 namespace {
 
-/// Index of a column among those that are read, put at the end where it is not there yet.
-std::size_t index_of(std::vector<std::string>& columns, const std::string& column) {
-    const auto found = std::ranges::find(columns, column);
-    const auto index = static_cast<std::size_t>(found - columns.begin());
-    if (found == columns.end()) columns.push_back(column);
-    return index;
-}
-
 void require_spectral_index(const SurveyInput& survey, const SourcePhysics& physics) {
     if (physics.alpha || survey.columns.contains("alpha")) return;
     throw UsageError({"survey " + survey.name,
@@ -51,11 +43,11 @@ SourceStream::SourceStream(const SurveyInput& survey,
       selection_{survey_, rows_, sky_, grid_, frame},
       places_(selection_) {
     for (const Dimension& dimension : boxes.dimension)
-        column_.push_back(index_of(rows_.columns, survey.columns.at(dimension.property)));
+        column_.push_back(index_among(rows_.columns, survey.columns.at(dimension.property)));
     if (boxes.need_spectral_index()) {
         require_spectral_index(survey, physics);
         if (survey.columns.contains("alpha"))
-            alpha_column_ = index_of(rows_.columns, survey.columns.at("alpha"));
+            alpha_column_ = index_among(rows_.columns, survey.columns.at("alpha"));
         index_varies_ = alpha_column_ || physics.alpha->sd > 0.0;
         one_plus_alpha_ = alpha_column_ ? std::numeric_limits<double>::quiet_NaN()
                                         : 1.0 + physics.alpha->mean;

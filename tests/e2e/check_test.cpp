@@ -7,12 +7,14 @@
 
 #include "bad_input_files.h"
 #include "deviascope/counts/counts_file.h"
+#include "program_on_job.h"
 #include "run_process.h"
 #include "temporary_folder.h"
 
 using namespace deviascope;
 using namespace deviascope::test::bad_input;
 using deviascope::test::ProcessResult;
+using deviascope::test::run_on_job;
 using deviascope::test::TemporaryFolder;
 
 namespace {
@@ -21,14 +23,6 @@ std::string with(std::string text, const std::string& from, const std::string& t
     const std::size_t at = text.find(from);
     REQUIRE(at != std::string::npos);
     return text.replace(at, from.size(), to);
-}
-
-ProcessResult program(const TemporaryFolder& folder,
-                      const std::string& command,
-                      std::vector<std::string> more = {}) {
-    std::vector<std::string> words{DEVIASCOPE_PROGRAM, command, (folder / "job.toml").string()};
-    words.insert(words.end(), more.begin(), more.end());
-    return test::run_process(words);
 }
 
 std::vector<std::string> files_in(const std::filesystem::path& folder) {
@@ -57,7 +51,7 @@ std::string rows_with_repeats() {
 TEST_CASE("check says what would be done and writes nothing", "[app]") {
     const TemporaryFolder folder;
     write_sound_inputs(folder);
-    const ProcessResult result = program(folder, "check", {"--strict"});
+    const ProcessResult result = run_on_job(folder, "check", {"--strict"});
     INFO(result.out + result.err);
     CHECK(result.exit_code == 0);
     CHECK(result.err.empty());
@@ -72,20 +66,20 @@ TEST_CASE("check says what would be done and writes nothing", "[app]") {
             Catch::Contains("dunlin: intrinsic dipole (10^-3)") &&
             Catch::EndsWith("The job can run. No warnings; nothing was written.\n"));
     CHECK(files_in(folder.path()) == std::vector<std::string>{"dunlin.csv", "job.toml"});
-    CHECK(program(folder, "check", {"--quiet"}).out.empty());
+    CHECK(run_on_job(folder, "check", {"--quiet"}).out.empty());
 }
 
 TEST_CASE("check refuses what run would refuse", "[app]") {
     const TemporaryFolder folder;
     write_sound_inputs(folder);
     folder.write("job.toml", with(base_job, "[1.0, 2.0]", "[0.5, 0.6]"));
-    const ProcessResult empty_bin = program(folder, "check");
+    const ProcessResult empty_bin = run_on_job(folder, "check");
     CHECK(empty_bin.exit_code == 3);
     CHECK_THAT(empty_bin.err, Catch::Contains("faint"));
     folder.write("dunlin.csv", "ra,dec,s\n1,x,1\n");
-    CHECK(program(folder, "check").exit_code == 3);
+    CHECK(run_on_job(folder, "check").exit_code == 3);
     folder.write("job.toml", with(base_job, "nside = 4", "nside = 5"));
-    CHECK(program(folder, "check").exit_code == 2);
+    CHECK(run_on_job(folder, "check").exit_code == 2);
 }
 
 TEST_CASE("suspicious input is warned of, and doubtful under --strict", "[app]") {
@@ -93,7 +87,7 @@ TEST_CASE("suspicious input is warned of, and doubtful under --strict", "[app]")
     write_sound_inputs(folder);
     const auto warned = [&](const std::string& job, const std::string& part) {
         folder.write("job.toml", job);
-        const ProcessResult result = program(folder, "check", {"--strict"});
+        const ProcessResult result = run_on_job(folder, "check", {"--strict"});
         INFO(result.err);
         CHECK(result.exit_code == 6);
         CHECK_THAT(result.err, Catch::StartsWith("Warning: ") && Catch::Contains(part));
@@ -116,7 +110,7 @@ TEST_CASE("warnings on suspicious input are kept in the summary", "[app]") {
              "mean = 3.75, sd = 0.1",
              "mean = 0.05, sd = 0.001"));
     const ProcessResult result =
-        program(folder, "run", {"-o", (folder / "out").string(), "--quiet"});
+        run_on_job(folder, "run", {"-o", (folder / "out").string(), "--quiet"});
     INFO(result.err);
     REQUIRE(result.exit_code == 0);
     std::ifstream file(folder / "out/summary.json");
@@ -135,7 +129,7 @@ TEST_CASE("count --maps writes maps that count as the catalogue does", "[app]") 
              "frame = \"icrs\"\ncolumns",
              "frame = \"icrs\"\nexclude = [ { band = 20, frame = \"galactic\" } ]\ncolumns"));
     const std::string out = (folder / "out").string();
-    REQUIRE(program(folder, "count", {"--maps", "-o", out}).exit_code == 0);
+    REQUIRE(run_on_job(folder, "count", {"--maps", "-o", out}).exit_code == 0);
     CHECK(files_in(folder / "out") ==
           std::vector<std::string>{"counts.h5",
                                    "maps/dunlin/bright-counts.fits",
@@ -143,10 +137,10 @@ TEST_CASE("count --maps writes maps that count as the catalogue does", "[app]") 
                                    "maps/dunlin/faint-counts.fits",
                                    "maps/dunlin/faint-exposure.fits"});
     std::filesystem::remove(folder / "out/counts.h5");
-    const ProcessResult again = program(folder, "count", {"--maps", "-o", out});
+    const ProcessResult again = run_on_job(folder, "count", {"--maps", "-o", out});
     CHECK(again.exit_code == 5);
     CHECK_THAT(again.err, Catch::Contains("already holds maps/dunlin/faint-counts.fits"));
-    REQUIRE(program(folder, "count", {"--maps", "-o", out, "--replace"}).exit_code == 0);
+    REQUIRE(run_on_job(folder, "count", {"--maps", "-o", out, "--replace"}).exit_code == 0);
 
     std::string job = with(base_job,
                            "select = { flux = [1.0, 2.0] }",
@@ -157,7 +151,7 @@ TEST_CASE("count --maps writes maps that count as the catalogue does", "[app]") 
                "counts = \"out/maps/dunlin/bright-counts.fits\"\nexposure = "
                "\"out/maps/dunlin/bright-exposure.fits\"");
     folder.write("job.toml", job);
-    REQUIRE(program(folder, "count", {"-o", (folder / "again").string()}).exit_code == 0);
+    REQUIRE(run_on_job(folder, "count", {"-o", (folder / "again").string()}).exit_code == 0);
     const Counts first = read_counts(folder / "out/counts.h5").counts;
     const Counts second = read_counts(folder / "again/counts.h5").counts;
     for (std::size_t bin = 0; bin < 2; ++bin) {

@@ -10,7 +10,9 @@
 #include <string>
 
 #include "deviascope/chain/chain_file.h"
+#include "file_bytes.h"
 #include "lattice_job.h"
+#include "program_on_job.h"
 #include "run_process.h"
 #include "temporary_folder.h"
 
@@ -19,6 +21,7 @@ using Catch::Contains;
 using deviascope::test::bins;
 using deviascope::test::lattice_catalogue;
 using deviascope::test::ProcessResult;
+using deviascope::test::run_into_out;
 using deviascope::test::small_job;
 using deviascope::test::TemporaryFolder;
 
@@ -38,26 +41,9 @@ std::string two_surveys() {
     return small_job(bins(3.75, 6.0), quick) + second_survey("gnomon.csv");
 }
 
-ProcessResult program(const TemporaryFolder& folder,
-                      const std::string& command,
-                      const std::vector<std::string>& more = {}) {
-    std::vector<std::string> words{DEVIASCOPE_PROGRAM,
-                                   command,
-                                   (folder / "job.toml").string(),
-                                   "-o",
-                                   (folder / "out").string()};
-    words.insert(words.end(), more.begin(), more.end());
-    return test::run_process(words);
-}
-
 nlohmann::json json_in(const std::filesystem::path& file) {
     std::ifstream stream(file);
     return nlohmann::json::parse(stream);
-}
-
-std::string text_of(const std::filesystem::path& file) {
-    std::ifstream stream(file);
-    return {std::istreambuf_iterator<char>(stream), {}};
 }
 
 std::set<std::string> keys_of(const nlohmann::json& object) {
@@ -86,7 +72,7 @@ TEST_CASE("compare answers a referee's questions from the job file", "[app]") {
                      "[[hypothesis]]\nname = \"still\"\n"
                      "velocity = { prior = \"no-motion\" }\n");
     const ProcessResult first =
-        program(folder, "compare", {"--clustering", "clustering-modest"});
+        run_into_out(folder, "compare", {"--clustering", "clustering-modest"});
     INFO(first.err);
     REQUIRE(first.exit_code == 0);
     const nlohmann::json found = json_in(folder / "out" / "compare.json");
@@ -119,21 +105,22 @@ TEST_CASE("compare answers a referee's questions from the job file", "[app]") {
     CHECK(found["overlap"][0]["surveys"] == nlohmann::json::array({"binnacle", "gnomon"}));
     CHECK(found["intrinsic_at_reference"].size() == 3);
     CHECK_THAT(first.out, Contains("under-dispersed"));
-    CHECK_THAT(text_of(folder / "out" / "compare.csv"), Contains("hypotheses,free,bridge,"));
+    CHECK_THAT(test::bytes_of(folder / "out" / "compare.csv"),
+               Contains("hypotheses,free,bridge,"));
 
     SECTION("nothing existing is overwritten without --replace") {
-        const ProcessResult second = program(folder, "compare");
+        const ProcessResult second = run_into_out(folder, "compare");
         CHECK(second.exit_code == 5);
         CHECK_THAT(second.err, Contains("compare.json"));
     }
     SECTION("the same bits again, with another number of threads; doubtful with --strict") {
-        const std::string before = text_of(folder / "out" / "compare.json");
-        const ProcessResult again = program(
+        const std::string before = test::bytes_of(folder / "out" / "compare.json");
+        const ProcessResult again = run_into_out(
             folder,
             "compare",
             {"--clustering", "clustering-modest", "--replace", "--threads", "1", "--strict"});
         CHECK(again.exit_code == 6);
-        CHECK(text_of(folder / "out" / "compare.json") == before);
+        CHECK(test::bytes_of(folder / "out" / "compare.json") == before);
     }
 }
 
@@ -141,13 +128,14 @@ TEST_CASE("compare refuses a reference that is none", "[app]") {
     const TemporaryFolder folder;
     folder.write("binnacle.csv", lattice_catalogue(2000));
     folder.write("job.toml", small_job(bins(3.75, 6.0), quick));
-    const ProcessResult kind = program(folder, "compare", {"--reference", "free-velocity"});
+    const ProcessResult kind =
+        run_into_out(folder, "compare", {"--reference", "free-velocity"});
     CHECK(kind.exit_code == 2);
     CHECK_THAT(kind.err, Contains("uniform-vector") && Contains("measured-velocity"));
-    const ProcessResult name = program(folder, "compare", {"--reference", "cmb-velocty"});
+    const ProcessResult name = run_into_out(folder, "compare", {"--reference", "cmb-velocty"});
     CHECK(name.exit_code == 2);
     CHECK_THAT(name.err, Contains("cmb-velocty"));
-    CHECK(program(folder, "compare", {"--clustering", "none-such"}).exit_code == 2);
+    CHECK(run_into_out(folder, "compare", {"--clustering", "none-such"}).exit_code == 2);
 }
 
 TEST_CASE("sources in common are reported, and dropped where the job says so", "[app]") {
@@ -157,7 +145,7 @@ TEST_CASE("sources in common are reported, and dropped where the job says so", "
     folder.write("gnomon.csv",
                  third_of(catalogue) + "200.0,-75.0,1.5\n120.00371,5.00213,3.0\n");
     folder.write("job.toml", two_surveys());
-    const ProcessResult plain = program(folder, "compare", {"--quiet"});
+    const ProcessResult plain = run_into_out(folder, "compare", {"--quiet"});
     INFO(plain.err);
     REQUIRE(plain.exit_code == 0);
     const nlohmann::json before = json_in(folder / "out" / "compare.json");
@@ -172,7 +160,7 @@ TEST_CASE("sources in common are reported, and dropped where the job says so", "
     job.insert(job.find("[velocity]"),
                "deduplicate = [\"gnomon over binnacle\"]\nmatch_arcsec = 2.0\n");
     folder.write("job.toml", job);
-    const ProcessResult dropped = program(folder, "run", {"--replace"});
+    const ProcessResult dropped = run_into_out(folder, "run", {"--replace"});
     INFO(dropped.err);
     REQUIRE(dropped.exit_code == 0);
     CHECK_THAT(dropped.out, Contains("in gnomon too, within 2 arcsec"));
@@ -193,7 +181,7 @@ TEST_CASE("a dispersion is measured in one go, and kept with the chain", "[app]"
     std::string weights = bins(3.75, 6.0);
     weights.insert(weights.find("[[survey.bin]]", 5), "dispersion = \"measure\"\n");
     folder.write("job.toml", small_job(weights, quick));
-    const ProcessResult first = program(folder, "run");
+    const ProcessResult first = run_into_out(folder, "run");
     INFO(first.err);
     REQUIRE(first.exit_code == 0);
     CHECK_THAT(first.out, Contains("Dispersion of binnacle/faint"));
@@ -214,7 +202,7 @@ TEST_CASE("a dispersion is measured in one go, and kept with the chain", "[app]"
         CHECK(json_in(folder / "summary.json") == json_in(folder / "out" / "summary.json"));
     }
     SECTION("compare finds nothing left to mend in that bin") {
-        REQUIRE(program(folder, "compare", {"--quiet"}).exit_code == 0);
+        REQUIRE(run_into_out(folder, "compare", {"--quiet"}).exit_code == 0);
         const nlohmann::json found = json_in(folder / "out" / "compare.json");
         const auto& faint = found["fit"][0];
         CHECK(faint["assumed_dispersion"].get<double>() ==
@@ -229,14 +217,14 @@ TEST_CASE("sweep runs the job again with other cuts, one row each", "[app]") {
     job.insert(job.find("[[survey.bin]]"),
                "exclude = [ { band = 10.0, frame = \"galactic\" } ]\n");
     folder.write("job.toml", job);
-    const ProcessResult result = program(folder,
-                                         "sweep",
-                                         {"--vary",
-                                          "survey.binnacle.exclude.band=20:40:20",
-                                          "--vary",
-                                          "velocity.prior=cmb-velocity",
-                                          "--vary",
-                                          "job.nside=4,16"});
+    const ProcessResult result = run_into_out(folder,
+                                              "sweep",
+                                              {"--vary",
+                                               "survey.binnacle.exclude.band=20:40:20",
+                                               "--vary",
+                                               "velocity.prior=cmb-velocity",
+                                               "--vary",
+                                               "job.nside=4,16"});
     INFO(result.err);
     REQUIRE(result.exit_code == 0);
     const nlohmann::json found = json_in(folder / "out" / "sweep.json");
@@ -249,18 +237,18 @@ TEST_CASE("sweep runs the job again with other cuts, one row each", "[app]") {
     CHECK(found["rows"][0]["difference"]["sigma"].is_null());
     CHECK(found["rows"][3]["speed_km_s"]["median"].get<double>() ==
           Approx(369.8).epsilon(0.01));
-    CHECK_THAT(text_of(folder / "out" / "sweep.csv"), Contains("job.nside,16,"));
+    CHECK_THAT(test::bytes_of(folder / "out" / "sweep.csv"), Contains("job.nside,16,"));
     CHECK_THAT(result.out, Contains("survey.binnacle.exclude.band = 40"));
 
     SECTION("a path that leads nowhere is refused before anything runs") {
-        const ProcessResult lost =
-            program(folder, "sweep", {"--replace", "--vary", "survey.bincale.exclude.band=1"});
+        const ProcessResult lost = run_into_out(
+            folder, "sweep", {"--replace", "--vary", "survey.bincale.exclude.band=1"});
         CHECK(lost.exit_code == 2);
         CHECK_THAT(lost.err, Contains("survey.bincale.exclude.band"));
     }
     SECTION("a value that no job can have is refused by the job's own rules") {
         const ProcessResult wrong =
-            program(folder, "sweep", {"--replace", "--vary", "job.nside=12"});
+            run_into_out(folder, "sweep", {"--replace", "--vary", "job.nside=12"});
         CHECK(wrong.exit_code == 2);
         CHECK_THAT(wrong.err, Contains("power of two"));
     }

@@ -12,6 +12,7 @@
 
 #include "deviascope/chain/chain_file.h"
 #include "lattice_job.h"
+#include "program_on_job.h"
 #include "run_process.h"
 #include "temporary_folder.h"
 
@@ -26,13 +27,7 @@ using deviascope::test::TemporaryFolder;
 namespace {
 
 ProcessResult run_job(const TemporaryFolder& folder, const std::vector<std::string>& more) {
-    std::vector<std::string> words = {DEVIASCOPE_PROGRAM,
-                                      "run",
-                                      (folder / "job.toml").string(),
-                                      "-o",
-                                      (folder / "out").string()};
-    words.insert(words.end(), more.begin(), more.end());
-    return test::run_process(words);
+    return test::run_into_out(folder, "run", more);
 }
 
 nlohmann::json summary_in(const std::filesystem::path& folder) {

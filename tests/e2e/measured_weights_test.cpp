@@ -8,13 +8,14 @@
 #include <filesystem>
 #include <fstream>
 #include <nlohmann/json.hpp>
-#include <sstream>
 
 #include "core/fits/fits_file.h"
 #include "deviascope/core/parallel.h"
 #include "deviascope/core/random.h"
 #include "deviascope/mock/population.h"
 #include "deviascope/sky/boost.h"
+#include "file_bytes.h"
+#include "program_on_job.h"
 #include "run_process.h"
 #include "temporary_folder.h"
 
@@ -135,20 +136,7 @@ ProcessResult command(const TemporaryFolder& folder,
                       const std::string& name,
                       const std::string& out,
                       const std::vector<std::string>& more = {}) {
-    std::vector<std::string> words = {DEVIASCOPE_PROGRAM,
-                                      name,
-                                      (folder / "job.toml").string(),
-                                      "-o",
-                                      (folder / out).string()};
-    words.insert(words.end(), more.begin(), more.end());
-    return test::run_process(words);
-}
-
-std::string bytes_of(const std::filesystem::path& path) {
-    std::ifstream file(path, std::ios::binary);
-    std::ostringstream out;
-    out << file.rdbuf();
-    return out.str();
+    return test::run_process(test::words_on_job(folder, name, out, more));
 }
 
 /// The velocity along the true one, over the true speed; and its standard deviation.
@@ -205,7 +193,7 @@ void check_recovery(double scatter, double expected_ratio, std::int64_t n_pairs)
     CHECK(std::abs(right - 1.0) < 0.8 * sd);
     CHECK(std::abs(wrong / right - expected_ratio) < 0.4 * sd);
     // And what the program foretells from the catalogue with scatter alone.
-    const std::string file = bytes_of(folder / "observed" / "lantern-weights.toml");
+    const std::string file = test::bytes_of(folder / "observed" / "lantern-weights.toml");
     const auto at = file.find("free_intrinsic = ");
     REQUIRE(at != std::string::npos);
     CHECK(std::abs(std::stod(file.substr(at + 17)) - expected_ratio) <
@@ -240,9 +228,9 @@ TEST_CASE("weigh writes weights that a job can name, and the same bits each time
     CHECK_THAT(first.out,
                Catch::Contains("Kinematic weights of lantern") &&
                    Catch::Contains("full-sky experiment") && Catch::Contains("central"));
-    const std::string text = bytes_of(folder / "one" / "lantern-weights.toml");
+    const std::string text = test::bytes_of(folder / "one" / "lantern-weights.toml");
     REQUIRE(command(folder, "weigh", "two", {"--check", "--threads", "2"}).exit_code == 0);
-    CHECK(bytes_of(folder / "two" / "lantern-weights.toml") == text);
+    CHECK(test::bytes_of(folder / "two" / "lantern-weights.toml") == text);
     CHECK(command(folder, "weigh", "one").exit_code == 5);
     CHECK(command(folder, "weigh", "one", {"--replace", "--quiet"}).out.empty());
     folder.write("job.toml", wide_job("one/lantern-weights.toml"));
@@ -261,15 +249,15 @@ TEST_CASE("a run with measured weights is resumed with them, whatever is left of
     const ProcessResult run = command(folder, "run", "out", {"--quiet"});
     INFO(run.err);
     REQUIRE(run.exit_code == 0);
-    const std::string weights = bytes_of(folder / "out" / "lantern-weights.toml");
-    const std::string summary = bytes_of(folder / "out" / "summary.json");
+    const std::string weights = test::bytes_of(folder / "out" / "lantern-weights.toml");
+    const std::string summary = test::bytes_of(folder / "out" / "summary.json");
     ProcessResult again = command(folder, "run", "out", {"--resume"});
     CHECK(again.exit_code == 0);
     CHECK_THAT(again.out, Catch::Contains("Weights of lantern taken from"));
     std::filesystem::remove(folder / "out" / "lantern-weights.toml");
     CHECK(command(folder, "run", "out", {"--resume", "--quiet"}).exit_code == 0);
-    CHECK(bytes_of(folder / "out" / "lantern-weights.toml") == weights);
-    CHECK(bytes_of(folder / "out" / "summary.json") == summary);
+    CHECK(test::bytes_of(folder / "out" / "lantern-weights.toml") == weights);
+    CHECK(test::bytes_of(folder / "out" / "summary.json") == summary);
 
     SECTION("the chain alone is enough for its summary") {
         std::filesystem::remove(folder / "lantern.fits");
@@ -282,7 +270,7 @@ TEST_CASE("a run with measured weights is resumed with them, whatever is left of
                                "--quiet"});
         INFO(summarised.err);
         CHECK(summarised.exit_code == 0);
-        CHECK(bytes_of(folder / "again" / "summary.json") == summary);
+        CHECK(test::bytes_of(folder / "again" / "summary.json") == summary);
     }
     SECTION("weights that were edited are refused") {
         std::ofstream(folder / "out" / "lantern-weights.toml", std::ios::app) << "# mine\n";
@@ -296,7 +284,7 @@ TEST_CASE("a run with measured weights is resumed with them, whatever is left of
         CHECK(again.exit_code == 2);
         CHECK_THAT(again.err, Catch::Contains("was measured from other inputs"));
         CHECK(command(folder, "run", "out", {"--replace", "--quiet"}).exit_code == 0);
-        CHECK(bytes_of(folder / "out" / "lantern-weights.toml") != weights);
+        CHECK(test::bytes_of(folder / "out" / "lantern-weights.toml") != weights);
     }
 }
 
@@ -312,7 +300,7 @@ TEST_CASE("a weight of its own overrides a measured one, and check measures too"
     CHECK(check.exit_code == 0);
     CHECK_THAT(check.out, Catch::Contains("4.5 +- 0.12") && Catch::Contains("errors from 200"));
     REQUIRE(command(folder, "weigh", "out", {"--quiet"}).exit_code == 0);
-    const std::string file = bytes_of(folder / "out" / "lantern-weights.toml");
+    const std::string file = test::bytes_of(folder / "out" / "lantern-weights.toml");
     CHECK(file.find("name = \"z4\"") != std::string::npos);
     CHECK(file.find("name = \"z5\"") == std::string::npos);
 }

@@ -10,6 +10,7 @@
 
 #include "deviascope/chain/chain_file.h"
 #include "lattice_job.h"
+#include "program_on_job.h"
 #include "run_process.h"
 #include "same_chain.h"
 #include "temporary_folder.h"
@@ -29,13 +30,7 @@ void write_job(const TemporaryFolder& folder, const std::string& ensemble) {
 std::vector<std::string> command(const TemporaryFolder& folder,
                                  const std::string& output,
                                  const std::vector<std::string>& more) {
-    std::vector<std::string> words = {DEVIASCOPE_PROGRAM,
-                                      "run",
-                                      (folder / "job.toml").string(),
-                                      "-o",
-                                      (folder / output).string()};
-    words.insert(words.end(), more.begin(), more.end());
-    return words;
+    return test::words_on_job(folder, "run", output, more);
 }
 
 ProcessResult run_job(const TemporaryFolder& folder,

@@ -15,14 +15,14 @@ enum class Purpose : std::uint64_t {
     monopole_redraw = 2,  ///< (replicate, walker, step)
     predictive = 3,       ///< (replicate, walker, step)
     start = 4,            ///< (replicate, walker, attempt)
-    laplace_draw = 5,     ///< (0, draw, 0)
-    prior_draw = 6,       ///< (0, draw, 0)
+    laplace_draw = 5,     ///< (0 its own coordinates, 1 checks at the mode; draw, 0)
+    prior_draw = 6,       ///< (0 medians, 1 chances of a length; draw, 0)
     mock_source = 7,      ///< (source, survey, attempt)
     bootstrap = 8,        ///< (source, survey, block of replicates)
     mock_population = 9,  ///< (0, survey, 0): total numbers
     spectral_index = 20,  ///< (source, survey, 0): where the catalogue has none
     sky_experiment = 21,  ///< (source, survey, 0)
-    added_scatter = 22,   ///< (source, survey, level)
+    added_scatter = 22,   ///< (source, survey, 0)
     evidence = 30,        ///< (which estimate, draw, 0)
     comparison = 31,      ///< (0, fit, 0): seeds of the runs of a comparison
     reference_draw = 32,  ///< (0, draw, 0): of a velocity to compare with

@@ -30,11 +30,12 @@ struct Duplicates {
 /// Table of cuts, in the order in which they act: positions; each range of the survey's
 /// `select` (missing values on a line of their own); each exclusion; exposure 0; exposure 0 at
 /// the source; missing values of properties that the bins select on (where no other value of
-/// that bin fails); in no bin; exposure of a bin 0. Sources of count maps enter it as rows do.
+/// that bin fails); in no bin; exposure of a bin 0; in each survey of `duplicates`. Sources of
+/// count maps enter it as rows do.
 /// @param grid, frame  of the job
 /// @param duplicates   surveys that go before this one
-/// @param kept         takes the positions of the sources that are counted, in the job's
-/// frame; null: they are not kept
+/// @param kept         takes the positions of counted catalogue sources, in the job's frame;
+///                     null: they are not kept
 /// @return counts and a table of cuts that adds up; independent of the order of rows and files
 /// Errors: InputError: bad positions (unless skipped), a source in two bins (count, first five
 /// rows), a map that does not fit, an exposure outside 0 … 1, a count map in another frame or

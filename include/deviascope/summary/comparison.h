@@ -90,6 +90,13 @@ struct Comparison {
     std::vector<std::string> warnings;
 };
 
+/// How often a draw from a prior (100,000, stream (seed, prior_draw; 1, draw, 0)) is at least
+/// as long as a draw of a posterior, averaged over the latter.
+/// @param vectors  3 x draws, at least one
+double chance_of_length(const VectorPrior& prior,
+                        const Eigen::Matrix3Xd& vectors,
+                        std::uint64_t seed);
+
 /// Place of the hypothesis with the largest evidence (bridge); 0 where none has one.
 std::size_t best_hypothesis(const std::vector<HypothesisResult>& hypotheses);
 

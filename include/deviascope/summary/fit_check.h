@@ -9,7 +9,7 @@
 #include <vector>
 
 #include "deviascope/counts/count_map.h"
-#include "deviascope/model/parameter_space.h"
+#include "deviascope/model/posterior.h"
 
 namespace deviascope {
 
@@ -51,10 +51,9 @@ struct FitCheck {
 ///   probability  of chi2 / phi: mean `degrees`, variance sum (2 + 1/lambda), third central
 ///                moment sum (8 + 22/lambda + 1/lambda^2) (of Poisson counts), shifted-gamma
 ///                form (Pearson's type III)
-///   power        a_i = sum_p Y_i(n_p) (n_p - lambda_p), the Y made orthogonal, under lambda,
-///   to
-///                what a monopole and a dipole can absorb; chi2 = a^T V^-1 a / phi with the
-///                Poisson covariance V of the a
+///   power        a_i = sum_p Y_i(n_p) (n_p - lambda_p), the Y made orthogonal, under
+///                lambda, to what a monopole and a dipole can absorb; chi2 = a^T V^-1 a / phi
+///                with the Poisson covariance V of the a
 /// Pixels without exposure are not among the counts. A multipole that the footprint cannot hold
 /// (V singular to 1e-10) has NaN.
 /// @param mean        posterior means of all parameters
@@ -65,6 +64,12 @@ std::vector<FitCheck> check_fit(const Counts& counts,
                                 const Eigen::VectorXd& mean,
                                 const Eigen::MatrixXd& covariance,
                                 int threads);
+
+/// The same before any sampling, at the posterior's mode: mean and covariance of the parameters
+/// from 1,000 draws of its Laplace approximation, stream (seed, laplace_draw; 1, draw, 0).
+std::vector<FitCheck> check_fit_at_mode(const Counts& counts,
+                                        const Posterior& posterior,
+                                        std::uint64_t seed);
 
 /// True where a bin's counts scatter more, or less, than its dispersion allows: less than one
 /// time in a thousand.
