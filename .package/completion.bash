@@ -4,12 +4,17 @@ _deviascope() {
     local word=${COMP_WORDS[COMP_CWORD]} previous=${COMP_WORDS[COMP_CWORD-1]} command=${COMP_WORDS[1]}
     COMPREPLY=()
     if [ "$COMP_CWORD" -eq 1 ]; then
-        mapfile -t COMPREPLY < <(compgen -W "run check count weigh sample summarise compare sweep mock --help --version" -- "$word")
+        mapfile -t COMPREPLY < <(compgen -W "run check count weigh sample summarise figures export compare sweep mock --help --version" -- "$word")
         return
     fi
     case $previous in
         -o|--output) mapfile -t COMPREPLY < <(compgen -d -- "$word"); return ;;
-        --threads|--reference|--clustering|--vary) return ;;
+        --threads|--reference|--clustering|--vary|--width|--thin|--parameters) return ;;
+        --font) mapfile -t COMPREPLY < <(compgen -f -- "$word"); return ;;
+        --format) mapfile -t COMPREPLY < <(compgen -W "fits csv csv.gz" -- "$word"); return ;;
+        --only)
+            mapfile -t COMPREPLY < <(compgen -W "directions residuals amplitudes joint profile weights traces" -- "$word")
+            return ;;
     esac
     if [[ $word == -* ]]; then
         local options="--help --threads --quiet"
@@ -17,6 +22,8 @@ _deviascope() {
             check) options+=" --strict" ;;
             run|sample) options+=" --output --replace --resume --strict" ;;
             summarise) options+=" --output --replace --strict" ;;
+            figures) options+=" --output --replace --strict --only --width --bare --parameters --font" ;;
+            export) options+=" --output --replace --format --thin" ;;
             count) options+=" --output --replace --maps" ;;
             weigh) options+=" --output --replace --check" ;;
             compare) options+=" --output --replace --strict --reference --clustering" ;;
@@ -27,7 +34,7 @@ _deviascope() {
         return
     fi
     local ending=toml
-    [ "$command" = summarise ] && ending=h5
+    [[ $command == summarise || $command == figures || $command == export ]] && ending=h5
     mapfile -t COMPREPLY < <(compgen -d -- "$word"; compgen -f -X "!*.$ending" -- "$word")
 }
 complete -o filenames -F _deviascope deviascope

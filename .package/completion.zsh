@@ -9,6 +9,8 @@ commands=(
     'weigh:measures the kinematic weights of bins'
     'sample:samples the posterior'
     'summarise:summarises a chain'
+    'figures:draws figures, and makes report, tables and sky files'
+    'export:writes the draws as a FITS or CSV table'
     'compare:holds the posterior against a reference velocity, rival hypotheses, surveys and counts'
     'sweep:runs the job again with other cuts, masks, priors or resolutions'
     'mock:makes mock catalogues with known truth'
@@ -33,6 +35,11 @@ case $command in
     count) _arguments $everywhere $writes '--maps[write maps too]' '1:job:_files -g "*.toml"' ;;
     weigh) _arguments $everywhere $writes '--check[full-sky experiment]' '1:job:_files -g "*.toml"' ;;
     summarise) _arguments $everywhere $writes $strict '1:chain:_files -g "*.h5"' ;;
+    figures) _arguments $everywhere $writes $strict '--only[only these figures]:names:' \
+        '--width[of the figures]:width:(90mm 180mm)' '--bare[no titles]' \
+        '--parameters[of the joint figure]:names:' '--font[font file]:file:_files' '1:chain:_files -g "*.h5"' ;;
+    export) _arguments $everywhere $writes '--format[format]:format:(fits csv csv.gz)' \
+        '--thin[every N-th stored row only]:number:' '1:chain:_files -g "*.h5"' ;;
     compare) _arguments $everywhere $writes $strict '--reference[prior with the velocity to compare with]:name:' '--clustering[prior of dipoles by clustering]:name:' '1:job:_files -g "*.toml"' ;;
     sweep) _arguments $everywhere $writes $strict '*--vary[key and values]:path=values:' '1:job:_files -g "*.toml"' ;;
     mock) _arguments $everywhere $writes '1:scenario:_files -g "*.toml"' ;;

@@ -4,14 +4,18 @@
 #include <fmt/format.h>
 
 #include <algorithm>
+#include <charconv>
 #include <iterator>
 #include <utility>
 
+#include "app/figure_step.h"
 #include "app/sample_step.h"
 #include "app/steps.h"
 #include "app/terminal.h"
 #include "app/weigh_step.h"
 #include "deviascope/chain/chain_file.h"
+#include "deviascope/chain/export_draws.h"
+#include "deviascope/core/grouped_number.h"
 #include "deviascope/counts/count_maps.h"
 
 namespace deviascope {
@@ -62,6 +66,36 @@ ChainLock lock_output(const CommandOptions& options) {
     const fs::path folder = folder_of(options);
     make_folder(folder);
     return {folder / "chains.h5"};
+}
+
+/// Where a command on a chain writes by default: beside it.
+fs::path folder_beside(const CommandOptions& options) {
+    if (!options.output.empty()) return options.output;
+    return options.input.has_parent_path() ? options.input.parent_path() : ".";
+}
+
+/// Millimetres of a width as the command line says it: `90mm`, or `90`.
+double millimetres_of(const std::string& width) {
+    double value = 0.0;
+    const auto [end, error] = std::from_chars(width.data(), width.data() + width.size(), value);
+    const std::string_view unit(end, std::size_t(width.data() + width.size() - end));
+    if (error == std::errc() && (unit.empty() || unit == "mm")) return value;
+    throw UsageError({"--width",
+                      fmt::format("\"{}\"", width),
+                      "a length in millimetres, such as 90mm or 180mm",
+                      ""});
+}
+
+FigureOptions figure_options_of(const CommandOptions& options) {
+    FigureOptions figures;
+    figures.width_mm = millimetres_of(options.width);
+    figures.bare = options.bare;
+    figures.font = options.font;
+    figures.only = options.only;
+    figures.parameters = options.parameters;
+    figures.threads = options.n_threads();
+    if (const auto problems = figures.problems(); !problems.empty()) throw UsageError(problems);
+    return figures;
 }
 
 ExitCode verdict(const Summary& summary, const CommandOptions& options) {
@@ -154,27 +188,56 @@ ExitCode sample_command(const CommandOptions& options) {
 ExitCode summarise_command(const CommandOptions& options) {
     Terminal terminal(options.quiet);
     const Chain chain = read_chain(options.input);
-    const fs::path beside = options.input.has_parent_path() ? options.input.parent_path() : ".";
-    const fs::path folder = options.output.empty() ? beside : options.output;
+    const fs::path folder = folder_beside(options);
     prepare_output(folder, {"summary.json", "summary.txt"}, existing_of(options));
-    return verdict(summarise_into(chain, folder, options.n_threads(), terminal), options);
+    return verdict(summarise_into(chain, folder, options.n_threads(), terminal).summary,
+                   options);
+}
+
+ExitCode figures_command(const CommandOptions& options) {
+    Terminal terminal(options.quiet);
+    const FigureOptions figures = figure_options_of(options);
+    const Chain chain = read_chain(options.input);
+    const fs::path folder = folder_beside(options);
+    if (figures.only.empty()) prepare_output(folder, names_of_results(), existing_of(options));
+    const Summarised result = summarised(chain, folder, options.n_threads());
+    if (figures.only.empty())
+        write_results(chain, result, figures, folder, terminal);
+    else
+        write_chosen_figures(chain, result, figures, folder, existing_of(options), terminal);
+    return verdict(result.summary, options);
+}
+
+ExitCode export_command(const CommandOptions& options) {
+    Terminal terminal(options.quiet);
+    const Chain chain = read_chain(options.input);
+    const fs::path folder = folder_beside(options);
+    std::vector<std::string> names;
+    for (const std::string& format : options.formats) names.push_back("draws." + format);
+    prepare_output(folder, names, existing_of(options));
+    for (const std::string& name : names) {
+        const std::int64_t rows = export_draws(chain, folder / name, options.thin);
+        terminal.say(
+            fmt::format("Written: {}, {} draws", (folder / name).string(), grouped(rows)));
+    }
+    return ExitCode::done;
 }
 
 ExitCode run_command(const CommandOptions& options) {
     Terminal terminal(options.quiet);
     const Job job = read_job(options.input);
     const ChainLock lock = lock_output(options);
-    const Outcome outcome =
-        make_chain(options,
-                   job,
-                   lock,
-                   {"counts.h5", "chains.h5", "summary.json", "summary.txt"},
-                   terminal);
+    std::vector<std::string> files{"counts.h5", "chains.h5", "summary.json", "summary.txt"};
+    for (const std::string& name : names_of_results()) files.push_back(name);
+    const Outcome outcome = make_chain(options, job, lock, files, terminal);
     if (outcome.end == Outcome::End::interrupted) return ExitCode::interrupted;
     const Chain chain = read_chain(lock.chain());
-    return verdict(
-        summarise_into(chain, lock.chain().parent_path(), options.n_threads(), terminal),
-        options);
+    const fs::path folder = lock.chain().parent_path();
+    const Summarised result = summarise_into(chain, folder, options.n_threads(), terminal);
+    FigureOptions figures;
+    figures.threads = options.n_threads();
+    write_results(chain, result, figures, folder, terminal);
+    return verdict(result.summary, options);
 }
 
 }  // namespace deviascope

@@ -25,7 +25,14 @@ struct CommandOptions {
     std::string reference = "cmb-velocity";  ///< name of a prior
     std::string clustering;                  ///< name of a prior; empty: none
     std::vector<std::string> vary;           ///< PATH=VALUES of a sweep
-    int rows_per_block = 0;                  ///< rows stored at a time; 0: by the clock
+    std::string width = "180mm";             ///< of figures
+    bool bare = false;                       ///< figures without titles
+    std::filesystem::path font;
+    std::vector<std::string> only;        ///< figures; empty: all, with the report
+    std::vector<std::string> parameters;  ///< of the joint figure
+    std::vector<std::string> formats;     ///< of exported draws
+    int thin = 1;                         ///< every how many stored rows are exported
+    int rows_per_block = 0;               ///< rows stored at a time; 0: by the clock
 
     /// Threads to use.
     int n_threads() const { return threads > 0 ? threads : default_threads(); }
@@ -38,6 +45,8 @@ ExitCode count_command(const CommandOptions& options);
 ExitCode weigh_command(const CommandOptions& options);
 ExitCode sample_command(const CommandOptions& options);
 ExitCode summarise_command(const CommandOptions& options);
+ExitCode figures_command(const CommandOptions& options);
+ExitCode export_command(const CommandOptions& options);
 ExitCode mock_command(const CommandOptions& options);
 ExitCode compare_command(const CommandOptions& options);
 ExitCode sweep_command(const CommandOptions& options);

@@ -23,6 +23,7 @@
 #include "deviascope/core/error.h"
 #include "deviascope/core/nearest_name.h"
 #include "deviascope/core/version.h"
+#include "deviascope/figures/figures.h"
 
 namespace {
 
@@ -81,10 +82,41 @@ void add_sweep_options(CLI::App& command, CommandOptions& options) {
         ->option_text("PATH=VALUES");
 }
 
+void add_figure_options(CLI::App& command, CommandOptions& options) {
+    command
+        .add_option("--only",
+                    options.only,
+                    "only these figures (names, or their beginnings), and no report")
+        ->delimiter(',')
+        ->option_text("NAME,…");
+    command
+        .add_option("--width", options.width, "90mm for a column, 180mm for a page (default)")
+        ->option_text("MM");
+    command.add_flag("--bare", options.bare, "no titles");
+    command
+        .add_option(
+            "--parameters", options.parameters, "of the joint figure, such as velocity.x")
+        ->delimiter(',')
+        ->option_text("NAME,…");
+    command.add_option("--font", options.font, "font file in place of Open Sans")
+        ->option_text("FILE");
+}
+
+void add_export_options(CLI::App& command, CommandOptions& options) {
+    command.add_option("--format", options.formats, "fits (default), csv, csv.gz")
+        ->delimiter(',')
+        ->check(CLI::IsMember({"fits", "csv", "csv.gz"}))
+        ->default_val(std::vector<std::string>{"fits"})
+        ->option_text("FORMAT,…");
+    command.add_option("--thin", options.thin, "every N-th stored row only")
+        ->check(CLI::Range(1, 1'000'000'000))
+        ->option_text("N");
+}
+
 std::vector<Command> commands() {
     return {
         {.name = "run",
-         .description = "The whole job: counts, samples and summarises",
+         .description = "The whole job: counts, samples, summarises and draws",
          .resume = true,
          .strict = true,
          .action = deviascope::run_command},
@@ -115,6 +147,22 @@ std::vector<Command> commands() {
          .output_description = "folder for the summary; default: beside the chain",
          .strict = true,
          .action = deviascope::summarise_command},
+        {.name = "figures",
+         .description = "Draws figures, and makes report, tables and sky files from a chain",
+         .input = "chains.h5",
+         .input_description = "chain file",
+         .output_description = "folder for the results; default: beside the chain",
+         .strict = true,
+         .action = deviascope::figures_command,
+         .add_options = add_figure_options},
+        {.name = "export",
+         .description = "Writes the draws of a chain as a FITS or CSV table",
+         .input = "chains.h5",
+         .input_description = "chain file",
+         .output_description =
+             "folder for draws.fits, draws.csv, draws.csv.gz; default: beside the chain",
+         .action = deviascope::export_command,
+         .add_options = add_export_options},
         {.name = "compare",
          .description = "Holds the posterior against a reference velocity, rival hypotheses, "
                         "each survey, and the counts",
@@ -209,11 +257,12 @@ int parse_and_act(int argc, char** argv) {
         "deviascope"};
     program.require_subcommand(1);
     program.set_version_flag("--version", [] {
-        return fmt::format("deviascope {}\nwith {}, {}, {}",
+        return fmt::format("deviascope {}\nwith {}, {}, {}, {}",
                            deviascope::version(),
                            deviascope::library_versions(),
                            deviascope::fits::library_version(),
-                           deviascope::gzip_library_version());
+                           deviascope::gzip_library_version(),
+                           deviascope::drawing_library_versions());
     });
     program.footer(
         "Exit codes: 0 done; 2 wrong command line or job file; 3 bad input data; 4 numerics "

@@ -120,7 +120,7 @@ void note_interruption(const SampleStep& step, const Outcome& outcome, Terminal&
 void clear_the_way(const SampleStep& step, const StoredChain& stored) {
     const std::filesystem::path folder = step.lock.chain().parent_path();
     if (step.options.replace)
-        remove_results(folder, {"chains.h5", "summary.json", "summary.txt"});
+        remove_results(folder, {"chains.h5", "summary.json", "summary.txt", "report.html"});
     if (stored.progressed == Progressed::in_warm_up) remove_results(folder, {"chains.h5"});
 }
 

@@ -275,10 +275,7 @@ CountsFile obtain_counts(const Job& job,
     return make_counts(job, inputs, folder, terminal);
 }
 
-Summary summarise_into(const Chain& chain,
-                       const fs::path& folder,
-                       int threads,
-                       Terminal& terminal) {
+Summarised summarised(const Chain& chain, const fs::path& folder, int threads) {
     const Job job = job_of(chain);
     SummaryOptions options;
     options.title = job.title;
@@ -288,15 +285,23 @@ Summary summarise_into(const Chain& chain,
     options.job_warnings = job.warnings;
     options.threads = threads;
     options.effective_draws_wanted = job.ensemble.effective_draws;
-    const ParameterSpace space(chain.counts, job.model);
+    ParameterSpace space(chain.counts, job.model);
     Summary summary = summarise(chain, space, options);
-    write_text(folder / "summary.json", to_json(summary));
-    const std::string text = to_text(summary);
+    return {std::move(space), options.cmb_velocity, std::move(summary)};
+}
+
+Summarised summarise_into(const Chain& chain,
+                          const fs::path& folder,
+                          int threads,
+                          Terminal& terminal) {
+    Summarised result = summarised(chain, folder, threads);
+    write_text(folder / "summary.json", to_json(result.summary));
+    const std::string text = to_text(result.summary);
     write_text(folder / "summary.txt", text);
     terminal.say(text);
     terminal.say(fmt::format("Written: {} and summary.json beside it.",
                              (folder / "summary.txt").string()));
-    return summary;
+    return result;
 }
 
 }  // namespace deviascope

@@ -84,10 +84,20 @@ std::string time_now();
 /// Where a chain of this job comes from, begun now.
 Provenance provenance_of(const Job& job, const InputRecord& inputs);
 
+/// A chain's summary, and what of its job later stages need.
+struct Summarised {
+    ParameterSpace space;
+    Eigen::Vector3d cmb_velocity;  ///< of the cmb-velocity prior, job's frame, units of c
+    Summary summary;
+};
+/// chain -> summary; writes nothing.
+/// @param folder  where the cmb-velocity prior is looked for if the chain does not hold it
+Summarised summarised(const Chain& chain, const std::filesystem::path& folder, int threads);
+
 /// chain -> summary: writes summary.json and summary.txt of a chain into the folder.
-Summary summarise_into(const Chain& chain,
-                       const std::filesystem::path& folder,
-                       int threads,
-                       Terminal& terminal);
+Summarised summarise_into(const Chain& chain,
+                          const std::filesystem::path& folder,
+                          int threads,
+                          Terminal& terminal);
 
 }  // namespace deviascope

@@ -7,6 +7,28 @@
 #include "model/lorentz.h"
 
 namespace deviascope {
+namespace {
+
+/// What velocity and intrinsic dipole make of one source per unit of sky.
+class Modulation {
+  public:
+    Modulation(const BinTerm& term, const Eigen::Ref<const Eigen::VectorXd>& parameters)
+        : velocity_(parameters.head<3>()),
+          dipole_(term.bias_ratio * parameters.segment<3>(term.intrinsic)),
+          weight_(parameters[term.weight]),
+          log_gamma_(log_lorentz_factor(velocity_)) {}
+
+    double in(const Direction& n) const {
+        const double log_delta = -log_gamma_ - std::log1p(-velocity_.dot(n));
+        return std::exp(weight_ * log_delta) * (1.0 + dipole_.dot(n));
+    }
+
+  private:
+    Eigen::Vector3d velocity_, dipole_;
+    double weight_, log_gamma_;
+};
+
+}  // namespace
 
 std::vector<double> expected_counts(const Counts& counts,
                                     const BinTerm& term,
@@ -15,18 +37,11 @@ std::vector<double> expected_counts(const Counts& counts,
     const BinCounts& bin = survey.bins[term.bin];
     const Footprint& footprint = survey.footprints[bin.footprint];
     const Pixelisation grid(counts.nside);
-    const Eigen::Vector3d velocity = parameters.head<3>();
-    const Eigen::Vector3d dipole = term.bias_ratio * parameters.segment<3>(term.intrinsic);
-    const double weight = parameters[term.weight];
-    const double log_gamma = log_lorentz_factor(velocity);
-
+    const Modulation modulation(term, parameters);
     std::vector<double> expected(footprint.pixel.size());
     double sum = 0.0;
     for (std::size_t p = 0; p < expected.size(); ++p) {
-        const Direction n = grid.centre(footprint.pixel[p]);
-        const double log_delta = -log_gamma - std::log1p(-velocity.dot(n));
-        expected[p] =
-            footprint.exposure[p] * std::exp(weight * log_delta) * (1.0 + dipole.dot(n));
+        expected[p] = footprint.exposure[p] * modulation.in(grid.centre(footprint.pixel[p]));
         sum += expected[p];
     }
     const double monopole = parameters[term.monopole];
@@ -34,6 +49,12 @@ std::vector<double> expected_counts(const Counts& counts,
                                               : monopole * grid.solid_angle();
     for (double& value : expected) value *= scale;
     return expected;
+}
+
+double expected_density(const BinTerm& term,
+                        const Eigen::Ref<const Eigen::VectorXd>& parameters,
+                        const Direction& direction) {
+    return parameters[term.monopole] * Modulation(term, parameters).in(direction);
 }
 
 }  // namespace deviascope

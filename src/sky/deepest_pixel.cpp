@@ -15,4 +15,12 @@ std::int64_t deepest_pixel_at(const Direction& direction) {
     return cells.vec2pix({direction.x(), direction.y(), direction.z()});
 }
 
+Direction centre_of_nested(std::int64_t nested, int order) {
+    ensure(order >= 0 && order <= 29 && nested >= 0 && nested < std::int64_t{12} << 2 * order,
+           "a NESTED number is one of its order");
+    const T_Healpix_Base<std::int64_t> cells(order, NEST);
+    const vec3 centre = cells.pix2vec(nested);
+    return Direction(centre.x, centre.y, centre.z);
+}
+
 }  // namespace deviascope

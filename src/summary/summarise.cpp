@@ -9,6 +9,7 @@
 #include "deviascope/core/error.h"
 #include "deviascope/core/parallel.h"
 #include "deviascope/core/physical_constants.h"
+#include "deviascope/summary/draw_values.h"
 #include "deviascope/summary/summary.h"
 #include "summary/cautions.h"
 #include "summary/weight_modes.h"
@@ -18,16 +19,6 @@ namespace {
 
 constexpr double undefined = std::numeric_limits<double>::quiet_NaN();
 
-/// All stored rows, n_draws x n_parameters.
-using Rows =
-    Eigen::Map<const Eigen::Matrix<double, Eigen::Dynamic, Eigen::Dynamic, Eigen::RowMajor>>;
-
-Rows rows_of(const Draws& draws) {
-    return {draws.value.data(),
-            draws.n_rows * draws.n_replicates * draws.n_walkers,
-            draws.n_parameters};
-}
-
 void check_rows(const Chain& chain, const ParameterSpace& space) {
     if (chain.draws.n_rows == 0)
         throw InputError(Message{chain.provenance.job_name,
@@ -36,12 +27,6 @@ void check_rows(const Chain& chain, const ParameterSpace& space) {
                                  "let the sampler run on"});
     ensure(chain.draws.n_parameters == space.n_parameters(),
            "the chain has the parameters of its job");
-}
-
-std::vector<double> column_of(const Rows& rows, Eigen::Index parameter) {
-    std::vector<double> column(static_cast<std::size_t>(rows.rows()));
-    Eigen::Map<Eigen::VectorXd>(column.data(), rows.rows()) = rows.col(parameter);
-    return column;
 }
 
 // ---- sampling ----
@@ -64,7 +49,6 @@ bool is_defined(const ScalarDiagnostics& scalar) {
 
 SamplingSummary sampling_of(const Chain& chain,
                             const std::vector<MonitoredScalar>& monitored,
-                            std::vector<ScalarDiagnostics>& diagnostics,
                             int threads) {
     SamplingSummary sampling;
     sampling.outcome = chain.outcome;
@@ -72,7 +56,8 @@ SamplingSummary sampling_of(const Chain& chain,
     sampling.replicates = chain.draws.n_replicates;
     sampling.walkers = chain.draws.n_walkers;
     sampling.n_draws = rows_of(chain.draws).rows();
-    diagnostics = diagnose(monitored, chain.draws, chain.outcome.store_every, threads);
+    const auto diagnostics =
+        diagnose(monitored, chain.draws, chain.outcome.store_every, threads);
     std::copy_if(diagnostics.begin(),
                  diagnostics.end(),
                  std::back_inserter(sampling.scalars),
@@ -93,23 +78,6 @@ SamplingSummary sampling_of(const Chain& chain,
         if (one.way == "pixel") sampling.pixel_evaluations = one.times;
     }
     return sampling;
-}
-
-/// Independent draws of a vector's direction, for the width of its density estimate: the fewest
-/// of its components; one a walker where the run is too short to tell.
-double effective_directions(const VectorParameter& vector,
-                            const std::vector<MonitoredScalar>& monitored,
-                            const std::vector<ScalarDiagnostics>& diagnostics,
-                            const Draws& draws) {
-    double fewest = undefined;
-    for (std::size_t scalar = 0; scalar < monitored.size(); ++scalar) {
-        if (monitored[scalar].kind != MonitoredScalar::Kind::direction ||
-            monitored[scalar].first != vector.first)
-            continue;
-        fewest = std::fmin(fewest, diagnostics[scalar].bulk);
-    }
-    return std::isfinite(fewest) ? fewest
-                                 : static_cast<double>(draws.n_replicates * draws.n_walkers);
 }
 
 // ---- vectors ----
@@ -150,24 +118,6 @@ struct PriorWords {
     }
 };
 
-struct Directions {
-    std::vector<Direction> unit;
-    std::int64_t left_out = 0;
-};
-
-Directions directions_of(const Rows& rows, Eigen::Index first) {
-    Directions directions;
-    directions.unit.reserve(static_cast<std::size_t>(rows.rows()));
-    for (Eigen::Index draw = 0; draw < rows.rows(); ++draw) {
-        const Eigen::Vector3d vector = rows.block<1, 3>(draw, first).transpose();
-        if (vector.isZero(0.0))
-            ++directions.left_out;
-        else
-            directions.unit.push_back(vector.stableNormalized());
-    }
-    return directions;
-}
-
 void place(const Eigen::Vector3d& vector, Frame frame, VectorSummary& summary) {
     summary.galactic = lon_lat_of(rotation(frame, Frame::galactic) * vector);
     summary.icrs = lon_lat_of(rotation(frame, Frame::icrs) * vector);
@@ -198,7 +148,7 @@ void find_direction(const Directions& directions,
     summary.region95 = region_of(density, directions, mean, level95);
 }
 
-void find_moments(const Rows& rows, Eigen::Index first, VectorSummary& summary) {
+void find_moments(const DrawRows& rows, Eigen::Index first, VectorSummary& summary) {
     const auto vectors = rows.middleCols<3>(first);
     const Eigen::RowVector3d origin = vectors.row(0);
     const Eigen::RowVector3d shift = (vectors.rowwise() - origin).colwise().mean();
@@ -210,14 +160,7 @@ void find_moments(const Rows& rows, Eigen::Index first, VectorSummary& summary) 
                              : Eigen::Matrix3d::Constant(undefined);
 }
 
-std::vector<double> amplitudes_of(const Rows& rows, Eigen::Index first) {
-    std::vector<double> amplitude(static_cast<std::size_t>(rows.rows()));
-    Eigen::Map<Eigen::VectorXd>(amplitude.data(), rows.rows()) =
-        rows.middleCols<3>(first).rowwise().norm();
-    return amplitude;
-}
-
-VectorSummary vector_of(const Rows& rows,
+VectorSummary vector_of(const DrawRows& rows,
                         const ParameterSpace& space,
                         std::size_t index,
                         std::uint64_t seed) {
@@ -236,7 +179,7 @@ VectorSummary vector_of(const Rows& rows,
     return summary;
 }
 
-std::optional<CmbOffset> offset_of(const Rows& rows,
+std::optional<CmbOffset> offset_of(const DrawRows& rows,
                                    const VectorParameter& velocity,
                                    const Eigen::Vector3d& cmb_velocity) {
     ensure(!cmb_velocity.isZero(0.0), "the velocity of the CMB prior is not zero");
@@ -264,7 +207,7 @@ std::optional<CmbOffset> offset_of(const Rows& rows,
 
 // ---- bins ----
 
-std::vector<BinSummary> bins_of(const Rows& rows,
+std::vector<BinSummary> bins_of(const DrawRows& rows,
                                 const Counts& counts,
                                 const ParameterSpace& space) {
     const Pixelisation grid(counts.nside);
@@ -307,7 +250,7 @@ WeightModes modes_of(const Rows& rows,
 
 // ---- separation ----
 
-Separation separation_from(const Rows& rows,
+Separation separation_from(const DrawRows& rows,
                            const Counts& counts,
                            const ParameterSpace& space,
                            const VectorSummary& velocity) {
@@ -322,13 +265,12 @@ Summary summarise(const Chain& chain,
                   const ParameterSpace& space,
                   const SummaryOptions& options) {
     check_rows(chain, space);
-    const Rows rows = rows_of(chain.draws);
+    const DrawRows rows = rows_of(chain.draws);
     const auto monitored = monitored_scalars(space.parameters(), space.vectors());
-    std::vector<ScalarDiagnostics> diagnostics;
     Summary summary;
     summary.job = options.title;
     summary.frame = chain.counts.frame;
-    summary.sampling = sampling_of(chain, monitored, diagnostics, options.threads);
+    summary.sampling = sampling_of(chain, monitored, options.threads);
 
     std::vector<VectorSummary> vectors(space.vectors().size());
     parallel_for(vectors.size(), options.threads, [&](std::size_t index) {
@@ -337,7 +279,7 @@ Summary summarise(const Chain& chain,
         if (vector.direction_free)
             find_direction(directions_of(rows, vector.first),
                            summary.frame,
-                           effective_directions(vector, monitored, diagnostics, chain.draws),
+                           effective_directions(vector, summary.sampling.scalars, chain.draws),
                            vectors[index]);
         else if (!vectors[index].mean.isZero(0.0))
             place(vectors[index].mean, summary.frame, vectors[index]);

@@ -49,7 +49,8 @@ TEST_CASE("a wrong command line is one message and exit code 2", "[app]") {
 TEST_CASE("a word that is no command is answered with the nearest one", "[app]") {
     CHECK(deviascope_with({"sumarise", "chains.h5"}).err ==
           "deviascope: command line: there is no command \"sumarise\"; the commands are run, "
-          "check, count, weigh, sample, summarise, compare, sweep, mock; did you mean "
+          "check, count, weigh, sample, summarise, figures, export, compare, sweep, mock; did "
+          "you mean "
           "summarise?\n");
 }
 

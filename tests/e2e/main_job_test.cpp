@@ -11,6 +11,7 @@
 #include <thread>
 
 #include "deviascope/chain/chain_file.h"
+#include "file_bytes.h"
 #include "lattice_job.h"
 #include "program_on_job.h"
 #include "run_process.h"
@@ -52,6 +53,44 @@ TEST_CASE("one command turns a catalogue into counts, chain and summary", "[app]
     CHECK(summary["bins"][0]["sources"] == 10000);
     CHECK(summary["sampling"]["converged"] == true);
 
+    SECTION("report, figures, tables and sky files lie beside the summary") {
+        for (const char* name : {"report.html",
+                                 "figures/directions.svg",
+                                 "figures/joint.pdf",
+                                 "figures/traces.png",
+                                 "figures/data/profile-binnacle.csv",
+                                 "tables/results.tex",
+                                 "tables/bins.csv",
+                                 "sky/direction-velocity-icrs.fits",
+                                 "sky/region95-intrinsic-binnacle.moc.fits",
+                                 "sky/residuals-binnacle.fits"})
+            CHECK(std::filesystem::file_size(folder / "out" / name) > 100);
+    }
+    SECTION("the chain file alone gives the same figures and report, and its draws") {
+        std::filesystem::copy(folder / "out" / "chains.h5", folder / "chains.h5");
+        const auto with_chain = [&](std::vector<std::string> words) {
+            words.insert(words.begin() + 1, (folder / "chains.h5").string());
+            words.insert(words.begin(), DEVIASCOPE_PROGRAM);
+            return test::run_process(words);
+        };
+        REQUIRE(with_chain({"figures", "--quiet"}).exit_code == 0);
+        for (const char* name : {"report.html",
+                                 "figures/directions.svg",
+                                 "figures/directions.pdf",
+                                 "tables/results.tex",
+                                 "sky/region68-velocity.moc.fits"})
+            CHECK(test::bytes_of(folder / name) == test::bytes_of(folder / "out" / name));
+        CHECK(with_chain({"figures"}).exit_code == 5);  // they are there
+        CHECK(with_chain({"figures", "--only", "traces"}).exit_code == 5);
+        CHECK(with_chain({"figures", "--only", "traces", "--width", "90mm", "--replace"})
+                  .exit_code == 0);
+        CHECK_THAT(with_chain({"figures", "--only", "wights"}).err,
+                   Catch::Contains("did you mean \"weights\"?"));
+        CHECK(with_chain({"figures", "--width", "wide"}).exit_code == 2);
+        REQUIRE(with_chain({"export", "--format", "csv,csv.gz", "--thin", "2"}).exit_code == 0);
+        CHECK_THAT(test::bytes_of(folder / "draws.csv"),
+                   Catch::StartsWith("step,replicate,walker,log_posterior"));
+    }
     SECTION("nothing existing is overwritten without --replace") {
         const ProcessResult second = run_job(folder, {});
         CHECK(second.exit_code == 5);

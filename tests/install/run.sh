@@ -57,7 +57,7 @@ complete_words() { (
 [ "$(complete_words deviascope ch)" = check ] || fail "commands are not completed"
 manual=$(tr -d '\\' < "$work/usr/share/man/man1/deviascope.1")
 knows() { grep -qxF -e "$2" <<< "$1"; }
-for command in run check count weigh sample summarise compare sweep mock; do
+for command in run check count weigh sample summarise figures export compare sweep mock; do
     knows "$(complete_words deviascope '')" "$command" || fail "$command is not completed"
     completed=$(complete_words deviascope "$command" --)
     for option in $("$build/deviascope" "$command" --help | grep -E '^ +-' | grep -oE -- '--[a-z]+' | sort -u); do

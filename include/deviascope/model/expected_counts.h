@@ -7,6 +7,7 @@
 
 #include "deviascope/counts/count_map.h"
 #include "deviascope/model/parameter_space.h"
+#include "deviascope/sky/direction.h"
 
 namespace deviascope {
 
@@ -19,5 +20,11 @@ namespace deviascope {
 std::vector<double> expected_counts(const Counts& counts,
                                     const BinTerm& term,
                                     const Eigen::Ref<const Eigen::VectorXd>& parameters);
+
+/// The same per steradian at full exposure in a direction, lambda / (Omega w).
+/// @param parameters  a full row with its monopole
+double expected_density(const BinTerm& term,
+                        const Eigen::Ref<const Eigen::VectorXd>& parameters,
+                        const Direction& direction);
 
 }  // namespace deviascope

@@ -1,0 +1,35 @@
+// SPDX-License-Identifier: GPL-2.0-or-later
+// APP: on top of all stages
+#pragma once
+
+#include <filesystem>
+#include <string>
+#include <vector>
+
+#include "app/output_folder.h"
+#include "app/steps.h"
+#include "app/terminal.h"
+#include "deviascope/figures/figures.h"
+
+namespace deviascope {
+
+/// The first file that each output of `write_results` begins with, for prepare_output.
+std::vector<std::string> names_of_results();
+
+/// summary -> figures: figures, report, tables and sky files of a chain into the folder.
+void write_results(const Chain& chain,
+                   const Summarised& summarised,
+                   const FigureOptions& options,
+                   const std::filesystem::path& folder,
+                   Terminal& terminal);
+
+/// The same, but only the figures that the options choose.
+/// Errors: OutputError where one is there and may not be replaced.
+void write_chosen_figures(const Chain& chain,
+                          const Summarised& summarised,
+                          const FigureOptions& options,
+                          const std::filesystem::path& folder,
+                          Existing existing,
+                          Terminal& terminal);
+
+}  // namespace deviascope
