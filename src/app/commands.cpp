@@ -201,10 +201,12 @@ ExitCode figures_command(const CommandOptions& options) {
     const fs::path folder = folder_beside(options);
     if (figures.only.empty()) prepare_output(folder, names_of_results(), existing_of(options));
     const Summarised result = summarised(chain, folder, options.n_threads());
+    const ChainResults results{
+        chain, result, comparison_beside(options.input, chain.provenance, terminal)};
     if (figures.only.empty())
-        write_results(chain, result, figures, folder, terminal);
+        write_results(results, figures, folder, terminal);
     else
-        write_chosen_figures(chain, result, figures, folder, existing_of(options), terminal);
+        write_chosen_figures(results, figures, folder, existing_of(options), terminal);
     return verdict(result.summary, options);
 }
 
@@ -236,7 +238,10 @@ ExitCode run_command(const CommandOptions& options) {
     const Summarised result = summarise_into(chain, folder, options.n_threads(), terminal);
     FigureOptions figures;
     figures.threads = options.n_threads();
-    write_results(chain, result, figures, folder, terminal);
+    write_results({chain, result, comparison_beside(lock.chain(), chain.provenance, terminal)},
+                  figures,
+                  folder,
+                  terminal);
     return verdict(result.summary, options);
 }
 

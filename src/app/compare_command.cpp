@@ -11,6 +11,7 @@
 #include "app/hypotheses.h"
 #include "app/steps.h"
 #include "app/weigh_step.h"
+#include "deviascope/chain/fingerprint.h"
 #include "deviascope/counts/sky_overlap.h"
 #include "deviascope/sky/position_match.h"
 #include "deviascope/summary/comparison.h"
@@ -311,7 +312,8 @@ ExitCode compare_command(const CommandOptions& options) {
         {written, inputs, options.n_threads()}, folder, existing_of(options), false, terminal);
     const CountsFile file = obtain_counts(job, inputs, folder, existing_of(options), terminal);
     measure_dispersions(job, file.counts, terminal);
-    const Comparison comparison = Comparer(job, file.counts, options, terminal).compare();
+    Comparison comparison = Comparer(job, file.counts, options, terminal).compare();
+    comparison.fingerprint = fingerprint_of(provenance_of(job, inputs));
     write_text(folder / "compare.json", to_json(comparison));
     write_text(folder / "compare.csv", to_csv(comparison));
     const std::string text = to_text(comparison);
@@ -319,6 +321,9 @@ ExitCode compare_command(const CommandOptions& options) {
     terminal.say(text);
     terminal.say(fmt::format("Written: {}, and compare.json and compare.csv beside it.",
                              (folder / "compare.txt").string()));
+    if (std::filesystem::exists(folder / "chains.h5"))
+        terminal.say(fmt::format("To have it in the report: deviascope figures {} --replace",
+                                 (folder / "chains.h5").string()));
     return options.strict && !comparison.warnings.empty() ? ExitCode::doubtful : ExitCode::done;
 }
 

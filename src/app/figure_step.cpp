@@ -3,10 +3,12 @@
 
 #include <fmt/format.h>
 
+#include "deviascope/chain/fingerprint.h"
 #include "deviascope/figures/report.h"
 #include "deviascope/summary/direction_densities.h"
 #include "deviascope/summary/result_tables.h"
 #include "deviascope/summary/sky_files.h"
+#include "job/text_file.h"
 
 namespace deviascope {
 
@@ -19,14 +21,15 @@ struct Prepared {
     std::vector<std::optional<DirectionDensity>> directions;
     FigureSource source;
 
-    Prepared(const Chain& chain, const Summarised& summarised, int threads)
-        : directions(direction_densities(chain, summarised.summary, threads)),
-          source{chain,
-                 summarised.space,
-                 summarised.summary,
+    Prepared(const ChainResults& results, int threads)
+        : directions(direction_densities(results.chain, results.summarised.summary, threads)),
+          source{results.chain,
+                 results.summarised.space,
+                 results.summarised.summary,
                  directions,
-                 summarised.cmb_velocity,
-                 chain.provenance.seed} {}
+                 results.summarised.cmb_velocity,
+                 results.chain.provenance.seed,
+                 results.comparison ? &*results.comparison : nullptr} {}
 };
 
 void write_figures(const std::vector<Figure>& figures, const fs::path& folder) {
@@ -58,30 +61,46 @@ std::vector<std::string> names_of_results() {
     return {"report.html", "tables/page.tex"};
 }
 
-void write_results(const Chain& chain,
-                   const Summarised& summarised,
+std::optional<Comparison> comparison_beside(const fs::path& chain_file,
+                                            const Provenance& provenance,
+                                            Terminal& terminal) {
+    const fs::path path = chain_file.parent_path() / "compare.json";
+    const std::optional<std::string> text = text_of_file(path);
+    if (!text) return std::nullopt;
+    try {
+        Comparison comparison = comparison_of_json(*text, path.string());
+        if (comparison.fingerprint == fingerprint_of(provenance)) return comparison;
+        terminal.warn(path.string() +
+                      " is of another job or other inputs: left out of figures and report");
+    } catch (const InputError& fault) {
+        terminal.warn(std::string(fault.what()) + "; left out of figures and report");
+    }
+    return std::nullopt;
+}
+
+void write_results(const ChainResults& results,
                    const FigureOptions& options,
                    const fs::path& folder,
                    Terminal& terminal) {
-    const Prepared prepared(chain, summarised, options.threads);
+    const Prepared prepared(results, options.threads);
+    const Summary& summary = results.summarised.summary;
     const std::vector<Figure> figures = make_figures(prepared.source, options);
     write_figures(figures, folder / "figures");
-    write_tables(summarised.summary, chain, folder / "tables");
+    write_tables(summary, results.chain, folder / "tables");
     make_folder(folder / "sky");
-    write_sky_files({chain, summarised.space, summarised.summary, prepared.directions},
+    write_sky_files({results.chain, results.summarised.space, summary, prepared.directions},
                     folder / "sky");
     write_text(folder / "report.html", report_html(prepared.source, figures));
     terminal.say(fmt::format("Written: {} with figures/, tables/ and sky/ beside it.",
                              (folder / "report.html").string()));
 }
 
-void write_chosen_figures(const Chain& chain,
-                          const Summarised& summarised,
+void write_chosen_figures(const ChainResults& results,
                           const FigureOptions& options,
                           const fs::path& folder,
                           Existing existing,
                           Terminal& terminal) {
-    const Prepared prepared(chain, summarised, options.threads);
+    const Prepared prepared(results, options.threads);
     const std::vector<Figure> figures = make_figures(prepared.source, options);
     std::vector<std::string> names;
     for (const Figure& figure : figures) names.push_back(figure.name + ".svg");

@@ -3,6 +3,7 @@
 #pragma once
 
 #include <filesystem>
+#include <optional>
 #include <string>
 #include <vector>
 
@@ -16,17 +17,29 @@ namespace deviascope {
 /// The first file that each output of `write_results` begins with, for prepare_output.
 std::vector<std::string> names_of_results();
 
+/// A chain, its summary, and the comparison beside it where that has been made of the same job
+/// and inputs.
+struct ChainResults {
+    const Chain& chain;
+    const Summarised& summarised;
+    std::optional<Comparison> comparison;
+};
+
+/// The compare.json in the folder of a chain. One of another job, or that cannot be read, is
+/// left out with a warning.
+std::optional<Comparison> comparison_beside(const std::filesystem::path& chain_file,
+                                            const Provenance& provenance,
+                                            Terminal& terminal);
+
 /// summary -> figures: figures, report, tables and sky files of a chain into the folder.
-void write_results(const Chain& chain,
-                   const Summarised& summarised,
+void write_results(const ChainResults& results,
                    const FigureOptions& options,
                    const std::filesystem::path& folder,
                    Terminal& terminal);
 
 /// The same, but only the figures that the options choose.
 /// Errors: OutputError where one is there and may not be replaced.
-void write_chosen_figures(const Chain& chain,
-                          const Summarised& summarised,
+void write_chosen_figures(const ChainResults& results,
                           const FigureOptions& options,
                           const std::filesystem::path& folder,
                           Existing existing,

@@ -84,11 +84,13 @@ std::string table_of_scatter(const MeasuredWeights& weights) {
     std::string text = table.text();
     if (weights.scatter_shift)
         text += fmt::format(
-            "\nWith weights of scatter-free distributions the velocity would come out {:.4f} "
-            "of the true one with a\nfree intrinsic dipole, {:.4f} without one. The weights as "
-            "observed are the right ones for this catalogue.\n",
+            "\nWith weights of scatter-free distributions the velocity would come out {:.4f} ± "
+            "{:.4f} of the true one\nwith a free intrinsic dipole, {:.4f} ± {:.4f} without "
+            "one. The weights as observed are the right ones for\nthis catalogue.\n",
             weights.scatter_shift->free_intrinsic,
-            weights.scatter_shift->no_intrinsic);
+            weights.scatter_shift->free_intrinsic_sd,
+            weights.scatter_shift->no_intrinsic,
+            weights.scatter_shift->no_intrinsic_sd);
     return text;
 }
 

@@ -1,5 +1,6 @@
 // SPDX-License-Identifier: GPL-2.0-or-later
 #include <fmt/format.h>
+#include <fmt/ranges.h>
 
 #include <algorithm>
 
@@ -69,12 +70,17 @@ struct Marked {
     std::string label;
 };
 
-/// Marks at mean directions, then all labels around them.
-void draw_marks(const FigureContext& context,
-                Drawing& drawing,
-                const SkyPanel& panel,
-                const std::vector<VectorSeries>& series,
-                const std::vector<Box>& labels) {
+/// Whether labels leave `intrinsic dipole of` out: many of them on a narrow map.
+bool has_short_labels(const FigureContext& context, const std::vector<VectorSeries>& series) {
+    return series.size() > 3 && context.width() < 400.0;
+}
+
+/// Marks at mean directions, then all labels around them; returns those that found no room.
+std::vector<std::string> draw_marks(const FigureContext& context,
+                                    Drawing& drawing,
+                                    const SkyPanel& panel,
+                                    const std::vector<VectorSeries>& series,
+                                    const std::vector<Box>& labels) {
     LabelPlacer placer(context.fonts,
                        {2.0, panel.box().top - 2.0, drawing.width - 2.0, panel.box().bottom});
     for (const Box& label : labels) placer.keep_free(label);
@@ -84,8 +90,10 @@ void draw_marks(const FigureContext& context,
         if (!pointing) continue;
         const Point at = panel.at(*pointing);
         draw_mark(drawing, at, 5.0, one.index, palette::series(one.index));
-        const std::string name =
-            one.parameter->direction_free ? one.name : one.name + " (fixed)";
+        std::string name = has_short_labels(context, series) && !one.is_velocity()
+                               ? one.summary->name
+                               : one.name;
+        if (!one.parameter->direction_free) name += " (fixed)";
         marks.push_back({at, shortened(context.fonts, name, type::note, 0.4 * drawing.width)});
     }
     if (!context.source.cmb_velocity.isZero(0.0)) {
@@ -95,7 +103,10 @@ void draw_marks(const FigureContext& context,
     }
     for (const Marked& mark : marks)
         placer.keep_free(Box{mark.at.x, mark.at.y, mark.at.x, mark.at.y}.grown(4.0));
-    for (const Marked& mark : marks) placer.place(drawing, mark.at, mark.label);
+    std::vector<std::string> unplaced;
+    for (const Marked& mark : marks)
+        if (!placer.place(drawing, mark.at, mark.label)) unplaced.push_back(mark.label);
+    return unplaced;
 }
 
 std::string words_of(const FigureContext& context, const VectorSeries& series) {
@@ -148,6 +159,8 @@ double draw_key(const FigureContext& context,
 std::vector<std::string> notes_of(const FigureContext& context,
                                   const std::vector<VectorSeries>& series) {
     std::vector<std::string> notes;
+    if (has_short_labels(context, series))
+        notes.emplace_back("Names of surveys stand for their intrinsic dipoles.");
     for (const VectorSeries& one : series) {
         if (one.summary->mean.isZero(0.0) && !one.parameter->amplitude_free)
             notes.push_back(fmt::format("{}: fixed at zero.", one.name));
@@ -175,8 +188,6 @@ std::vector<Sheet> direction_sheets(const FigureContext& context) {
     const SkyPanel panel(quiet_centre(context, series), box);
     panel.draw_ground(sheet.drawing, palette::plain_sky());
     sheet.drawing.add(masks_on(panel, context.source.chain.counts));
-    const std::vector<Box> labels =
-        panel.draw_graticule(sheet.drawing, context.fonts, context.source.summary.frame);
     std::vector<VectorRegions> regions;
     for (const VectorSeries& one : series)
         regions.push_back(regions_of(context, panel.map(), one));
@@ -187,15 +198,20 @@ std::vector<Sheet> direction_sheets(const FigureContext& context) {
             shown.push_back(&one);
             add_edges(csv, panel.map(), one);
         }
+    std::vector<Polyline> covered;
+    for (const VectorRegions* one : shown) {
+        const std::vector<Polyline> areas = panel.at(one->region68);
+        covered.insert(covered.end(), areas.begin(), areas.end());
+    }
+    const std::vector<Box> labels = panel.draw_graticule(
+        sheet.drawing, context.fonts, context.source.summary.frame, covered);
     draw_regions(sheet.drawing, panel, shown);
-    draw_marks(context, sheet.drawing, panel, series, labels);
+    const auto unplaced = draw_marks(context, sheet.drawing, panel, series, labels);
     double bottom = draw_key(context, sheet.drawing, series, box.bottom + 4.0);
-    bottom = draw_notes(sheet.drawing,
-                        context.fonts,
-                        notes_of(context, series),
-                        8.0,
-                        bottom,
-                        palette::grey_text());
+    std::vector<std::string> notes = notes_of(context, series);
+    if (!unplaced.empty())
+        notes.push_back(fmt::format("No room for the label of {}.", fmt::join(unplaced, ", ")));
+    bottom = draw_notes(sheet.drawing, context.fonts, notes, 8.0, bottom, palette::grey_text());
     std::vector<std::string> words;
     for (const VectorSeries& one : series) words.push_back(words_of(context, one));
     sheet.alternative = fmt::format("Map of the whole sky in {} coordinates. {}.",

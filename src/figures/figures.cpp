@@ -21,10 +21,12 @@ struct Kind {
     const char* name;
     std::vector<Sheet> (*draw)(const FigureContext&);
 };
-constexpr std::array<Kind, 7> kinds = {{{"directions", direction_sheets},
+constexpr std::array<Kind, 9> kinds = {{{"directions", direction_sheets},
                                         {"residuals", residual_sheets},
                                         {"amplitudes", amplitude_sheets},
                                         {"joint", joint_sheets},
+                                        {"hypotheses", hypothesis_sheets},
+                                        {"surveys", survey_sheets},
                                         {"profile", profile_sheets},
                                         {"weights", weight_sheets},
                                         {"traces", trace_sheets}}};

@@ -197,7 +197,7 @@ std::string separation_block(const Summary& summary) {
     return text;
 }
 
-std::string comparison_block(const Summary& summary) {
+std::string offset_block(const Summary& summary) {
     if (!summary.offset_from_cmb || !summary.velocity.amplitude_free) return "";
     const CmbOffset& offset = *summary.offset_from_cmb;
     std::vector<std::string> parts;
@@ -217,6 +217,47 @@ std::string comparison_block(const Summary& summary) {
     }
     return paragraph(fmt::format("Against the velocity inferred from the CMB dipole: {}.",
                                  fmt::join(parts, ", and ")));
+}
+
+/// What a comparison adds in words; nothing where none has been made.
+std::string rivals_block(const Comparison* comparison) {
+    if (comparison == nullptr || comparison->hypotheses.empty()) return "";
+    const auto& hypotheses = comparison->hypotheses;
+    const HypothesisResult& best = hypotheses[best_hypothesis(hypotheses)];
+    std::vector<std::string> against;
+    for (const HypothesisResult& one : hypotheses)
+        if (&one != &best)
+            against.push_back(
+                fmt::format("{}: {}",
+                            one.name,
+                            grade_of(best.evidence.bridge.value - one.evidence.bridge.value)));
+    std::string text = paragraph(
+        fmt::format("Of {} hypotheses, {} has the largest evidence ({}, intrinsic {}); against "
+                    "the others the evidence is, {}.",
+                    hypotheses.size(),
+                    best.name,
+                    best.velocity,
+                    best.intrinsic,
+                    fmt::join(against, ", ")));
+    const Consistency& together = comparison->consistency;
+    if (std::isfinite(together.sigma))
+        text += paragraph(fmt::format(
+            "{} surveys, each fitted alone, are {} standard deviations off one velocity "
+            "(χ² {} of {} degrees of freedom).",
+            together.n_surveys,
+            plain_number(together.sigma, 1),
+            plain_number(together.chi2, 1),
+            plain_number(together.degrees, 0)));
+    return text;
+}
+
+/// The summary's warnings, then those that only the comparison has.
+std::vector<std::string> all_warnings(const FigureSource& source) {
+    std::vector<std::string> all = source.summary.warnings;
+    if (source.comparison == nullptr) return all;
+    for (const std::string& warning : source.comparison->warnings)
+        if (std::ranges::find(all, warning) == all.end()) all.push_back(warning);
+    return all;
 }
 
 std::string sampling_table(const SamplingSummary& sampling) {
@@ -249,11 +290,9 @@ std::string provenance_block(const Provenance& provenance) {
     table.header = {"file", "bytes", "SHA-256"};
     for (const InputDigest& input : provenance.inputs)
         table.rows.push_back({input.path, grouped(input.bytes), input.sha256});
-    return paragraph(fmt::format("deviascope {}, seed {}; begun {}, ended {}; {}.",
+    return paragraph(fmt::format("deviascope {}, seed {}; {}.",
                                  provenance.version,
                                  provenance.seed,
-                                 provenance.started,
-                                 provenance.ended.empty() ? "not yet" : provenance.ended,
                                  provenance.libraries)) +
            (table.rows.empty() ? "" : in_frame(to_html(table))) +
            fmt::format("<details><summary>Job file {}</summary>\n<pre>{}</pre></details>\n",
@@ -263,7 +302,7 @@ std::string provenance_block(const Provenance& provenance) {
 
 std::string body_of(const FigureSource& source, const std::vector<Figure>& figures) {
     const Summary& summary = source.summary;
-    std::string body = warnings_block(summary.warnings);
+    std::string body = warnings_block(all_warnings(source));
     body += section("question", "Question", paragraph(question(summary)));
     body += section(
         "data", "Data and cuts", in_frame(to_html(bins_table(summary))) + cuts_blocks(summary));
@@ -276,7 +315,7 @@ std::string body_of(const FigureSource& source, const std::vector<Figure>& figur
     body += section("amplitudes-section",
                     "Amplitudes",
                     figures_named(figures, "amplitudes") + figures_named(figures, "joint"));
-    const std::string comparison = comparison_block(summary) +
+    const std::string comparison = offset_block(summary) + rivals_block(source.comparison) +
                                    figures_named(figures, "hypotheses") +
                                    figures_named(figures, "surveys");
     if (!comparison.empty()) body += section("comparison", "Comparison", comparison);

@@ -81,5 +81,7 @@ std::vector<Sheet> joint_sheets(const FigureContext& context);
 std::vector<Sheet> profile_sheets(const FigureContext& context);
 std::vector<Sheet> weight_sheets(const FigureContext& context);
 std::vector<Sheet> trace_sheets(const FigureContext& context);
+std::vector<Sheet> hypothesis_sheets(const FigureContext& context);
+std::vector<Sheet> survey_sheets(const FigureContext& context);
 
 }  // namespace deviascope

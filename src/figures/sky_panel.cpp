@@ -19,6 +19,25 @@ Colour graticule_colour() {
     return palette::grey_text().with_alpha(0.45);
 }
 
+/// Whether a point is inside of areas, by the even-odd rule.
+bool is_inside(const std::vector<Polyline>& areas, Point at) {
+    bool inside = false;
+    for (const Polyline& area : areas)
+        for (std::size_t i = 0, j = area.point.size() - 1; i < area.point.size(); j = i++) {
+            const Point a = area.point[i], b = area.point[j];
+            if ((a.y > at.y) != (b.y > at.y) &&
+                at.x < a.x + (at.y - a.y) / (b.y - a.y) * (b.x - a.x))
+                inside = !inside;
+        }
+    return inside;
+}
+
+bool is_touched(const Box& box, const std::vector<Polyline>& areas) {
+    const double y = 0.5 * (box.top + box.bottom);
+    return is_inside(areas, {box.left, y}) || is_inside(areas, {box.right, y}) ||
+           is_inside(areas, {0.5 * (box.left + box.right), y});
+}
+
 }  // namespace
 
 Point SkyPanel::at(const Mollweide::Place& place) const {
@@ -50,7 +69,8 @@ std::vector<Polyline> SkyPanel::at(const MapLines& lines) const {
 
 std::vector<Box> SkyPanel::draw_graticule(Drawing& drawing,
                                           const Fonts& fonts,
-                                          Frame frame) const {
+                                          Frame frame,
+                                          const std::vector<Polyline>& covered) const {
     std::vector<Box> labels;
     Shape lines{{}, std::nullopt, Stroke{rule::graticule, graticule_colour()}};
     for (int step = -2; step <= 2; ++step) {
@@ -80,7 +100,9 @@ std::vector<Box> SkyPanel::draw_graticule(Drawing& drawing,
                              palette::grey_text());
         label.at.y += 1.25 * type::tick;
         label.halo = 1.6;
-        labels.push_back(box_of(label, fonts));
+        const Box place = box_of(label, fonts);
+        if (is_touched(place, covered)) continue;
+        labels.push_back(place);
         drawing.add(label);
     }
     static constexpr const char* names[] = {"galactic l, b", "ICRS RA, Dec", "ecliptic λ, β"};

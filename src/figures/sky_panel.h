@@ -32,8 +32,11 @@ class SkyPanel {
 
     void draw_ground(Drawing& drawing, Colour colour) const;
     /// Meridians every 60 and parallels every 30 degrees, rim, labels; returns the labels'
-    /// boxes.
-    std::vector<Box> draw_graticule(Drawing& drawing, const Fonts& fonts, Frame frame) const;
+    /// boxes. Meridians have no label where an area of `covered` would lie over it.
+    std::vector<Box> draw_graticule(Drawing& drawing,
+                                    const Fonts& fonts,
+                                    Frame frame,
+                                    const std::vector<Polyline>& covered = {}) const;
 
     /// A picture of a function of the direction; `colour` may be transparent.
     template <class ColourAt>

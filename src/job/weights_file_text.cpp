@@ -95,9 +95,12 @@ std::string weights_file_text(const MeasuredWeights& weights, const std::string&
     if (weights.scatter_shift)
         out += fmt::format(
             "\n# Fitted over true velocity, were the scatter-free weights used.\n"
-            "[scatter_shift]\nfree_intrinsic = {}\nno_intrinsic = {}\n",
+            "[scatter_shift]\nfree_intrinsic = {}\nfree_intrinsic_sd = {}\n"
+            "no_intrinsic = {}\nno_intrinsic_sd = {}\n",
             number(weights.scatter_shift->free_intrinsic),
-            number(weights.scatter_shift->no_intrinsic));
+            number(weights.scatter_shift->free_intrinsic_sd),
+            number(weights.scatter_shift->no_intrinsic),
+            number(weights.scatter_shift->no_intrinsic_sd));
     for (const BinReport& bin : weights.bins) out += text_of(bin);
     return out;
 }

@@ -145,6 +145,7 @@ std::string to_json(const Comparison& all) {
     return page_of(
         {{"schema", 1},
          {"job", all.job},
+         {"fingerprint", all.fingerprint},
          {"frame", name_of(all.frame)},
          {"reference",
           {{"name", all.reference},

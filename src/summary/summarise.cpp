@@ -232,7 +232,7 @@ std::vector<BinSummary> bins_of(const DrawRows& rows,
 }
 
 /// Modes of the weights of one survey.
-WeightModes modes_of(const Rows& rows,
+WeightModes modes_of(const DrawRows& rows,
                      const Counts& counts,
                      const ParameterSpace& space,
                      std::size_t survey) {

@@ -28,6 +28,13 @@ constexpr double widest_sd = 1.0;  // of a weight that is worth its name
 constexpr double unstable = 3.0;   // standard deviations
 constexpr double suspicious_pull = 3.0;
 
+/// Standard deviation, with n - 1; NaN of fewer than two values.
+double sd_of(const std::vector<double>& values) {
+    const Eigen::Map<const Eigen::ArrayXd> all(values.data(), std::ssize(values));
+    if (all.size() < 2) return std::numeric_limits<double>::quiet_NaN();
+    return std::sqrt((all - all.mean()).square().sum() / double(all.size() - 1));
+}
+
 /// Everything between the catalogue and the report of one survey.
 class Measurement {
   public:
@@ -214,15 +221,11 @@ class Measurement {
     /// The difference against half the windows has a noise of its own, known from the
     /// replicates.
     void warn_of_instability(const BinReport& bin, Eigen::Index column) {
-        double sum = 0.0, square = 0.0, n = 0.0;
-        for (Eigen::Index r = 0; r < replicate_.rows(); ++r) {
-            const double difference = half_(r, column) - replicate_(r, column);
-            if (!std::isfinite(difference)) continue;
-            sum += difference;
-            square += difference * difference;
-            n += 1.0;
-        }
-        const double sd = n > 1.0 ? std::sqrt((square - sum * sum / n) / (n - 1.0)) : 0.0;
+        std::vector<double> differences;
+        for (Eigen::Index r = 0; r < replicate_.rows(); ++r)
+            if (const double d = half_(r, column) - replicate_(r, column); std::isfinite(d))
+                differences.push_back(d);
+        const double sd = differences.size() > 1 ? sd_of(differences) : 0.0;
         const double change = bin.with_half_windows - bin.mean;
         if (!std::isfinite(change) || std::abs(change) > unstable * sd)
             warn(bin.name,
@@ -256,15 +259,36 @@ class Measurement {
     }
 
     void report_scatter(const WeightEstimator& estimator) {
-        std::vector<double> n, observed;
-        const std::vector<double> free = scatter_.weights(estimator, sources_.one_plus_alpha());
+        const Eigen::MatrixXd free = scatter_.weights(estimator, sources_.one_plus_alpha());
         for (std::size_t b = 0; b < boxes_.box.size(); ++b) {
-            n.push_back(tally_.in_box(b, 0));
-            observed.push_back(out_.bins[b].mean);
-            if (std::isfinite(free[b])) out_.bins[b].scatter_free = free[b];
+            const double weight = free(0, static_cast<Eigen::Index>(b));
+            if (std::isfinite(weight)) out_.bins[b].scatter_free = weight;
         }
-        const bool known = std::ranges::all_of(free, [](double w) { return std::isfinite(w); });
-        if (known && n.size() > 1) out_.scatter_shift = shift_of_velocity(n, observed, free);
+        if (boxes_.box.size() < 2 || !free.row(0).allFinite()) return;
+        ScatterShift shift = shift_in(estimator, free, 0);
+        std::vector<double> with_free, without;
+        for (Eigen::Index row = 1; row < free.rows(); ++row) {
+            const ScatterShift other = shift_in(estimator, free, row);
+            if (!std::isfinite(other.free_intrinsic)) continue;
+            with_free.push_back(other.free_intrinsic);
+            without.push_back(other.no_intrinsic);
+        }
+        shift.free_intrinsic_sd = sd_of(with_free);
+        shift.no_intrinsic_sd = sd_of(without);
+        out_.scatter_shift = shift;
+    }
+
+    /// The shift that a replicate tells (0: the catalogue).
+    ScatterShift shift_in(const WeightEstimator& estimator,
+                          const Eigen::MatrixXd& free,
+                          Eigen::Index replicate) const {
+        const auto r = static_cast<std::size_t>(replicate);
+        std::vector<double> n, assumed;
+        for (std::size_t b = 0; b < boxes_.box.size(); ++b) {
+            n.push_back(tally_.in_box(b, r));
+            assumed.push_back(free(replicate, static_cast<Eigen::Index>(b)));
+        }
+        return shift_of_velocity(n, estimator.weights(r, WindowWidth::chosen), assumed);
     }
 
     void warn_of_sources(const WeightEstimator& estimator) {

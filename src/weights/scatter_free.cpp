@@ -13,6 +13,7 @@ namespace deviascope {
 namespace {
 constexpr std::array<double, 4> added_variances = {0.5, 1.0, 1.5, 2.0};
 constexpr std::size_t rows_a_slice = 4096;
+constexpr int most_replicates = 50;
 }  // namespace
 
 ScatterFreeTally::ScatterFreeTally(const Boxes& boxes,
@@ -28,8 +29,12 @@ ScatterFreeTally::ScatterFreeTally(const Boxes& boxes,
         error_.push_back(counts ? known->second : PropertyError{});
     }
     if (!has_scatter()) return;
-    TallyOptions tally{
-        options.seed, options.survey, 0, options.threads, index_varies, weights_vary};
+    TallyOptions tally{options.seed,
+                       options.survey,
+                       std::min(options.replicates, most_replicates),
+                       options.threads,
+                       index_varies,
+                       weights_vary};
     for (const double lambda : added_variances)
         levels_.push_back({lambda, CrossingTally(boxes, tally)});
 }
@@ -86,28 +91,30 @@ void ScatterFreeTally::add(const SourceBatch& batch) {
     }
 }
 
-std::vector<double> ScatterFreeTally::weights(const WeightEstimator& observed,
-                                              double one_plus_alpha) const {
-    const auto n = std::ssize(levels_) + 1;
-    Eigen::MatrixXd powers(n, 3);
-    Eigen::MatrixXd found(n, std::ssize(boxes_.box));
-    const auto put = [&](Eigen::Index row, double lambda, const WeightEstimator& estimator) {
-        powers.row(row) << 1.0, lambda, lambda * lambda;
-        const std::vector<double> weights = estimator.weights(0, WindowWidth::chosen);
-        for (std::size_t b = 0; b < weights.size(); ++b)
-            found(row, static_cast<Eigen::Index>(b)) = weights[b];
-    };
-    put(0, 0.0, observed);
-    for (Eigen::Index i = 1; i < n; ++i) {
-        const Level& level = levels_[static_cast<std::size_t>(i - 1)];
-        put(i, level.lambda, {boxes_, level.tally, one_plus_alpha, observed});
+Eigen::MatrixXd ScatterFreeTally::weights(const WeightEstimator& observed,
+                                          double one_plus_alpha) const {
+    std::vector<WeightEstimator> estimators{observed};
+    Eigen::MatrixXd powers(std::ssize(levels_) + 1, 3);
+    powers.row(0) << 1.0, 0.0, 0.0;
+    for (const Level& level : levels_) {
+        powers.row(std::ssize(estimators)) << 1.0, level.lambda, level.lambda * level.lambda;
+        estimators.emplace_back(boxes_, level.tally, one_plus_alpha, observed);
     }
-    std::vector<double> out;
-    for (Eigen::Index b = 0; b < found.cols(); ++b) {
-        const Eigen::VectorXd parabola = powers.colPivHouseholderQr().solve(found.col(b));
-        out.push_back(parabola[0] - parabola[1] + parabola[2]);  // NaN where one is
-    }
-    return out;
+    const auto parabolas = powers.colPivHouseholderQr();
+    const std::size_t n_rows = 1 + levels_.front().tally.n_replicates();
+    Eigen::MatrixXd free(n_rows, std::ssize(boxes_.box));
+    parallel_for(n_rows, options_.threads, [&](std::size_t replicate) {
+        Eigen::MatrixXd found(powers.rows(), free.cols());
+        for (std::size_t at = 0; at < estimators.size(); ++at) {
+            const auto weights = estimators[at].weights(replicate, WindowWidth::chosen);
+            found.row(static_cast<Eigen::Index>(at)) =
+                Eigen::RowVectorXd::Map(weights.data(), std::ssize(weights));
+        }
+        const Eigen::MatrixXd parabola = parabolas.solve(found);
+        free.row(static_cast<Eigen::Index>(replicate)) =
+            parabola.row(0) - parabola.row(1) + parabola.row(2);
+    });
+    return free;
 }
 
 ScatterShift shift_of_velocity(const std::vector<double>& n,

@@ -2,6 +2,7 @@
 // WEIGHTS (private): what measurement scatter does to the weights
 #pragma once
 
+#include <Eigen/Core>
 #include <array>
 #include <vector>
 
@@ -19,6 +20,9 @@ namespace deviascope {
 /// Scatter is added in the coordinate y of a property (displacement.h), where it commutes with
 /// the boost: flux a fraction, size and redshift over the value, over 1 + z. Numbers: stream
 /// (seed, added_scatter; source, survey, 0), one normal for each dimension.
+///
+/// Replicates: the first of the bootstrap of the catalogue, with the same multiplicities, 50 at
+/// most (a standard deviation is then known to a tenth).
 class ScatterFreeTally {
   public:
     ScatterFreeTally(const Boxes& boxes,
@@ -30,8 +34,9 @@ class ScatterFreeTally {
     /// Whether any property that the boxes select on scatters.
     bool has_scatter() const;
     void add(const SourceBatch& batch);
-    /// Weights of the boxes without scatter. NaN where a fit fails.
-    std::vector<double> weights(const WeightEstimator& observed, double one_plus_alpha) const;
+    /// Weights of the boxes without scatter, (1 + replicates) x boxes: row 0 of the catalogue,
+    /// then of the replicates of the bootstrap. NaN where a fit fails.
+    Eigen::MatrixXd weights(const WeightEstimator& observed, double one_plus_alpha) const;
 
   private:
     struct Level {

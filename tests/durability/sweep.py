@@ -4,7 +4,8 @@ left against what was reported as stored and against an uninterrupted run.
 
     sweep.py SUBJECT PROGRAM FAULTS WHAT [--points N] [--expect-damage]
 
-SUBJECT  `chain`: deviascope itself on a small job; `in-place`: in_place_writer.cpp
+SUBJECT  `chain`: `deviascope sample` on a small job; `results`: `deviascope run`, with summary,
+         figures, tables and sky files; `in-place`: in_place_writer.cpp
 PROGRAM  its path
 FAULTS   the library to preload (write_faults.c)
 WHAT     kill, kill-resume, fail, no-exchange, reader
@@ -73,16 +74,24 @@ def catalogue(n_rows):
     return "ra,dec,s\n" + "\n".join(rows) + "\n"
 
 
+def files_in(folder):
+    """The files of a folder and of its folders, by their paths in it."""
+    return sorted(str(path.relative_to(folder)) for path in folder.rglob("*") if path.is_file())
+
+
 class Subject:
     """A program under test: how it is run, and what its folder should hold in the end."""
 
-    def __init__(self, program, faults, job=None):
+    COMMANDS = {"chain": "sample", "results": "run"}
+
+    def __init__(self, name, program, faults, job):
+        self.command = self.COMMANDS.get(name)
         self.program, self.faults, self.job = program, faults, job
 
     def run(self, folder, resume=False, threads=1, **faults):
         words = [self.program]
-        if self.job:
-            words += ["run", self.job, "-o", str(folder), "--rows-per-block", "9"]
+        if self.command:
+            words += [self.command, self.job, "-o", str(folder), "--rows-per-block", "9"]
             words += ["--threads", str(threads)]
         else:
             words += [str(folder)]
@@ -173,7 +182,7 @@ class Reference:
 
     def __init__(self, subject, folder):
         self.calls = subject.calls(folder)
-        self.files = sorted(path.name for path in folder.iterdir())
+        self.files = files_in(folder)
         self.content = content(folder / "chains.h5")
         self.rows = {}
         with h5py.File(folder / "chains.h5", "r") as file:
@@ -195,7 +204,7 @@ class Reference:
 
     def fault_of_whole(self, folder):
         """What is wrong with a folder whose run has come to its end."""
-        names = sorted(path.name for path in folder.iterdir())
+        names = files_in(folder)
         if names != self.files:
             return f"the folder holds {names}"
         for name, expected in self.others.items():
@@ -322,8 +331,9 @@ class Sweep:
     def reader(self):
         """Opens the chain over and over while it grows; every state must be complete."""
         place = self.fresh("point")
-        process = subprocess.Popen([self.subject.program, "run", self.subject.job, "-o",
-                                    str(place), "--rows-per-block", "1", "--quiet"])
+        process = subprocess.Popen([self.subject.program, self.subject.command,
+                                    self.subject.job, "-o", str(place), "--rows-per-block", "1",
+                                    "--quiet"])
         refused = 0
         while process.poll() is None:
             try:
@@ -341,7 +351,7 @@ class Sweep:
 
 def main():
     words = argparse.ArgumentParser()
-    words.add_argument("subject", choices=("chain", "in-place"))
+    words.add_argument("subject", choices=("chain", "results", "in-place"))
     words.add_argument("program")
     words.add_argument("faults")
     words.add_argument("what", choices=("kill", "kill-resume", "fail", "no-exchange", "reader"))
@@ -350,12 +360,11 @@ def main():
     chosen = words.parse_args()
     with tempfile.TemporaryDirectory(prefix="deviascope-sweep-") as name:
         folder = pathlib.Path(name)
-        job = None
-        if chosen.subject == "chain":
-            (folder / "binnacle.csv").write_text(catalogue(2000))
-            (folder / "binnacle.toml").write_text(JOB)
-            job = str(folder / "binnacle.toml")
-        sweep = Sweep(Subject(chosen.program, chosen.faults, job), folder, chosen.points)
+        (folder / "binnacle.csv").write_text(catalogue(2000))
+        (folder / "binnacle.toml").write_text(JOB)
+        subject = Subject(chosen.subject, chosen.program, chosen.faults,
+                          str(folder / "binnacle.toml"))
+        sweep = Sweep(subject, folder, chosen.points)
         getattr(sweep, chosen.what.replace("-", "_"))()
         print(f"{len(sweep.reference.calls)} calls in an uninterrupted run")
         lost = sweep.score.tell(f"{chosen.subject} {chosen.what}")

@@ -163,6 +163,12 @@ std::string wide_job(const std::string& weights) {
     return job_text(weights, "", 0.3);
 }
 
+double number_in(const std::string& file, const std::string& key) {
+    const auto at = file.find(key);
+    REQUIRE(at != std::string::npos);
+    return std::stod(file.substr(at + key.size()));
+}
+
 /// Runs with weights measured from the catalogue with scatter, and with those measured from the
 /// same catalogue without.
 /// @param expected_ratio  of the two velocities
@@ -180,7 +186,7 @@ void check_recovery(double scatter, double expected_ratio, std::int64_t n_pairs)
     result = command(folder, "run", "observed");
     INFO(result.err);
     REQUIRE(result.exit_code == 0);
-    CHECK_THAT(result.out, Catch::Contains("of the true one with a"));
+    CHECK_THAT(result.out, Catch::Contains("of the true one"));
     folder.write("job.toml", job_text("free/lantern-weights.toml"));
     result = command(folder, "run", "wrong", {"--quiet"});
     INFO(result.err);
@@ -193,11 +199,15 @@ void check_recovery(double scatter, double expected_ratio, std::int64_t n_pairs)
     CHECK(std::abs(right - 1.0) < 0.8 * sd);
     CHECK(std::abs(wrong / right - expected_ratio) < 0.4 * sd);
     // And what the program foretells from the catalogue with scatter alone.
+    // The parabola misses up to a quarter of the shift. The bootstrap takes both sources of a
+    // pair, whose properties are the same, for two: its error is too small by the root of 2.
     const std::string file = test::bytes_of(folder / "observed" / "lantern-weights.toml");
-    const auto at = file.find("free_intrinsic = ");
-    REQUIRE(at != std::string::npos);
-    CHECK(std::abs(std::stod(file.substr(at + 17)) - expected_ratio) <
-          0.25 * (1.0 - expected_ratio) + 0.01);
+    const double foretold = number_in(file, "free_intrinsic = ");
+    const double foretold_sd = std::sqrt(2.0) * number_in(file, "free_intrinsic_sd = ");
+    INFO("foretold " << foretold << " +- " << foretold_sd);
+    CHECK(foretold_sd > 0.0);
+    CHECK(std::abs(foretold - expected_ratio) <
+          0.25 * (1.0 - expected_ratio) + 3.0 * foretold_sd);
 }
 
 }  // namespace

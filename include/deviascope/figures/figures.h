@@ -10,6 +10,7 @@
 #include "deviascope/chain/chain.h"
 #include "deviascope/core/error.h"
 #include "deviascope/model/parameter_space.h"
+#include "deviascope/summary/comparison.h"
 #include "deviascope/summary/direction_density.h"
 #include "deviascope/summary/summary.h"
 
@@ -24,6 +25,8 @@ struct FigureSource {
     const std::vector<std::optional<DirectionDensity>>& directions;
     Eigen::Vector3d cmb_velocity;  ///< mean of the cmb-velocity prior, job's frame, units of c
     std::uint64_t seed = 0;        ///< of the job
+    /// Of the same job and inputs, where it has been made; else null.
+    const Comparison* comparison = nullptr;
 };
 
 struct FigureOptions {
@@ -54,7 +57,7 @@ struct Figure {
 
 /// All figures that the chain gives rise to, in the order of the report: directions,
 /// residuals-<survey>, amplitudes, joint (or joint-<vector>, where a page has no room for all),
-/// profile-<survey>, weights, traces. The same input gives the same bytes, for any threads.
+/// hypotheses and surveys (of a comparison), profile-<survey>, weights, traces. The same input gives the same bytes, for any threads.
 ///
 /// Errors: UsageError: options.problems(); a name in `only` that no figure begins with; a
 /// parameter that does not exist, does not vary, or one too many for the page. OutputError

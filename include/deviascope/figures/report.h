@@ -10,10 +10,11 @@
 namespace deviascope {
 
 /// The report as one HTML page that needs no network: every warning, then question, data and
-/// cuts, result in two sentences, directions, amplitudes, fit, convergence, provenance; each
-/// figure with its reading aid, alternative text and links to `figures/<name>.pdf` and
-/// `figures/data/<name>.csv`. Light and dark by the reader's own setting; prints black on
-/// white. The same input gives the same bytes.
+/// cuts, result in two sentences, directions, amplitudes, comparison, fit, convergence,
+/// provenance; each figure with its reading aid, alternative text and links to
+/// `figures/<name>.pdf` and `figures/data/<name>.csv`. Light and dark by the reader's own
+/// setting; prints black on white. No time of day is in it: the same job gives the same bytes,
+/// whenever it is run.
 std::string report_html(const FigureSource& source, const std::vector<Figure>& figures);
 
 }  // namespace deviascope

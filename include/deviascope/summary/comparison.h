@@ -73,7 +73,8 @@ struct SurveyOverlap {
 
 /// Everything a referee asks of a fit; `deviascope compare`.
 struct Comparison {
-    std::string job;  ///< title
+    std::string job;          ///< title
+    std::string fingerprint;  ///< of the job and its inputs: fingerprint_of(Provenance)
     std::string reference;
     Eigen::Vector3d reference_velocity = Eigen::Vector3d::Zero();
     std::string clustering;  ///< name of the clustering prior; may be empty
@@ -114,5 +115,11 @@ std::vector<std::string> cautions_of(const Comparison& comparison);
 std::string to_json(const Comparison& comparison);
 std::string to_text(const Comparison& comparison);
 std::string to_csv(const Comparison& comparison);
+
+/// What figures need of a comparison, from its compare.json: reference, hypotheses with the
+/// evidence by bridge, surveys, consistency and warnings; the rest stays empty.
+/// @param place  the file, for messages
+/// Errors: InputError where it is no such file, or of another schema.
+Comparison comparison_of_json(const std::string& text, const std::string& place);
 
 }  // namespace deviascope

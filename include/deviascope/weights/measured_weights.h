@@ -4,6 +4,7 @@
 
 #include <Eigen/Core>
 #include <cstdint>
+#include <limits>
 #include <optional>
 #include <string>
 #include <vector>
@@ -59,6 +60,9 @@ struct BinReport {
 struct ScatterShift {
     double free_intrinsic = 1.0;  ///< the survey alone, its intrinsic dipole free
     double no_intrinsic = 1.0;    ///< the survey alone, without an intrinsic dipole
+    /// Their standard deviations over the bootstrap replicates; NaN with fewer than two.
+    double free_intrinsic_sd = std::numeric_limits<double>::quiet_NaN();
+    double no_intrinsic_sd = std::numeric_limits<double>::quiet_NaN();
 };
 
 /// The measured weights of a survey.
