@@ -13,14 +13,15 @@ _deviascope() {
         --font) mapfile -t COMPREPLY < <(compgen -f -- "$word"); return ;;
         --format) mapfile -t COMPREPLY < <(compgen -W "fits csv csv.gz" -- "$word"); return ;;
         --only)
-            mapfile -t COMPREPLY < <(compgen -W "directions residuals amplitudes joint profile weights traces" -- "$word")
+            mapfile -t COMPREPLY < <(compgen -W "directions residuals amplitudes joint hypotheses surveys profile weights traces" -- "$word")
             return ;;
     esac
     if [[ $word == -* ]]; then
         local options="--help --threads --quiet"
         case $command in
             check) options+=" --strict" ;;
-            run|sample) options+=" --output --replace --resume --strict" ;;
+            run) options+=" --output --replace --resume --strict --no-figures" ;;
+            sample) options+=" --output --replace --resume --strict" ;;
             summarise) options+=" --output --replace --strict" ;;
             figures) options+=" --output --replace --strict --only --width --bare --parameters --font" ;;
             export) options+=" --output --replace --format --thin" ;;

@@ -31,7 +31,8 @@ shift words
 (( CURRENT-- ))
 case $command in
     check) _arguments $everywhere $strict '1:job:_files -g "*.toml"' ;;
-    run|sample) _arguments $everywhere $writes $strict $resume '1:job:_files -g "*.toml"' ;;
+    run) _arguments $everywhere $writes $strict $resume '--no-figures[chain and summary alone]' '1:job:_files -g "*.toml"' ;;
+    sample) _arguments $everywhere $writes $strict $resume '1:job:_files -g "*.toml"' ;;
     count) _arguments $everywhere $writes '--maps[write maps too]' '1:job:_files -g "*.toml"' ;;
     weigh) _arguments $everywhere $writes '--check[full-sky experiment]' '1:job:_files -g "*.toml"' ;;
     summarise) _arguments $everywhere $writes $strict '1:chain:_files -g "*.h5"' ;;

@@ -230,12 +230,14 @@ ExitCode run_command(const CommandOptions& options) {
     const Job job = read_job(options.input);
     const ChainLock lock = lock_output(options);
     std::vector<std::string> files{"counts.h5", "chains.h5", "summary.json", "summary.txt"};
-    for (const std::string& name : names_of_results()) files.push_back(name);
+    if (options.draws)
+        for (const std::string& name : names_of_results()) files.push_back(name);
     const Outcome outcome = make_chain(options, job, lock, files, terminal);
     if (outcome.end == Outcome::End::interrupted) return ExitCode::interrupted;
     const Chain chain = read_chain(lock.chain());
     const fs::path folder = lock.chain().parent_path();
     const Summarised result = summarise_into(chain, folder, options.n_threads(), terminal);
+    if (!options.draws) return verdict(result.summary, options);
     FigureOptions figures;
     figures.threads = options.n_threads();
     write_results({chain, result, comparison_beside(lock.chain(), chain.provenance, terminal)},

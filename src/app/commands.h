@@ -27,6 +27,7 @@ struct CommandOptions {
     std::vector<std::string> vary;           ///< PATH=VALUES of a sweep
     std::string width = "180mm";             ///< of figures
     bool bare = false;                       ///< figures without titles
+    bool draws = true;                       ///< `run` ends with figures and report
     std::filesystem::path font;
     std::vector<std::string> only;        ///< figures; empty: all, with the report
     std::vector<std::string> parameters;  ///< of the joint figure

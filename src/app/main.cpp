@@ -24,6 +24,7 @@
 #include "deviascope/core/nearest_name.h"
 #include "deviascope/core/version.h"
 #include "deviascope/figures/figures.h"
+#include "deviascope/sky/library_versions.h"
 
 namespace {
 
@@ -46,6 +47,13 @@ struct Command {
     /// Adds options of its own; null: it has none.
     void (*add_options)(CLI::App&, CommandOptions&) = nullptr;
 };
+
+void add_run_options(CLI::App& command, CommandOptions& options) {
+    command.add_flag(
+        "!--no-figures",
+        options.draws,
+        "no figures, report, tables and sky files: the chain and its summary alone");
+}
 
 void add_count_options(CLI::App& command, CommandOptions& options) {
     command.add_flag("--maps",
@@ -119,7 +127,8 @@ std::vector<Command> commands() {
          .description = "The whole job: counts, samples, summarises and draws",
          .resume = true,
          .strict = true,
-         .action = deviascope::run_command},
+         .action = deviascope::run_command,
+         .add_options = add_run_options},
         {.name = "check",
          .description =
              "Checks a job and its inputs, and says what would be done; writes nothing",
@@ -257,10 +266,11 @@ int parse_and_act(int argc, char** argv) {
         "deviascope"};
     program.require_subcommand(1);
     program.set_version_flag("--version", [] {
-        return fmt::format("deviascope {}\nwith {}, {}, {}, {}",
+        return fmt::format("deviascope {}\nwith {}, {}, {}, {}, {}",
                            deviascope::version(),
                            deviascope::library_versions(),
                            deviascope::fits::library_version(),
+                           deviascope::sky_library_versions(),
                            deviascope::gzip_library_version(),
                            deviascope::drawing_library_versions());
     });

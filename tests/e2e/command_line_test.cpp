@@ -25,7 +25,9 @@ TEST_CASE("help and version go to standard output with exit code 0", "[app]") {
     CHECK(help.err.empty());
     const ProcessResult version = deviascope_with({"--version"});
     CHECK(version.exit_code == 0);
-    CHECK_THAT(version.out, Catch::StartsWith("deviascope "));
+    CHECK_THAT(version.out,
+               Catch::StartsWith("deviascope ") && Catch::Contains("HEALPix C++ 3") &&
+                   Catch::Contains("ERFA "));
 }
 
 TEST_CASE("a wrong command line is one message and exit code 2", "[app]") {

@@ -112,6 +112,26 @@ TEST_CASE("compare answers a referee's questions from the job file", "[app]") {
         const ProcessResult second = run_into_out(folder, "compare");
         CHECK(second.exit_code == 5);
         CHECK_THAT(second.err, Contains("compare.json"));
+
+        REQUIRE(run_into_out(folder, "run", {"--quiet", "--replace"}).exit_code == 0);
+        const auto draw = [&](const char* only) {
+            return test::run_process({DEVIASCOPE_PROGRAM,
+                                      "figures",
+                                      (folder / "out" / "chains.h5").string(),
+                                      "--only",
+                                      only});
+        };
+        CHECK(draw("hypotheses,surveys").exit_code == 0);
+        CHECK_THAT(test::bytes_of(folder / "out" / "figures" / "hypotheses.svg"),
+                   Contains("still"));
+        CHECK_THAT(test::bytes_of(folder / "out" / "figures" / "data" / "surveys.csv"),
+                   Contains("gnomon alone,speed,km/s,"));
+        // A comparison of other inputs is not drawn.
+        folder.write("gnomon.csv", lattice_catalogue(15003));
+        REQUIRE(run_into_out(folder, "run", {"--quiet", "--replace"}).exit_code == 0);
+        const ProcessResult other = draw("weights");
+        CHECK(other.exit_code == 0);
+        CHECK_THAT(other.err, Contains("of another job or other inputs"));
     }
     SECTION("the same bits again, with another number of threads; doubtful with --strict") {
         const std::string before = test::bytes_of(folder / "out" / "compare.json");

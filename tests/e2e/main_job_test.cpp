@@ -53,44 +53,6 @@ TEST_CASE("one command turns a catalogue into counts, chain and summary", "[app]
     CHECK(summary["bins"][0]["sources"] == 10000);
     CHECK(summary["sampling"]["converged"] == true);
 
-    SECTION("report, figures, tables and sky files lie beside the summary") {
-        for (const char* name : {"report.html",
-                                 "figures/directions.svg",
-                                 "figures/joint.pdf",
-                                 "figures/traces.png",
-                                 "figures/data/profile-binnacle.csv",
-                                 "tables/results.tex",
-                                 "tables/bins.csv",
-                                 "sky/direction-velocity-icrs.fits",
-                                 "sky/region95-intrinsic-binnacle.moc.fits",
-                                 "sky/residuals-binnacle.fits"})
-            CHECK(std::filesystem::file_size(folder / "out" / name) > 100);
-    }
-    SECTION("the chain file alone gives the same figures and report, and its draws") {
-        std::filesystem::copy(folder / "out" / "chains.h5", folder / "chains.h5");
-        const auto with_chain = [&](std::vector<std::string> words) {
-            words.insert(words.begin() + 1, (folder / "chains.h5").string());
-            words.insert(words.begin(), DEVIASCOPE_PROGRAM);
-            return test::run_process(words);
-        };
-        REQUIRE(with_chain({"figures", "--quiet"}).exit_code == 0);
-        for (const char* name : {"report.html",
-                                 "figures/directions.svg",
-                                 "figures/directions.pdf",
-                                 "tables/results.tex",
-                                 "sky/region68-velocity.moc.fits"})
-            CHECK(test::bytes_of(folder / name) == test::bytes_of(folder / "out" / name));
-        CHECK(with_chain({"figures"}).exit_code == 5);  // they are there
-        CHECK(with_chain({"figures", "--only", "traces"}).exit_code == 5);
-        CHECK(with_chain({"figures", "--only", "traces", "--width", "90mm", "--replace"})
-                  .exit_code == 0);
-        CHECK_THAT(with_chain({"figures", "--only", "wights"}).err,
-                   Catch::Contains("did you mean \"weights\"?"));
-        CHECK(with_chain({"figures", "--width", "wide"}).exit_code == 2);
-        REQUIRE(with_chain({"export", "--format", "csv,csv.gz", "--thin", "2"}).exit_code == 0);
-        CHECK_THAT(test::bytes_of(folder / "draws.csv"),
-                   Catch::StartsWith("step,replicate,walker,log_posterior"));
-    }
     SECTION("nothing existing is overwritten without --replace") {
         const ProcessResult second = run_job(folder, {});
         CHECK(second.exit_code == 5);
@@ -192,6 +154,58 @@ TEST_CASE("a run that cannot converge says so in every output", "[app]") {
     const nlohmann::json summary = summary_in(folder / "out");
     CHECK(summary["sampling"]["converged"] == false);
     REQUIRE(!summary["warnings"].empty());
+}
+
+TEST_CASE(
+    "a run ends with report, figures, tables and sky files, and its chain gives them again",
+    "[app]") {
+    const TemporaryFolder folder;
+    folder.write("binnacle.csv", lattice_catalogue(20000));
+    folder.write("job.toml", small_job(bins(3.75, 6.0), quick));
+    const ProcessResult run = test::run_process({DEVIASCOPE_PROGRAM,
+                                                 "run",
+                                                 (folder / "job.toml").string(),
+                                                 "-o",
+                                                 (folder / "out").string(),
+                                                 "--quiet"});
+    INFO(run.err);
+    REQUIRE(run.exit_code == 0);
+    for (const char* name : {"report.html",
+                             "figures/directions.svg",
+                             "figures/joint.pdf",
+                             "figures/traces.png",
+                             "figures/data/profile-binnacle.csv",
+                             "tables/results.tex",
+                             "tables/bins.csv",
+                             "sky/direction-velocity-icrs.fits",
+                             "sky/region95-intrinsic-binnacle.moc.fits",
+                             "sky/residuals-binnacle.fits"})
+        CHECK(std::filesystem::file_size(folder / "out" / name) > 100);
+
+    std::filesystem::copy(folder / "out" / "chains.h5", folder / "chains.h5");
+    const auto with_chain = [&](std::vector<std::string> words) {
+        words.insert(words.begin() + 1, (folder / "chains.h5").string());
+        words.insert(words.begin(), DEVIASCOPE_PROGRAM);
+        return test::run_process(words);
+    };
+    REQUIRE(with_chain({"figures", "--quiet"}).exit_code == 0);
+    for (const char* name : {"report.html",
+                             "figures/directions.svg",
+                             "figures/directions.pdf",
+                             "tables/results.tex",
+                             "sky/region68-velocity.moc.fits"})
+        CHECK(test::bytes_of(folder / name) == test::bytes_of(folder / "out" / name));
+    CHECK(with_chain({"figures"}).exit_code == 5);  // they are there
+    CHECK(with_chain({"figures", "--only", "traces"}).exit_code == 5);
+    CHECK(
+        with_chain({"figures", "--only", "traces", "--width", "90mm", "--replace"}).exit_code ==
+        0);
+    CHECK_THAT(with_chain({"figures", "--only", "wights"}).err,
+               Catch::Contains("did you mean \"weights\"?"));
+    CHECK(with_chain({"figures", "--width", "wide"}).exit_code == 2);
+    REQUIRE(with_chain({"export", "--format", "csv,csv.gz", "--thin", "2"}).exit_code == 0);
+    CHECK_THAT(test::bytes_of(folder / "draws.csv"),
+               Catch::StartsWith("step,replicate,walker,log_posterior"));
 }
 
 TEST_CASE("Ctrl-C ends a run with exit code 130 and a chain that can be read", "[app]") {

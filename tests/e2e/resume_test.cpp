@@ -71,16 +71,8 @@ TEST_CASE("a run that is interrupted and resumed ends as one that was not", "[ap
     const TemporaryFolder folder;
     write_job(folder, "effective_draws = 1e9\nmax_steps = 2000\nwalkers = 20\n");
     REQUIRE(run_job(folder, "whole", {"--threads", "2"}).exit_code == 0);
-    const std::set<std::string> files = files_in(folder / "whole");
-    for (const char* file : {"counts.h5",
-                             "chains.h5",
-                             "summary.json",
-                             "summary.txt",
-                             "report.html",
-                             "figures/directions.pdf",
-                             "tables/page.tex",
-                             "sky/direction-velocity-icrs.fits"})
-        CHECK(files.count(file) == 1);
+    CHECK(files_in(folder / "whole") ==
+          std::set<std::string>{"counts.h5", "chains.h5", "summary.json", "summary.txt"});
     for (const int milliseconds : {20, 300, 900}) {
         CAPTURE(milliseconds);
         fs::remove_all(folder / "cut");

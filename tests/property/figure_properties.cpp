@@ -8,6 +8,7 @@
 
 #include "figures/sheet.h"
 #include "hard_posteriors.h"
+#include "posed_comparison.h"
 
 using namespace deviascope;
 using deviascope::test::hard_posteriors;
@@ -24,7 +25,9 @@ std::vector<Sheet> all_sheets(const FigureContext& context) {
                             joint_sheets,
                             profile_sheets,
                             weight_sheets,
-                            trace_sheets})
+                            trace_sheets,
+                            hypothesis_sheets,
+                            survey_sheets})
         for (Sheet& sheet : draw(context)) sheets.push_back(std::move(sheet));
     return sheets;
 }
@@ -84,7 +87,9 @@ TEST_CASE("figures of hard posteriors have no colliding, lost or senseless label
     for (const HardPosterior& hard : hard_posteriors()) {
         INFO(hard.name);
         const PosedPosterior posed(hard.pose);
-        const FigureSource source = posed.source();
+        FigureSource source = posed.source();
+        const Comparison comparison = test::posed_comparison(hard.pose.surveys);
+        source.comparison = &comparison;
         for (const double width : {90.0, 180.0}) {
             FigureOptions options;
             options.width_mm = width;
@@ -98,10 +103,13 @@ TEST_CASE("figures of hard posteriors have no colliding, lost or senseless label
 
 TEST_CASE("figures have words for every number, and the same bytes every time", "[figures]") {
     const PosedPosterior posed(hard_posteriors()[9].pose);
+    const Comparison comparison = test::posed_comparison({"dunlin", "lantern"});
+    FigureSource source = posed.source();
+    source.comparison = &comparison;
     FigureOptions options;
-    const auto first = make_figures(posed.source(), options);
+    const auto first = make_figures(source, options);
     options.threads = 3;
-    const auto second = make_figures(posed.source(), options);
+    const auto second = make_figures(source, options);
     REQUIRE(first.size() == second.size());
     std::set<std::string> names;
     for (std::size_t figure = 0; figure < first.size(); ++figure) {
@@ -122,6 +130,8 @@ TEST_CASE("figures have words for every number, and the same bytes every time", 
                                          "residuals-lantern",
                                          "amplitudes",
                                          "joint",
+                                         "hypotheses",
+                                         "surveys",
                                          "profile-dunlin",
                                          "profile-lantern",
                                          "weights",
