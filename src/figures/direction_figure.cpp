@@ -9,6 +9,9 @@
 namespace deviascope {
 namespace {
 
+/// Regions wider than that may lie over the meridians' labels: too many would be lost.
+constexpr double widest_unlabelled_deg2 = 4000.0;
+
 /// How many surveys have kept each pixel.
 std::vector<int> times_covered(const Counts& counts) {
     std::vector<int> covered(std::size_t(Pixelisation(counts.nside).n_pixels()), 0);
@@ -200,7 +203,8 @@ std::vector<Sheet> direction_sheets(const FigureContext& context) {
         }
     std::vector<Polyline> covered;
     for (const VectorRegions* one : shown) {
-        const std::vector<Polyline> areas = panel.at(one->region68);
+        if (one->series.summary->region95->area_deg2 > widest_unlabelled_deg2) continue;
+        const std::vector<Polyline> areas = panel.at(one->region95);
         covered.insert(covered.end(), areas.begin(), areas.end());
     }
     const std::vector<Box> labels = panel.draw_graticule(
