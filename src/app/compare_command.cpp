@@ -72,8 +72,8 @@ class Comparer {
                              options_.n_threads());
         find_overlaps();
         all_.warnings = job_.warnings;
-        const auto found = cautions_of(all_);
-        all_.warnings.insert(all_.warnings.end(), found.begin(), found.end());
+        for (const auto& found : {fitter_.warnings(), cautions_of(all_)})
+            all_.warnings.insert(all_.warnings.end(), found.begin(), found.end());
         return std::move(all_);
     }
 

@@ -70,6 +70,8 @@ Fit Fitter::fit(std::string name,
     MemorySink sink;
     made.outcome = sample(*made.posterior, options, sink);
     if (made.outcome.end == Outcome::End::interrupted) throw Interrupted();
+    for (const std::string& warning : sink.kept_warm_up.warnings)
+        warnings_.push_back(fmt::format("{}: {}", made.name, warning));
     made.draws = std::move(sink.draws);
     made.coordinates = coordinate_draws(made.posterior->space(), made.draws);
     return made;

@@ -4,6 +4,7 @@
 
 #include <memory>
 #include <string>
+#include <vector>
 
 #include "app/commands.h"
 #include "app/terminal.h"
@@ -55,11 +56,15 @@ class Fitter {
     Evidence evidence(const Fit& fit) const;
     EvidenceOptions evidence_options(const Fit& fit) const;
 
+    /// What the fits so far warned of, each with the name of its fit.
+    const std::vector<std::string>& warnings() const { return warnings_; }
+
   private:
     const Job& job_;
     const CommandOptions& options_;
     Terminal& terminal_;
     std::uint64_t n_fits_ = 0;
+    std::vector<std::string> warnings_;
 };
 
 /// Counts and model of some of the surveys, in the order given.

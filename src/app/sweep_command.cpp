@@ -35,6 +35,8 @@ std::vector<Variant> variants_of(const Job& job, const CommandOptions& options) 
     return variants;
 }
 
+constexpr const char* unchanged = "the job as it is";
+
 SweepRow row_of(const Fit& fit, const Counts& counts) {
     SweepRow row;
     const Pixelisation grid(counts.nside);
@@ -56,20 +58,26 @@ SweepRow row_of(const Fit& fit, const Counts& counts) {
     return row;
 }
 
-SweepRow run(const Job& written, const CommandOptions& options, Terminal& terminal) {
+/// A row without its path and value; what its fit warns of goes to `warnings`.
+SweepRow run(const Job& written,
+             const std::string& name,
+             const CommandOptions& options,
+             Terminal& terminal,
+             std::vector<std::string>& warnings) {
     Terminal silent(true);
     Job job = weighed(written, options.n_threads(), silent);
     const auto counts = std::make_shared<Counts>(count_surveys(job, silent));
     measure_dispersions(job, *counts, silent);
     Fitter fitter(job, options, terminal);
-    return row_of(fitter.fit(job.title, counts, job.model), *counts);
+    SweepRow row = row_of(fitter.fit(name, counts, job.model), *counts);
+    warnings.insert(warnings.end(), fitter.warnings().begin(), fitter.warnings().end());
+    return row;
 }
 
 void warn_of_rows(Sweep& sweep) {
     constexpr double doubtful_sigma = 3.0;
     for (const SweepRow& row : sweep.rows) {
-        const std::string name =
-            row.path.empty() ? "the job as it is" : row.path + " = " + row.value;
+        const std::string name = row.path.empty() ? unchanged : row.path + " = " + row.value;
         if (!row.converged) sweep.warnings.push_back(name + ": the run did not converge.");
         if (row.difference.sigma >= doubtful_sigma)
             sweep.warnings.push_back(
@@ -92,14 +100,15 @@ ExitCode sweep_command(const CommandOptions& options) {
     Sweep sweep;
     sweep.job = job.title;
     sweep.frame = job.frame;
-    sweep.rows.push_back(run(job, options, terminal));
-    terminal.say("Run: the job as it is.");
+    sweep.rows.push_back(run(job, unchanged, options, terminal, sweep.warnings));
+    terminal.say(fmt::format("Run: {}.", unchanged));
     for (const Variant& variant : variants) {
-        SweepRow row = run(variant.job, options, terminal);
+        const std::string name = variant.path + " = " + variant.value;
+        SweepRow row = run(variant.job, name, options, terminal, sweep.warnings);
         row.path = variant.path;
         row.value = variant.value;
         row.difference = nested_difference(row.velocity, sweep.rows.front().velocity);
-        terminal.say(fmt::format("Run: {} = {}.", row.path, row.value));
+        terminal.say(fmt::format("Run: {}.", name));
         sweep.rows.push_back(std::move(row));
     }
     warn_of_rows(sweep);

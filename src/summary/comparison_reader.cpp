@@ -99,7 +99,8 @@ Comparison comparison_of_json(const std::string& text, const std::string& place)
     try {
         const Json json = Json::parse(text);
         const Json schema = json.value("schema", Json());
-        if (schema != 1) throw InputError({place, "schema " + schema.dump(), "schema 1", ""});
+        if (schema != 1)
+            throw InputError({place, "schema " + schema.dump(), "schema 1 is allowed", ""});
         return comparison_in(json);
     } catch (const Json::exception& fault) {
         throw InputError({place,

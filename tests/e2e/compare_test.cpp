@@ -129,7 +129,7 @@ TEST_CASE("compare answers a referee's questions from the job file", "[app]") {
         // A comparison of other inputs is not drawn.
         folder.write("gnomon.csv", lattice_catalogue(15003));
         REQUIRE(run_into_out(folder, "run", {"--quiet", "--replace"}).exit_code == 0);
-        const ProcessResult other = draw("weights");
+        const ProcessResult other = draw("traces");
         CHECK(other.exit_code == 0);
         CHECK_THAT(other.err, Contains("of another job or other inputs"));
     }

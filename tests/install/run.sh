@@ -60,7 +60,7 @@ knows() { grep -qxF -e "$2" <<< "$1"; }
 for command in run check count weigh sample summarise figures export compare sweep mock; do
     knows "$(complete_words deviascope '')" "$command" || fail "$command is not completed"
     completed=$(complete_words deviascope "$command" --)
-    for option in $("$build/deviascope" "$command" --help | grep -E '^ +-' | grep -oE -- '--[a-z]+' | sort -u); do
+    for option in $("$build/deviascope" "$command" --help | grep -E '^ +-' | grep -oE -- '--[a-z-]+' | sort -u); do
         knows "$completed" "$option" || fail "$option of $command is not completed"
         grep -qF -e "$option" <<< "$manual" || fail "$option of $command is not in the man page"
     done
