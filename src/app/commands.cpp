@@ -199,7 +199,8 @@ ExitCode figures_command(const CommandOptions& options) {
     const FigureOptions figures = figure_options_of(options);
     const Chain chain = read_chain(options.input);
     const fs::path folder = folder_beside(options);
-    if (figures.only.empty()) prepare_output(folder, names_of_results(), existing_of(options));
+    if (figures.only.empty())
+        prepare_output(folder, first_drawn_results(folder), existing_of(options));
     const Summarised result = summarised(chain, folder, options.n_threads());
     const ChainResults results{
         chain, result, comparison_beside(options.input, chain.provenance, terminal)};
@@ -230,8 +231,8 @@ ExitCode run_command(const CommandOptions& options) {
     const Job job = read_job(options.input);
     const ChainLock lock = lock_output(options);
     std::vector<std::string> files{"counts.h5", "chains.h5", "summary.json", "summary.txt"};
-    if (options.draws)
-        for (const std::string& name : names_of_results()) files.push_back(name);
+    std::ranges::copy(first_drawn_results(folder_of(options)), std::back_inserter(files));
+    if (options.draws) require_fonts({});
     const Outcome outcome = make_chain(options, job, lock, files, terminal);
     if (outcome.end == Outcome::End::interrupted) return ExitCode::interrupted;
     const Chain chain = read_chain(lock.chain());

@@ -57,10 +57,6 @@ void write_tables(const Summary& summary, const Chain& chain, const fs::path& fo
 
 }  // namespace
 
-std::vector<std::string> names_of_results() {
-    return {"report.html", "tables/page.tex"};
-}
-
 std::optional<Comparison> comparison_beside(const fs::path& chain_file,
                                             const Provenance& provenance,
                                             Terminal& terminal) {
@@ -85,6 +81,7 @@ void write_results(const ChainResults& results,
     const Prepared prepared(results, options.threads);
     const Summary& summary = results.summarised.summary;
     const std::vector<Figure> figures = make_figures(prepared.source, options);
+    remove_results(folder, drawn_results(folder));
     write_figures(figures, folder / "figures");
     write_tables(summary, results.chain, folder / "tables");
     make_folder(folder / "sky");

@@ -14,9 +14,6 @@
 
 namespace deviascope {
 
-/// The first file that each output of `write_results` begins with, for prepare_output.
-std::vector<std::string> names_of_results();
-
 /// A chain, its summary, and the comparison beside it where that has been made of the same job
 /// and inputs.
 struct ChainResults {
@@ -31,7 +28,8 @@ std::optional<Comparison> comparison_beside(const std::filesystem::path& chain_f
                                             const Provenance& provenance,
                                             Terminal& terminal);
 
-/// summary -> figures: figures, report, tables and sky files of a chain into the folder.
+/// summary -> figures: figures, report, tables and sky files of a chain into the folder, in the
+/// place of those that are there.
 void write_results(const ChainResults& results,
                    const FigureOptions& options,
                    const std::filesystem::path& folder,

@@ -4,11 +4,14 @@
 #include <fmt/format.h>
 #include <fmt/ranges.h>
 
+#include <algorithm>
 #include <cerrno>
 #include <fstream>
+#include <set>
 #include <system_error>
 
 #include "deviascope/core/error.h"
+#include "deviascope/figures/figures.h"
 
 namespace deviascope {
 
@@ -82,6 +85,44 @@ void prepare_output(const fs::path& folder,
 void refuse_misfit(const Message& message, Existing existing) {
     if (existing == Existing::keep) throw UsageError(message);
     throw OutputError(message);
+}
+
+std::vector<std::string> drawn_results(const fs::path& folder) {
+    struct Place {
+        const char* name;
+        std::vector<std::string> beginnings, endings;
+    };
+    const std::vector<Place> places{
+        {".", {"report"}, {".html"}},
+        {"figures", figure_kinds(), {".svg", ".pdf", ".png"}},
+        {"figures/data", figure_kinds(), {".csv"}},
+        {"tables",
+         {"results", "bins", "method", "page", "references"},
+         {".tex", ".md", ".csv", ".bib"}},
+        {"sky", {"direction-", "region68-", "region95-", "residuals-"}, {".fits"}}};
+    std::vector<std::string> found;
+    for (const Place& place : places) {
+        std::error_code failure;
+        for (const auto& entry : fs::directory_iterator(folder / place.name, failure)) {
+            const std::string name = entry.path().filename().string();
+            const bool begins = std::ranges::any_of(
+                place.beginnings, [&](const auto& b) { return name.starts_with(b); });
+            const bool ends = std::ranges::any_of(
+                place.endings, [&](const auto& e) { return name.ends_with(e); });
+            if (begins && ends)
+                found.push_back((fs::path(place.name) / name).lexically_normal());
+        }
+    }
+    std::ranges::sort(found);
+    return found;
+}
+
+std::vector<std::string> first_drawn_results(const fs::path& folder) {
+    std::vector<std::string> firsts;
+    std::set<fs::path> places;
+    for (const std::string& file : drawn_results(folder))
+        if (places.insert(fs::path(file).parent_path()).second) firsts.push_back(file);
+    return firsts;
 }
 
 void remove_results(const fs::path& folder, const std::vector<std::string>& files) {

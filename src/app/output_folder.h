@@ -37,6 +37,13 @@ void prepare_output(const std::filesystem::path& folder,
 /// Errors: UsageError, OutputError.
 [[noreturn]] void refuse_misfit(const Message& message, Existing existing);
 
+/// Figures, report, tables and sky files that are in a folder of results, by their paths in it;
+/// files of other names are not ours.
+std::vector<std::string> drawn_results(const std::filesystem::path& folder);
+
+/// The first of them in each place, so that a message stays short.
+std::vector<std::string> first_drawn_results(const std::filesystem::path& folder);
+
 /// Removes those of `files` that are in the folder. Errors: OutputError.
 void remove_results(const std::filesystem::path& folder, const std::vector<std::string>& files);
 

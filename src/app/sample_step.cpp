@@ -115,12 +115,14 @@ void note_interruption(const SampleStep& step, const Outcome& outcome, Terminal&
                       .text());
 }
 
-/// Removes what is begun anew: a chain to be replaced, with its summary, or one without draws
-/// (a warm-up is gone through again).
+/// Removes what is begun anew: a chain to be replaced, with all made of it, or one without
+/// draws (a warm-up is gone through again).
 void clear_the_way(const SampleStep& step, const StoredChain& stored) {
     const std::filesystem::path folder = step.lock.chain().parent_path();
-    if (step.options.replace)
-        remove_results(folder, {"chains.h5", "summary.json", "summary.txt", "report.html"});
+    if (step.options.replace) {
+        remove_results(folder, {"chains.h5", "summary.json", "summary.txt"});
+        remove_results(folder, drawn_results(folder));
+    }
     if (stored.progressed == Progressed::in_warm_up) remove_results(folder, {"chains.h5"});
 }
 

@@ -93,6 +93,7 @@ void write_cards(fits::TableWriter& writer, const Chain& chain, int thin) {
     writer.card("JOB", chain.provenance.job_name, "job file");
     writer.card("SEED", static_cast<std::int64_t>(chain.provenance.seed), "of the job");
     writer.card("VECFRAME", name_of(chain.counts.frame), "frame of x, y, z");
+    writer.card("VELUNIT", std::string("c"), "of velocities but speed_km_s: speed of light");
     writer.card("THIN", std::int64_t{thin}, "every how many stored rows");
 }
 
@@ -131,6 +132,16 @@ std::int64_t export_fits(const Chain& chain, const fs::path& path, int thin) {
 
 }  // namespace
 
+namespace {
+
+/// A unit as FITS writes it (FITS Standard 4.0, section 4.3); the speed of light is none.
+std::string fits_unit(const std::string& unit) {
+    if (unit == "1" || unit == "c") return "";
+    return unit == "1/sr" ? "sr-1" : unit;
+}
+
+}  // namespace
+
 std::vector<ExportColumn> export_columns(const Chain& chain) {
     std::vector<ExportColumn> columns{{"step", ""},
                                       {"replicate", ""},
@@ -138,10 +149,10 @@ std::vector<ExportColumn> export_columns(const Chain& chain) {
                                       {"log_posterior", ""},
                                       {"log_likelihood", ""}};
     for (const Parameter& parameter : chain.parameters)
-        columns.push_back({parameter.name, parameter.unit == "1" ? "" : parameter.unit});
+        columns.push_back({parameter.name, fits_unit(parameter.unit)});
     for (const VectorParameter& vector : chain.vectors) {
         const bool is_velocity = vector.name == "velocity";
-        columns.push_back({vector.name + ".amplitude", is_velocity ? "c" : ""});
+        columns.push_back({vector.name + ".amplitude", ""});
         for (const char* angle : {".l_deg", ".b_deg", ".ra_deg", ".dec_deg"})
             columns.push_back({vector.name + angle, "deg"});
         if (is_velocity) columns.push_back({"velocity.speed_km_s", "km/s"});

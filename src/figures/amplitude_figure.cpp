@@ -105,7 +105,7 @@ void draw_panel(const FigureContext& context, Drawing& drawing, const Panel& pan
     const Colour colour = palette::series(scalar.series);
     Clip clip{Drawing::edge_of({box.left, box.top - 2.0, box.right, box.bottom}), {}};
     const auto area = [&](const Interval& interval) {
-        return area_under(panel.density, drawn_interval(scalar, interval), across, up);
+        return area_under(panel.density, interval, across, up);
     };
     clip.content.push_back(
         Shape{{area(scalar.estimate.interval95)}, palette::fill95(scalar.series)});
@@ -159,17 +159,17 @@ std::vector<Panel> panels_of(const FigureContext& context) {
 }
 
 std::string csv_of(const std::vector<Panel>& panels) {
-    CsvText csv({"scalar", "unit", "value", "posterior_density", "prior_density"});
-    for (const Panel& panel : panels)
-        for (std::size_t node = 0; node < panel.density.place.size(); ++node) {
-            const double x = panel.density.place[node];
-            csv.text(panel.scalar.name)
-                .text(panel.scalar.unit)
-                .number(x)
-                .number(panel.density.density[node])
-                .number(panel.prior.at(x));
+    CsvText csv({"scalar", "unit", "what", "value", "posterior_density", "prior_density"});
+    for (const Panel& panel : panels) {
+        const auto add = [&](const char* what, double x) {
+            csv.text(panel.scalar.name).text(panel.scalar.unit).text(what).number(x);
+            csv.number(panel.density.at(x)).number(panel.prior.at(x));
             csv.end_row();
-        }
+        };
+        for (const Mark& mark : marks_of(panel.scalar)) add(mark.name, mark.value);
+        if (panel.reference) add("CMB", *panel.reference);
+        for (const double x : panel.density.place) add("curve", x);
+    }
     return csv.str();
 }
 

@@ -62,6 +62,10 @@ std::string plain_number(double value, int decimals) {
     return with_true_minus(digits);
 }
 
+std::string number_or_dash(double value, int decimals) {
+    return std::isfinite(value) ? plain_number(value, decimals) : "–";
+}
+
 std::string measured_number(double value, double uncertainty) {
     return with_true_minus(rounded(value, uncertainty));
 }

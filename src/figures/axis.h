@@ -39,6 +39,9 @@ std::vector<Tick> ticks_of(const Scale& scale, const Fonts& fonts, bool side_by_
 /// A number with fixed decimals, a true minus sign and never "-0".
 std::string plain_number(double value, int decimals);
 
+/// The same; a dash where it is not finite.
+std::string number_or_dash(double value, int decimals);
+
 /// A number rounded by its uncertainty as the summary rounds it (thin blanks, true minus).
 std::string measured_number(double value, double uncertainty);
 

@@ -5,6 +5,7 @@
 #include <algorithm>
 
 #include "figures/sky_figures.h"
+#include "summary/rounding.h"
 
 namespace deviascope {
 namespace {
@@ -73,31 +74,62 @@ struct Marked {
     std::string label;
 };
 
+/// Middle of the largest of several areas (area and middle by the shoelace formula).
+Point middle_of_largest(const std::vector<Polyline>& areas) {
+    Point middle;
+    double largest = 0.0;
+    for (const Polyline& area : areas) {
+        double twice = 0.0;
+        Point sum;
+        for (std::size_t i = 0, j = area.point.size() - 1; i < area.point.size(); j = i++) {
+            const Point a = area.point[j], b = area.point[i];
+            const double cross = a.x * b.y - b.x * a.y;
+            twice += cross;
+            sum = {sum.x + (a.x + b.x) * cross, sum.y + (a.y + b.y) * cross};
+        }
+        if (std::abs(twice) <= largest) continue;
+        largest = std::abs(twice);
+        middle = {sum.x / (3.0 * twice), sum.y / (3.0 * twice)};
+    }
+    return middle;
+}
+
+/// A vector without a mean direction whose regions are small has several of them.
+bool has_lobes(const VectorRegions& one) {
+    return one.is_on_map() && !one.region68.empty() &&
+           one.series.summary->region95->area_deg2 < widest_unlabelled_deg2;
+}
+
 /// Whether labels leave `intrinsic dipole of` out: many of them on a narrow map.
-bool has_short_labels(const FigureContext& context, const std::vector<VectorSeries>& series) {
-    return series.size() > 3 && context.width() < 400.0;
+bool has_short_labels(const FigureContext& context, std::size_t n_vectors) {
+    return n_vectors > 3 && context.width() < 400.0;
 }
 
 /// Marks at mean directions, then all labels around them; returns those that found no room.
 std::vector<std::string> draw_marks(const FigureContext& context,
                                     Drawing& drawing,
                                     const SkyPanel& panel,
-                                    const std::vector<VectorSeries>& series,
+                                    const std::vector<VectorRegions>& regions,
                                     const std::vector<Box>& labels) {
     LabelPlacer placer(context.fonts,
                        {2.0, panel.box().top - 2.0, drawing.width - 2.0, panel.box().bottom});
     for (const Box& label : labels) placer.keep_free(label);
     std::vector<Marked> marks;
-    for (const VectorSeries& one : series) {
+    const bool is_short = has_short_labels(context, regions.size());
+    for (const VectorRegions& each : regions) {
+        const VectorSeries& one = each.series;
         const auto pointing = pointing_of(context, one);
-        if (!pointing) continue;
-        const Point at = panel.at(*pointing);
-        draw_mark(drawing, at, 5.0, one.index, palette::series(one.index));
-        std::string name = has_short_labels(context, series) && !one.is_velocity()
-                               ? one.summary->name
-                               : one.name;
+        if (!pointing && !has_lobes(each)) continue;
+        std::string name = is_short && !one.is_velocity() ? one.summary->name : one.name;
         if (!one.parameter->direction_free) name += " (fixed)";
-        marks.push_back({at, shortened(context.fonts, name, type::note, 0.4 * drawing.width)});
+        name = shortened(context.fonts, name, type::note, 0.4 * drawing.width);
+        if (pointing) {
+            const Point at = panel.at(*pointing);
+            draw_mark(drawing, at, 5.0, one.index, palette::series(one.index));
+            marks.push_back({at, name});
+        } else {
+            marks.push_back({middle_of_largest(panel.at(each.region68)), name});
+        }
     }
     if (!context.source.cmb_velocity.isZero(0.0)) {
         const Point at = panel.at(Direction(context.source.cmb_velocity.normalized()));
@@ -112,17 +144,33 @@ std::vector<std::string> draw_marks(const FigureContext& context,
     return unplaced;
 }
 
+/// Mean directions and the reference.
+void add_marks(CsvText& csv,
+               const FigureContext& context,
+               const std::vector<VectorSeries>& series) {
+    const auto add = [&](const std::string& name, const char* what, const Direction& at) {
+        const LonLat place = lon_lat_of(at);
+        csv.text(name).text(what).text("").number(place.lon_deg).number(place.lat_deg);
+        csv.end_row();
+    };
+    for (const VectorSeries& one : series)
+        if (const auto pointing = pointing_of(context, one))
+            add(one.parameter->name, "mean", *pointing);
+    if (!context.source.cmb_velocity.isZero(0.0))
+        add("CMB dipole", "reference", context.source.cmb_velocity.normalized());
+}
+
 std::string words_of(const FigureContext& context, const VectorSeries& series) {
     const Frame frame = context.source.summary.frame;
     const auto pointing = pointing_of(context, series);
     std::string text = series.name;
     text += pointing ? " towards " + place_in_words(lon_lat_of(*pointing), frame)
-                     : std::string(" without a direction to speak of");
+                     : std::string(" without a mean direction");
     const VectorSummary& summary = *series.summary;
     if (summary.region68 && summary.region95)
-        text += fmt::format(", 68 % within {:.3g} and 95 % within {:.3g} square degrees",
-                            summary.region68->area_deg2,
-                            summary.region95->area_deg2);
+        text += fmt::format(", 68 % within {} and 95 % within {} square degrees",
+                            short_number(summary.region68->area_deg2),
+                            short_number(summary.region95->area_deg2));
     return text;
 }
 
@@ -162,14 +210,14 @@ double draw_key(const FigureContext& context,
 std::vector<std::string> notes_of(const FigureContext& context,
                                   const std::vector<VectorSeries>& series) {
     std::vector<std::string> notes;
-    if (has_short_labels(context, series))
+    if (has_short_labels(context, series.size()))
         notes.emplace_back("Names of surveys stand for their intrinsic dipoles.");
     for (const VectorSeries& one : series) {
         if (one.summary->mean.isZero(0.0) && !one.parameter->amplitude_free)
             notes.push_back(fmt::format("{}: fixed at zero.", one.name));
         else if (one.parameter->direction_free && !pointing_of(context, one))
             notes.push_back(fmt::format(
-                "{}: no direction to speak of; its regions are those of the whole posterior.",
+                "{}: no mean direction; its regions are those of the whole posterior.",
                 one.name));
         else if (one.summary->region68 && one.summary->region68->area_deg2 < 1.0)
             notes.push_back(
@@ -195,12 +243,13 @@ std::vector<Sheet> direction_sheets(const FigureContext& context) {
     for (const VectorSeries& one : series)
         regions.push_back(regions_of(context, panel.map(), one));
     std::vector<const VectorRegions*> shown;
-    CsvText csv({"vector", "percent", "piece", "lon_deg", "lat_deg"});
+    CsvText csv({"vector", "what", "piece", "lon_deg", "lat_deg"});
     for (const VectorRegions& one : regions)
         if (one.is_on_map()) {
             shown.push_back(&one);
             add_edges(csv, panel.map(), one);
         }
+    add_marks(csv, context, series);
     std::vector<Polyline> covered;
     for (const VectorRegions* one : shown) {
         if (one->series.summary->region95->area_deg2 > widest_unlabelled_deg2) continue;
@@ -210,7 +259,7 @@ std::vector<Sheet> direction_sheets(const FigureContext& context) {
     const std::vector<Box> labels = panel.draw_graticule(
         sheet.drawing, context.fonts, context.source.summary.frame, covered);
     draw_regions(sheet.drawing, panel, shown);
-    const auto unplaced = draw_marks(context, sheet.drawing, panel, series, labels);
+    const auto unplaced = draw_marks(context, sheet.drawing, panel, regions, labels);
     double bottom = draw_key(context, sheet.drawing, series, box.bottom + 4.0);
     std::vector<std::string> notes = notes_of(context, series);
     if (!unplaced.empty())

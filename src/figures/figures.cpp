@@ -87,6 +87,16 @@ Figure rendered(const Sheet& sheet, const Fonts& fonts) {
 
 }  // namespace
 
+std::vector<std::string> figure_kinds() {
+    std::vector<std::string> names;
+    for (const Kind& kind : kinds) names.emplace_back(kind.name);
+    return names;
+}
+
+void require_fonts(const std::filesystem::path& own) {
+    static_cast<void>(Fonts(own));
+}
+
 std::vector<Message> FigureOptions::problems() const {
     std::vector<Message> found;
     if (!(width_mm >= 80.0 && width_mm <= 200.0))
@@ -94,6 +104,15 @@ std::vector<Message> FigureOptions::problems() const {
                          fmt::format("{} mm", width_mm),
                          "80 mm (one column is 90mm) to 200 mm (two are 180mm)",
                          ""});
+    const bool without_joint =
+        !only.empty() && std::ranges::none_of(only, [](const std::string& name) {
+            return begins_either(name, "joint");
+        });
+    if (!parameters.empty() && without_joint)
+        found.push_back({"--parameters",
+                         "they are of the joint figure, which --only leaves out",
+                         "",
+                         "add joint to --only"});
     return found;
 }
 

@@ -57,7 +57,9 @@ std::string evidence_words(const HypothesisResult& one) {
 Interval range_of(const std::vector<EvidenceRow>& rows) {
     Interval range{0.0, 6.0};
     for (const EvidenceRow& row : rows) {
-        range[1] = std::max(range[1], 1.3 * row.below);
+        const double error = std::fmax(row.one->evidence.bridge.error, 0.0);
+        range[0] = std::min(range[0], 1.1 * (row.below - error));
+        range[1] = std::max(range[1], 1.3 * (row.below + error));
         for (const double other : row.other_widths) {
             range[0] = std::min(range[0], 1.3 * other);
             range[1] = std::max(range[1], 1.3 * other);
@@ -180,19 +182,22 @@ std::string words_of(const EvidenceRow& row) {
             : row.grade + " against it, " + plain_number(row.below, 1) + " below the best");
 }
 
-std::vector<std::string> notes_on(const std::vector<EvidenceRow>& rows) {
+std::vector<std::string> notes_on(const Comparison& all, const std::vector<EvidenceRow>& rows) {
     std::vector<std::string> notes{
         "Under each name, its priors of velocity and intrinsic dipole. Shades: evidence "
         "undecided below 1, positive below 3, strong below 5, else very strong."};
     if (std::ranges::any_of(rows, [](const auto& row) { return !row.other_widths.empty(); }))
         notes.emplace_back(
             "Circles: the job's priors. Strokes: one prior three times as wide, or narrow.");
-    std::vector<std::string> unfinished;
-    for (const EvidenceRow& row : rows)
-        if (!row.one->converged) unfinished.push_back(row.one->name);
+    std::vector<std::string> unfinished, unknown;
+    for (const HypothesisResult& one : all.hypotheses) {
+        if (!one.converged) unfinished.push_back(one.name);
+        if (!std::isfinite(one.evidence.bridge.value)) unknown.push_back(one.name);
+    }
+    if (!unknown.empty())
+        notes.push_back(fmt::format("Evidence unknown: {}.", fmt::join(unknown, ", ")));
     if (!unfinished.empty())
-        notes.push_back(
-            fmt::format("Not converged: {}.", fmt::format("{}", fmt::join(unfinished, ", "))));
+        notes.push_back(fmt::format("Not converged: {}.", fmt::join(unfinished, ", ")));
     return notes;
 }
 
@@ -238,13 +243,18 @@ std::vector<Sheet> hypothesis_sheets(const FigureContext& context) {
                         "ln evidence below the best",
                         type::axis_title,
                         Anchor::middle));
-    bottom = draw_notes(
-        drawing, context.fonts, notes_on(rows), 4.0, bottom + 2.0, palette::grey_text());
+    bottom = draw_notes(drawing,
+                        context.fonts,
+                        notes_on(*context.source.comparison, rows),
+                        4.0,
+                        bottom + 2.0,
+                        palette::grey_text());
     sheet.alternative = fmt::format("{}.", fmt::join(words, "; "));
     sheet.reading_aid =
         "The further right, the more the counts speak against a hypothesis; shades grade it "
-        "(Kass & Raftery 1995). Where strokes and circle fall in different shades the verdict "
-        "is the prior's.";
+        "(Kass & Raftery 1995). A stroke in another shade than its circle: the verdict hangs "
+        "on "
+        "that prior's width. Strokes of the best hypothesis move the margins of all others.";
     sheet.csv = csv_of(rows);
     return {end_sheet(context, std::move(sheet), bottom)};
 }

@@ -141,9 +141,8 @@ class JointPage {
         const Scale up = upwards(row, box);
         const LineDensity density = scalar.density();
         const Scale out{0.0, 1.08 * density.peak(), box.left, box.right};
-        const auto turned = [&](const Interval& interval) {
+        const auto turned = [&](const Interval& ends) {
             Polyline area{{}, true};
-            const Interval ends = drawn_interval(scalar, interval);
             area.point.push_back({out.at(0.0), up.at(ends[0])});
             for (int step = 0; step <= 100; ++step) {
                 const double value = ends[0] + (ends[1] - ends[0]) * step / 100.0;
@@ -253,24 +252,49 @@ class JointPage {
     std::vector<Pair> pairs_;
 };
 
+/// Ends of the intervals, the median, and the density along the scalar.
+void add_numbers(CsvText& csv, const Scalar& scalar) {
+    const auto add = [&](const char* what, double value, double density) {
+        csv.text(what).text(scalar.name).text("").text(scalar.unit).text("").text("");
+        csv.number(value).number(density);
+        csv.end_row();
+    };
+    const LineDensity density = scalar.density();
+    for (const Mark& mark : marks_of(scalar))
+        add(mark.name, mark.value, density.at(mark.value));
+    for (std::size_t node = 0; node < density.place.size(); ++node)
+        add("density", density.place[node], density.density[node]);
+}
+
 std::string csv_of(const JointPage& page, const std::vector<Scalar>& scalars) {
-    CsvText csv({"x", "y", "unit_x", "unit_y", "percent", "piece", "value_x", "value_y"});
+    // Regions of pairs, then correlations, then each scalar's own density and numbers.
+    CsvText csv({"what", "x", "y", "unit_x", "unit_y", "piece", "value_x", "value_y"});
     const auto add = [&](const Scalar& x,
                          const Scalar& y,
                          const std::vector<Polyline>& lines,
                          const char* percent) {
         for (std::size_t piece = 0; piece < lines.size(); ++piece)
             for (const Point& point : lines[piece].point) {
-                csv.text(x.name).text(y.name).text(x.unit).text(y.unit).text(percent);
+                csv.text(percent).text(x.name).text(y.name).text(x.unit).text(y.unit);
                 csv.number(double(piece + 1)).number(point.x).number(point.y);
                 csv.end_row();
             }
     };
     for (std::size_t row = 0; row < scalars.size(); ++row)
         for (std::size_t column = 0; column < row; ++column) {
-            add(scalars[column], scalars[row], page.pair(row, column).region68, "68.27");
-            add(scalars[column], scalars[row], page.pair(row, column).region95, "95.45");
+            add(scalars[column],
+                scalars[row],
+                page.pair(row, column).region68,
+                "region 68.27 %");
+            add(scalars[column],
+                scalars[row],
+                page.pair(row, column).region95,
+                "region 95.45 %");
+            csv.text("correlation").text(scalars[column].name).text(scalars[row].name);
+            csv.text("").text("").text("").number(page.pair(row, column).correlation).text("");
+            csv.end_row();
         }
+    for (const Scalar& scalar : scalars) add_numbers(csv, scalar);
     return csv.str();
 }
 

@@ -12,12 +12,14 @@
 #include "deviascope/model/expected_counts.h"
 #include "deviascope/summary/draw_values.h"
 #include "figures/sky_figures.h"
+#include "summary/rounding.h"
 
 namespace deviascope {
 namespace {
 
 constexpr std::size_t n_rings = 12;
-constexpr Eigen::Index n_predictions = 400;
+constexpr Eigen::Index n_rows_drawn = 400;  // of the chain
+constexpr std::size_t n_repeats = 25;       // of the noise, for each
 
 /// A ring of sky about the apex: part of a bin's kept pixels, all rings of equal exposed area.
 struct Ring {
@@ -64,8 +66,8 @@ std::vector<std::size_t> places_by_angle(const Footprint& footprint,
     return places;
 }
 
-/// Cells of at most 1.8 deg: the expectation is so smooth that their mean directions stand for
-/// their pixels (the error is second order in cell size times dipole: 1e-6 of a count).
+/// Cells of nside 16 (3.7 deg): the expectation is so smooth that their mean directions stand
+/// for their pixels (relative error: half of cell size squared times dipole, below 1e-5).
 std::vector<Cell> cells_of(const Counts& counts,
                            const Footprint& footprint,
                            const std::vector<std::size_t>& places) {
@@ -128,7 +130,7 @@ Profile profile_of(const FigureContext& context, const BinTerm& term, const Dire
         ring.area_deg2 = exposure * full_sky_deg2 / double(grid.n_pixels());
         const Interval poisson = poisson_interval(ring.counted, level68);
         const double widening = std::sqrt(term.dispersion);
-        ring.counted68 = {ring.counted - widening * (ring.counted - poisson[0]),
+        ring.counted68 = {std::max(0.0, ring.counted - widening * (ring.counted - poisson[0])),
                           ring.counted + widening * (poisson[1] - ring.counted)};
         profile.cells.push_back(cells_of(counts, footprint, member));
         ring.expected = expected_in(term, mean, profile.cells.back(), grid.solid_angle());
@@ -138,14 +140,14 @@ Profile profile_of(const FigureContext& context, const BinTerm& term, const Dire
 }
 
 /// Counts that draws of the posterior predict, with their Poisson noise (widened by the
-/// dispersion): one keyed stream a draw.
+/// dispersion), several times for each: one keyed stream a draw.
 void predict(const FigureContext& context, Profile& profile, std::size_t index) {
     const Chain& chain = context.source.chain;
     const DrawRows rows = rows_of(chain.draws);
     const double solid_angle = Pixelisation(chain.counts.nside).solid_angle();
-    const Eigen::Index n = std::min(n_predictions, rows.rows());
+    const Eigen::Index n = std::min(n_rows_drawn, rows.rows());
     std::vector<std::vector<double>> predicted(profile.rings.size(),
-                                               std::vector<double>(std::size_t(n)));
+                                               std::vector<double>(std::size_t(n) * n_repeats));
     parallel_for(std::size_t(n), context.options.threads, [&](std::size_t draw) {
         const Eigen::Index row = Eigen::Index(draw) * rows.rows() / n;
         Stream stream(context.source.seed,
@@ -157,9 +159,12 @@ void predict(const FigureContext& context, Profile& profile, std::size_t index) 
         for (std::size_t ring = 0; ring < profile.rings.size(); ++ring) {
             const double mean =
                 expected_in(*profile.term, parameters, profile.cells[ring], solid_angle);
-            boost::random::poisson_distribution<std::int64_t> poisson(mean);
-            const auto noise = double(poisson(stream)) - mean;
-            predicted[ring][draw] = mean + std::sqrt(profile.term->dispersion) * noise;
+            for (std::size_t repeat = 0; repeat < n_repeats; ++repeat) {
+                boost::random::poisson_distribution<std::int64_t> poisson(mean);
+                const auto noise = double(poisson(stream)) - mean;
+                predicted[ring][draw * n_repeats + repeat] =
+                    std::max(0.0, mean + std::sqrt(profile.term->dispersion) * noise);
+            }
         }
     });
     for (std::size_t ring = 0; ring < profile.rings.size(); ++ring) {
@@ -322,19 +327,20 @@ Sheet profile_sheet(const FigureContext& context,
                               "angle from " + apex_words + " (deg)",
                               type::axis_title,
                               Anchor::middle));
-    bottom =
-        draw_notes(sheet.drawing,
-                   context.fonts,
-                   {"Circles: counts with Poisson bars. Dashed: expected. Bands: 68 and 95 "
-                    "% of what the posterior predicts, Poisson noise included."},
-                   14.0,
-                   bottom + 1.6 * type::axis_title,
-                   palette::grey_text());
+    bottom = draw_notes(
+        sheet.drawing,
+        context.fonts,
+        {fmt::format("Circles: counts with {0} bars. Dashed: expected. Bands: 68 and "
+                     "95 % of what the posterior predicts, {0} noise included.",
+                     is_dispersed(context, survey) ? "widened Poisson" : "Poisson")},
+        14.0,
+        bottom + 1.6 * type::axis_title,
+        palette::grey_text());
     std::vector<std::string> words;
     for (const Profile& profile : profiles)
-        words.push_back(fmt::format("{}: chi-squared {:.3g} in {} rings",
+        words.push_back(fmt::format("{}: chi-squared {} in {} rings",
                                     profile.name,
-                                    chi_squared_of(profile),
+                                    short_number(chi_squared_of(profile)),
                                     profile.rings.size()));
     sheet.alternative = fmt::format(
         "Mean counts of {} in rings about {}. {}.", name, apex_words, fmt::join(words, "; "));

@@ -12,6 +12,7 @@
 #include "deviascope/summary/result_tables.h"
 #include "figures/axis.h"
 #include "figures/backends.h"
+#include "figures/sky_figures.h"
 #include "summary/rounding.h"
 
 namespace deviascope {
@@ -20,7 +21,7 @@ namespace {
 constexpr const char* style = R"(
 :root{color-scheme:light dark;--page:#FFFFFF;--ink:#1D202B;--grey:#666871;--rule:#C6C7CD;--caution:#F8EFE6;--edge:#9A5A2B}
 @media (prefers-color-scheme:dark){:root{--page:#16181F;--ink:#E7E9F0;--grey:#A6A9B4;--rule:#43464F;--caution:#2D2620;--edge:#D49A66;DARK}}
-@media print{:root{--page:#FFFFFF;--ink:#1D202B;--grey:#666871;--rule:#C6C7CD;--caution:#F8EFE6;LIGHT}figure,table{break-inside:avoid}}
+@media print{:root{--page:#FFFFFF;--ink:#1D202B;--grey:#666871;--rule:#C6C7CD;--caution:#F8EFE6;LIGHT}figure,table{break-inside:avoid}.wide{overflow:visible}pre{white-space:pre-wrap}figure svg{min-width:0}}
 *{box-sizing:border-box}
 body{margin:0 auto;max-width:46rem;padding:1.2rem 1rem 4rem;background:var(--page);color:var(--ink);font:1rem/1.55 'Open Sans','DejaVu Sans',sans-serif;overflow-wrap:break-word}
 h1{font-size:1.6rem;line-height:1.25;margin:.2em 0}h2{font-size:1.2rem;margin:2.2em 0 .5em;border-bottom:1px solid var(--rule);padding-bottom:.2em}
@@ -78,10 +79,9 @@ std::string measured(const ScalarEstimate& estimate, double unit) {
 }
 
 std::string towards(const VectorSummary& vector) {
-    if (!vector.galactic) return "in no direction to speak of";
-    std::string text = fmt::format("towards (l, b) = ({}°, {}°)",
-                                   plain_number(vector.galactic->lon_deg, 1),
-                                   plain_number(vector.galactic->lat_deg, 1));
+    if (!vector.galactic)
+        return "without a mean direction (its region may be the whole sky, or several)";
+    std::string text = "towards " + place_in_words(*vector.galactic, Frame::galactic);
     if (vector.region68 && vector.region68->radius_deg)
         text += fmt::format(" within {}° (68 %)", short_number(*vector.region68->radius_deg));
     return text;
@@ -182,14 +182,17 @@ std::string cuts_blocks(const Summary& summary) {
     return blocks;
 }
 
+bool has_free_intrinsic(const Summary& summary) {
+    return std::ranges::any_of(summary.intrinsic,
+                               [](const VectorSummary& one) { return one.amplitude_free; });
+}
+
 std::string separation_block(const Summary& summary) {
-    std::string text = paragraph(
-        fmt::format("All surveys together: velocity and intrinsic dipole are {}{}.",
-                    summary.separation.joint.verdict,
-                    summary.separation.joint.velocity_prior_share
-                        ? fmt::format(" ({:.1f} % of the velocity comes from priors)",
-                                      100.0 * *summary.separation.joint.velocity_prior_share)
-                        : ""));
+    std::string text = separation_sentence(summary);
+    if (const auto& share = summary.separation.joint.velocity_prior_share)
+        text += fmt::format(" Priors give {:.1f} % of the velocity.", 100.0 * *share);
+    text = paragraph(text);
+    if (!has_free_intrinsic(summary) || !summary.velocity.amplitude_free) return text;
     for (std::size_t survey = 0; survey < summary.separation.surveys.size(); ++survey)
         text += paragraph(fmt::format("{} alone: {}.",
                                       summary.survey_names[survey],
@@ -221,7 +224,7 @@ std::string offset_block(const Summary& summary) {
 
 /// What a comparison adds in words; nothing where none has been made.
 std::string rivals_block(const Comparison* comparison) {
-    if (comparison == nullptr || comparison->hypotheses.empty()) return "";
+    if (comparison == nullptr || comparison->hypotheses.size() < 2) return "";
     const auto& hypotheses = comparison->hypotheses;
     const HypothesisResult& best = hypotheses[best_hypothesis(hypotheses)];
     std::vector<std::string> against;
@@ -273,13 +276,12 @@ std::string sampling_table(const SamplingSummary& sampling) {
     row("steps a walker", grouped(sampling.outcome.steps));
     row("of them warm-up, discarded", grouped(sampling.outcome.discarded));
     row("stored draws", grouped(sampling.n_draws));
-    row("largest R-hat over walkers (limit 1.05)",
-        fmt::format("{:.3f}", sampling.walker_rhat_max));
+    row("largest R-hat over walkers (limit 1.05)", number_or_dash(sampling.walker_rhat_max, 3));
     row("largest R-hat over replicates (limit 1.01)",
-        fmt::format("{:.4f}", sampling.replicate_rhat_max));
-    row("fewest effective draws", fmt::format("{:.0f}", sampling.effective_draws_min));
+        number_or_dash(sampling.replicate_rhat_max, 4));
+    row("fewest effective draws", number_or_dash(sampling.effective_draws_min, 0));
     row("longest autocorrelation (steps)",
-        fmt::format("{:.1f}", sampling.autocorrelation_steps_max));
+        number_or_dash(sampling.autocorrelation_steps_max, 1));
     return in_frame(to_html(table));
 }
 

@@ -6,6 +6,7 @@
 #include "deviascope/core/physical_constants.h"
 #include "deviascope/summary/residuals.h"
 #include "figures/sky_figures.h"
+#include "summary/rounding.h"
 
 namespace deviascope {
 namespace {
@@ -13,7 +14,7 @@ namespace {
 constexpr double clipped_at = 3.0;  // standard deviations
 
 /// Bar over the full width of the map, with arrow ends: values beyond it are coloured alike.
-double draw_colour_bar(Drawing& drawing, const Box& map) {
+double draw_colour_bar(Drawing& drawing, const Box& map, const std::string& label) {
     const double top = map.bottom + 10.0, bottom = top + 6.0, tip = 6.0;
     const Box bar{map.left + tip, top, map.right - tip, bottom};
     constexpr int n_steps = 48;
@@ -38,10 +39,8 @@ double draw_colour_bar(Drawing& drawing, const Box& map) {
                             Anchor::middle));
     }
     const double below = bottom + rule::tick_length + 2.4 * type::tick + 2.0;
-    drawing.add(text_at({0.5 * (map.left + map.right), below},
-                        "(counted − expected) / √expected",
-                        type::axis_title,
-                        Anchor::middle));
+    drawing.add(text_at(
+        {0.5 * (map.left + map.right), below}, label, type::axis_title, Anchor::middle));
     return below + 2.0;
 }
 
@@ -121,29 +120,33 @@ Sheet residual_sheet(const FigureContext& context, std::size_t survey) {
             placer.place(sheet.drawing,
                          panel.at(*pointing),
                          shortened(context.fonts, one.name, type::note, 0.4 * width));
-    double bottom = draw_colour_bar(sheet.drawing, box);
+    const bool widened = is_dispersed(context, survey);
+    double bottom = draw_colour_bar(sheet.drawing,
+                                    box,
+                                    widened ? "(counted − expected) / √(dispersion · expected)"
+                                            : "(counted − expected) / √expected");
     bottom = draw_notes(sheet.drawing,
                         context.fonts,
-                        {fmt::format("All bins of {} together, cells of {:.3g} square degrees "
-                                     "(nside {}); chi-squared {:.4g} in {} cells. Grey: not "
+                        {fmt::format("All bins of {} together, cells of {} square degrees "
+                                     "(nside {}); chi-squared {} in {} cells. Grey: not "
                                      "observed.",
                                      name,
-                                     full_sky_deg2 / static_cast<double>(grid.n_pixels()),
+                                     short_number(full_sky_deg2 / double(grid.n_pixels())),
                                      nside,
-                                     map.chi_squared,
+                                     plain_number(map.chi_squared, 0),
                                      map.n_cells)},
                         8.0,
                         bottom,
                         palette::grey_text());
     sheet.alternative = fmt::format(
         "Map of the residuals of {}: counts minus what the posterior mean expects, in standard "
-        "deviations. Chi-squared {:.4g} in {} cells; largest residual {:.2g}.",
+        "deviations. Chi-squared {} in {} cells; largest residual {}.",
         name,
-        map.chi_squared,
+        plain_number(map.chi_squared, 0),
         map.n_cells,
-        map.largest);
+        plain_number(map.largest, 1));
     sheet.reading_aid =
-        "What the model leaves over, in Poisson standard deviations; a large patch of one "
+        "What the model leaves over, in standard deviations; a large patch of one "
         "colour is something the model does not know. Colours end at ±3.";
     sheet.csv = csv_of(map);
     return end_sheet(context, std::move(sheet), bottom);

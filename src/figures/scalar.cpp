@@ -36,6 +36,11 @@ void finish(Scalar& scalar, const FigureContext& context) {
     scalar.effective = effective_values(
         scalar.name, context.source.summary.sampling.scalars, context.source.chain.draws);
     scalar.is_one_sided = is_piled_up_at_zero(scalar);
+    if (!scalar.is_one_sided) return;
+    std::vector<double> sorted = scalar.values;
+    std::ranges::sort(sorted);
+    scalar.estimate.interval68 = {0.0, quantile_of(sorted, level68)};
+    scalar.estimate.interval95 = {0.0, quantile_of(sorted, level95)};
 }
 
 /// Parts of a name: `weight.dunlin.faint` has three.
@@ -154,6 +159,15 @@ Scalar scalar_named(const FigureContext& context, const std::string& name) {
     refuse(name, "is not in the chain", known);
 }
 
+std::vector<Mark> marks_of(const Scalar& scalar) {
+    const ScalarEstimate& estimate = scalar.estimate;
+    return {{"low95", estimate.interval95[0]},
+            {"low68", estimate.interval68[0]},
+            {"median", estimate.median},
+            {"high68", estimate.interval68[1]},
+            {"high95", estimate.interval95[1]}};
+}
+
 Polyline area_under(const LineDensity& density,
                     const Interval& ends,
                     const Scale& across,
@@ -170,10 +184,6 @@ Polyline area_under(const LineDensity& density,
     add(ends[1], density.at(ends[1]));
     add(ends[1], 0.0);
     return area;
-}
-
-Interval drawn_interval(const Scalar& scalar, const Interval& interval) {
-    return {scalar.is_one_sided ? 0.0 : interval[0], interval[1]};
 }
 
 }  // namespace deviascope

@@ -20,7 +20,7 @@ struct Scalar {
     double scale = 1.0;          ///< what values of the chain were multiplied by
     std::vector<double> values;  ///< scaled; in the order of rows_of
     Support support;             ///< scaled
-    ScalarEstimate estimate;     ///< scaled
+    ScalarEstimate estimate;     ///< scaled; intervals of one-sided ones begin at 0
     double effective = 0.0;      ///< independent draws
     std::size_t series = 0;      ///< colour
     bool is_one_sided = false;   ///< piled up against 0: an upper limit is what it says
@@ -39,13 +39,17 @@ Scalar amplitude_scalar(const FigureContext& context, const VectorSeries& series
 /// Errors: UsageError where there is none of that name, or it does not vary.
 Scalar scalar_named(const FigureContext& context, const std::string& name);
 
+/// The numbers that figures mark on a scalar's axis.
+struct Mark {
+    const char* name;
+    double value;
+};
+std::vector<Mark> marks_of(const Scalar& scalar);
+
 /// Area under a curve between two values, as a closed shape on scales.
 Polyline area_under(const LineDensity& density,
                     const Interval& ends,
                     const Scale& across,
                     const Scale& up);
-
-/// Where the interval shall be drawn from: 0 for one-sided scalars.
-Interval drawn_interval(const Scalar& scalar, const Interval& interval);
 
 }  // namespace deviascope

@@ -3,6 +3,7 @@
 
 #include <fmt/format.h>
 
+#include <algorithm>
 #include <cmath>
 
 #include "deviascope/core/physical_constants.h"
@@ -42,6 +43,12 @@ std::optional<Direction> pointing_of(const FigureContext& context, const VectorS
            direction_of(place->lon_deg, place->lat_deg);
 }
 
+bool is_dispersed(const FigureContext& context, std::size_t survey) {
+    return std::ranges::any_of(context.source.space.terms(), [&](const BinTerm& term) {
+        return term.survey == survey && term.dispersion != 1.0;
+    });
+}
+
 double quiet_centre(const FigureContext& context, const std::vector<VectorSeries>& series) {
     std::size_t near_seam = 0, near_middle = 0;
     for (const VectorSeries& one : series) {
@@ -62,7 +69,7 @@ std::string place_in_words(const LonLat& place, Frame frame) {
     static constexpr const char* names[] = {"l, b", "RA, Dec", "λ, β"};
     return fmt::format("({}) = ({}°, {}°)",
                        names[static_cast<int>(frame)],
-                       plain_number(place.lon_deg, 1),
+                       plain_number(place.lon_deg >= 359.95 ? 0.0 : place.lon_deg, 1),
                        plain_number(place.lat_deg, 1));
 }
 
@@ -79,8 +86,8 @@ void add_edges(CsvText& csv, const Mollweide& map, const VectorRegions& regions)
                 csv.end_row();
             }
     };
-    add(regions.region68, "68.27");
-    add(regions.region95, "95.45");
+    add(regions.region68, "region 68.27 %");
+    add(regions.region95, "region 95.45 %");
 }
 
 }  // namespace deviascope

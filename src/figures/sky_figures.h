@@ -22,6 +22,9 @@ VectorRegions regions_of(const FigureContext& context,
 /// Mean direction in the job's frame; empty where there is none, or the vector is zero.
 std::optional<Direction> pointing_of(const FigureContext& context, const VectorSeries& series);
 
+/// Whether a bin of the survey has a dispersion other than 1: its noise is not Poisson's.
+bool is_dispersed(const FigureContext& context, std::size_t survey);
+
 /// 0, or 180 where that keeps the 95 % regions farther from the seam.
 double quiet_centre(const FigureContext& context, const std::vector<VectorSeries>& series);
 

@@ -2,6 +2,7 @@
 #include <fmt/format.h>
 
 #include <algorithm>
+#include <array>
 #include <cmath>
 
 #include "deviascope/core/grouped_number.h"
@@ -53,10 +54,12 @@ Spread spread_of(const MonitoredScalar& scalar,
                  Eigen::Index last) {
     const Eigen::Index n = draws.n_replicates * draws.n_walkers;
     std::vector<double> values;
-    // No more than about 2,000 values a band: its ends then move by a hair only.
+    // All walkers, in so many rows that there are about 2,000 values: the ends of the bands
+    // move by a hair only.
     const Eigen::Index stride = std::max<Eigen::Index>(1, (last - first) * n / 2000);
-    for (Eigen::Index place = first * n; place < last * n; place += stride)
-        values.push_back(scale * value_in(scalar, draws, place / n, place % n));
+    for (Eigen::Index row = first; row < last; row += stride)
+        for (Eigen::Index walker = 0; walker < n; ++walker)
+            values.push_back(scale * value_in(scalar, draws, row, walker));
     std::sort(values.begin(), values.end());
     const auto band = [&](double probability) {
         return Interval{quantile_of(values, 0.5 - 0.5 * probability),
@@ -109,7 +112,11 @@ std::vector<MonitoredScalar> shown_scalars(const FigureContext& context) {
             shown.push_back(scalar);
     }
     if (shown.empty()) shown = all;
-    if (shown.size() > most_rows) shown.resize(most_rows);
+    // Too many: those at the end go, but never the worst.
+    while (shown.size() > most_rows) {
+        const bool worst_is_last = worst != scalars.end() && shown.back().name == worst->name;
+        shown.erase(worst_is_last ? shown.end() - 2 : shown.end() - 1);
+    }
     return shown;
 }
 
@@ -204,10 +211,6 @@ void draw_spreads(Clip& clip,
     clip.content.push_back(Shape{{median}, std::nullopt, Stroke{rule::curve, colour}});
 }
 
-std::string number_or_dash(double value, int decimals) {
-    return std::isfinite(value) ? plain_number(value, decimals) : "–";
-}
-
 void draw_numbers(Drawing& drawing, const ScalarDiagnostics& scalar, double x, double top) {
     const std::string effective = std::isfinite(scalar.effective_draws())
                                       ? grouped(std::int64_t(scalar.effective_draws()))
@@ -253,8 +256,19 @@ void draw_row(const FigureContext& context,
 }
 
 std::string csv_of(const std::vector<Trace>& traces) {
-    CsvText csv(
-        {"scalar", "unit", "part", "step", "median", "low95", "low68", "high68", "high95"});
+    CsvText csv({"scalar",
+                 "unit",
+                 "part",
+                 "step",
+                 "median",
+                 "low95",
+                 "low68",
+                 "high68",
+                 "high95",
+                 "walker_a",
+                 "walker_b",
+                 "walker_c",
+                 "walker_d"});
     for (const Trace& trace : traces)
         for (const auto* part : {&trace.warm_up, &trace.stored})
             for (const Spread& one : *part) {
@@ -262,6 +276,7 @@ std::string csv_of(const std::vector<Trace>& traces) {
                 csv.text(part == &trace.stored ? "stored" : "warm-up").number(one.step);
                 csv.number(one.median).number(one.band95[0]).number(one.band68[0]);
                 csv.number(one.band68[1]).number(one.band95[1]);
+                for (const double value : one.walker) csv.number(value);
                 csv.end_row();
             }
     return csv.str();

@@ -96,7 +96,7 @@ class JobReader {
     }
 
     void read_surveys() {
-        NameRule names({"all", "joint"});
+        NameRule names({"all", "joint", "velocity"});
         const auto tables = root_.tables("survey", required);
         for (const TomlTable& table : tables) {
             SurveyReading survey = read_survey(

@@ -2,6 +2,9 @@
 #include <fmt/format.h>
 #include <fmt/ranges.h>
 
+#include <algorithm>
+#include <cmath>
+
 #include "deviascope/core/grouped_number.h"
 #include "deviascope/summary/result_tables.h"
 
@@ -31,7 +34,24 @@ std::string data_sentence(const Summary& summary, const Chain& chain) {
         count_of(summary.survey_names.size(), "survey", "surveys"),
         latex_text(fmt::format("{}", fmt::join(summary.survey_names, ", "))),
         chain.counts.nside,
-        name_of(summary.frame));
+        summary.frame == Frame::icrs ? "ICRS" : name_of(summary.frame));
+}
+
+std::string model_sentences(const Summary& summary) {
+    const bool is_shared = summary.intrinsic.size() == 1 && summary.intrinsic[0].name == "all";
+    return fmt::format(
+        "The count of a bin in a pixel of solid angle $\\Omega$ with exposure $w$ and "
+        "direction "
+        "$\\mathbf{{n}}$ is taken to be Poisson distributed about $\\Omega M w [\\gamma (1 - "
+        "\\boldsymbol{{\\beta}}\\cdot\\mathbf{{n}})]^{{-B}} (1 + r\\,\\mathbf{{D}}\\cdot"
+        "\\mathbf{{n}})$ \\cite{{ellis1984}}, with the observer's velocity "
+        "$\\boldsymbol{{\\beta}}$ (units of $c$, Lorentz factor $\\gamma$) common to all bins, "
+        "the intrinsic dipole $\\mathbf{{D}}$ of {}, the monopole $M$ and kinematic weight $B$ "
+        "of the bin, and a factor $r$ of it, 1 unless stated; where a dispersion is stated, "
+        "the bin's log-likelihood is divided by it.\n"
+        "Table~\\ref{{tab:bins}} gives the priors of the weights; the monopoles have the scale "
+        "prior $1/M$ unless stated.",
+        is_shared ? "all surveys" : "its survey");
 }
 
 std::string prior_sentence(const VectorSummary& vector) {
@@ -45,6 +65,25 @@ std::string prior_sentence(const VectorSummary& vector) {
                        latex_text(vector.prior_description));
 }
 
+std::string diagnostic(double value, int decimals) {
+    return std::isfinite(value) ? fmt::format("{:.{}f}", value, decimals) : "undefined";
+}
+
+/// The kernels that the job gives a share of the proposals.
+std::string kernel_words(const EnsembleOptions& options) {
+    std::vector<std::string> kernels;
+    const KernelFractions& share = options.kernels;
+    if (share.stretch > 0.0) kernels.emplace_back("stretch moves \\cite{goodman2010}");
+    if (share.differential_evolution > 0.0)
+        kernels.emplace_back("differential-evolution moves \\cite{terbraak2006}");
+    if (share.independence > 0.0)
+        kernels.emplace_back(
+            "independence proposals \\cite{tierney1994} from the Laplace approximation");
+    const std::string last = kernels.back();
+    kernels.pop_back();
+    return kernels.empty() ? last : fmt::format("{} and {}", fmt::join(kernels, ", "), last);
+}
+
 std::string sampling_sentence(const Summary& summary, const Chain& chain) {
     const SamplingSummary& sampling = summary.sampling;
     const std::string verdict =
@@ -52,41 +91,47 @@ std::string sampling_sentence(const Summary& summary, const Chain& chain) {
             ? "The run met its stopping rule"
             : "\\textbf{The run did NOT meet its stopping rule and must not be published}";
     return fmt::format(
-        "The posterior was sampled with deviascope {} (seed {}) by {} independent ensembles of "
-        "{} walkers with stretch moves \\cite{{goodman2010}}, differential-evolution moves "
-        "\\cite{{terbraak2006}} and independence proposals \\cite{{tierney1994}} from the "
-        "Laplace approximation; of ${}$ steps a walker the first ${}$ were discarded. {}: the "
-        "largest rank-normalised split $\\widehat{{R}}$ \\cite{{vehtari2021}} is {:.3f} over "
-        "walkers and {:.4f} over ensembles, and the fewest effective draws are ${}$.",
+        "The posterior was sampled with deviascope {} (seed {}) by {} of {} walkers with {}; "
+        "of "
+        "${}$ steps a walker the first ${}$ were discarded. {}: the largest rank-normalised "
+        "split $\\widehat{{R}}$ \\cite{{vehtari2021}} is {} over walkers and {} over "
+        "ensembles, "
+        "and the fewest effective draws are ${}$.",
         latex_text(chain.provenance.version),
         chain.provenance.seed,
-        sampling.replicates,
+        sampling.replicates == 1 ? "one ensemble"
+                                 : fmt::format("{} independent ensembles", sampling.replicates),
         sampling.walkers,
+        kernel_words(chain.options),
         number(sampling.outcome.steps),
         number(sampling.outcome.discarded),
         verdict,
-        sampling.walker_rhat_max,
-        sampling.replicate_rhat_max,
+        diagnostic(sampling.walker_rhat_max, 3),
+        diagnostic(sampling.replicate_rhat_max, 4),
         number(static_cast<std::int64_t>(
             std::isfinite(sampling.effective_draws_min) ? sampling.effective_draws_min : 0.0)));
 }
 
 }  // namespace
 
+std::string separation_sentence(const Summary& summary) {
+    const bool none_free = std::ranges::none_of(
+        summary.intrinsic, [](const VectorSummary& vector) { return vector.amplitude_free; });
+    if (!summary.velocity.amplitude_free)
+        return "The velocity is fixed: there is nothing to separate.";
+    if (none_free)
+        return "No intrinsic dipole is free: all of the dipole counts as motion, apart from "
+               "what is fixed.";
+    const std::string& verdict = summary.separation.joint.verdict;
+    return fmt::format("Velocity and intrinsic dipoles are {}.", verdict);
+}
+
 std::string method_text(const Summary& summary, const Chain& chain) {
-    std::vector<std::string> sentences{
-        data_sentence(summary, chain),
-        "The count of bin $b$ of survey $s$ in a pixel with exposure $w$ and direction "
-        "$\\mathbf{n}$ is Poisson distributed about $\\Omega M w [\\gamma (1 - "
-        "\\boldsymbol{\\beta}\\cdot\\mathbf{n})]^{-B} (1 + r\\,\\mathbf{D}\\cdot\\mathbf{n})$, "
-        "with the observer's velocity $\\boldsymbol{\\beta}$ common to all bins, the intrinsic "
-        "dipole $\\mathbf{D}$ of the survey, and the monopole $M$ and kinematic weight $B$ of "
-        "the bin \\cite{ellis1984}."};
+    std::vector<std::string> sentences{data_sentence(summary, chain), model_sentences(summary)};
     sentences.push_back(prior_sentence(summary.velocity));
     for (const VectorSummary& vector : summary.intrinsic)
         sentences.push_back(prior_sentence(vector));
-    sentences.push_back(fmt::format("Velocity and intrinsic dipoles are {}.",
-                                    latex_text(summary.separation.joint.verdict)));
+    sentences.push_back(latex_text(separation_sentence(summary)));
     sentences.push_back(sampling_sentence(summary, chain));
     sentences.push_back(
         "Intervals are the shortest that hold $68.27\\,\\%$ and $95.45\\,\\%$ of the posterior "

@@ -40,9 +40,10 @@ void add_place(std::vector<Cell>& row, const VectorSummary& vector) {
         const double sd = vector.region68 && vector.region68->radius_deg
                               ? *vector.region68->radius_deg / 1.515
                               : 0.0;
-        row.emplace_back(rounded(vector.galactic->lon_deg, sd));
+        row.emplace_back(
+            rounded_longitude(vector.galactic->lon_deg, vector.galactic->lat_deg, sd));
         row.emplace_back(rounded(vector.galactic->lat_deg, sd));
-        row.emplace_back(rounded(vector.icrs->lon_deg, sd));
+        row.emplace_back(rounded_longitude(vector.icrs->lon_deg, vector.icrs->lat_deg, sd));
         row.emplace_back(rounded(vector.icrs->lat_deg, sd));
     }
     row.emplace_back(vector.region68 && vector.region68->radius_deg

@@ -1,6 +1,7 @@
 // SPDX-License-Identifier: GPL-2.0-or-later
 #include "summary/rounding.h"
 #include "deviascope/core/grouped_number.h"
+#include "deviascope/core/physical_constants.h"
 
 #include <fmt/format.h>
 
@@ -39,6 +40,13 @@ std::string rounded(double value, double uncertainty) {
     if (std::isfinite(uncertainty) && uncertainty > 0.0)
         return with_decimals(value, decimals_for(uncertainty, 2));
     return value == 0.0 ? "0" : with_decimals(value, decimals_for(std::abs(value), 4));
+}
+
+std::string rounded_longitude(double lon_deg, double lat_deg, double uncertainty) {
+    const double across = std::max(std::cos(lat_deg * radians_per_degree), 1e-3);
+    const double sd = std::min(uncertainty / across, 90.0);
+    const std::string text = rounded(lon_deg, sd);
+    return text.starts_with("360") ? rounded(0.0, sd) : text;
 }
 
 std::string short_number(double value) {

@@ -14,6 +14,10 @@ namespace deviascope {
 /// for a number that is undefined.
 std::string rounded(double value, double uncertainty);
 
+/// A longitude in degrees, rounded by the uncertainty of the direction (degrees of arc) at its
+/// latitude; never `360`.
+std::string rounded_longitude(double lon_deg, double lat_deg, double uncertainty);
+
 /// A number to three significant digits.
 std::string short_number(double value);
 

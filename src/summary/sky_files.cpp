@@ -190,8 +190,7 @@ std::vector<std::string> write_sky_files(const SkyFileSource& source,
         ResidualMap map = residual_map(source.chain, source.space, survey, counts.nside);
         write_healpix_map(folder / names.back(),
                           {counts.nside, counts.frame, std::move(map.residual)},
-                          "RESIDUAL",
-                          "sigma");
+                          "RESIDUAL");
     }
     return names;
 }

@@ -14,7 +14,8 @@ namespace deviascope {
 /// Columns of the exported table: step, replicate, walker (from 1), log_posterior,
 /// log_likelihood, every parameter; then, for each vector, `<vector>.amplitude`,
 /// `<vector>.l_deg`, `.b_deg` (galactic), `.ra_deg`, `.dec_deg` (ICRS), and for the velocity
-/// `velocity.speed_km_s`. Angles of a vector of length zero are NaN.
+/// `velocity.speed_km_s`. Angles of a vector of length zero are NaN. Units as FITS writes them;
+/// velocities, in units of c, have none.
 struct ExportColumn {
     std::string name, unit;
 };

@@ -30,7 +30,7 @@ struct FigureSource {
 };
 
 struct FigureOptions {
-    double width_mm = 180.0;              ///< 90 … 180: one column, or the page's width
+    double width_mm = 180.0;              ///< 80 … 200; a column is 90, a page 180
     bool bare = false;                    ///< no titles
     std::filesystem::path font;           ///< in place of Open Sans; empty: that
     std::vector<std::string> only;        ///< names or their beginnings; empty: all
@@ -40,6 +40,13 @@ struct FigureOptions {
     /// Rules that are broken.
     std::vector<Message> problems() const;
 };
+
+/// What the names of figures begin with, in the report's order.
+std::vector<std::string> figure_kinds();
+
+/// Whether figures can be drawn at all. Errors: OutputError where no font is found, UsageError
+/// where `own` is none.
+void require_fonts(const std::filesystem::path& own);
 
 /// Names and versions of the libraries that draw, on one line.
 std::string drawing_library_versions();
@@ -57,7 +64,8 @@ struct Figure {
 
 /// All figures that the chain gives rise to, in the order of the report: directions,
 /// residuals-<survey>, amplitudes, joint (or joint-<vector>, where a page has no room for all),
-/// hypotheses and surveys (of a comparison), profile-<survey>, weights, traces. The same input gives the same bytes, for any threads.
+/// hypotheses and surveys (of a comparison), profile-<survey>, weights, traces. The same input
+/// gives the same bytes, for any threads.
 ///
 /// Errors: UsageError: options.problems(); a name in `only` that no figure begins with; a
 /// parameter that does not exist, does not vary, or one too many for the page. OutputError

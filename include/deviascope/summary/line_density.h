@@ -32,7 +32,7 @@ struct LineDensity {
 ///
 /// on 512 nodes that reach 4 h beyond the draws, or to the end of the support.
 /// Domain: two values that differ, at least; a grid of no nodes otherwise.
-/// Source: bandwidth: Silverman 1986, Density Estimation, Eq. 3.28 with the spread of 3.31;
+/// Source: bandwidth: Silverman 1986, Density Estimation, Eq. 3.28 with the spread of 3.30;
 /// boundary: Jones & Foster 1996, Statistica Sinica 6, 1005 (both from memory).
 LineDensity line_density(std::span<const double> values,
                          double effective_draws,

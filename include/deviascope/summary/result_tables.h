@@ -48,6 +48,9 @@ std::string latex_text(const std::string& text);
 
 /// A few sentences for the methods section, filled with the run's numbers, with \cite keys of
 /// `references_bib`.
+/// Whether velocity and intrinsic dipoles are told apart, as a sentence: the joint verdict of
+/// the separation, or that there is nothing to separate.
+std::string separation_sentence(const Summary& summary);
 std::string method_text(const Summary& summary, const Chain& chain);
 /// BibTeX entries of what `method_text` cites.
 std::string references_bib();
