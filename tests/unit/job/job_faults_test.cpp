@@ -323,7 +323,8 @@ TEST_CASE("faults of the table survey are named", "[job]") {
                "required"},
               {"name = \"dunlin\"",
                "name = \"all\"",
-               "9:8: survey[1].name: found \"all\"; any name but \"all\" or \"joint\" is "
+               "9:8: survey[1].name: found \"all\"; any name but \"all\", \"joint\" or "
+               "\"velocity\" is "
                "allowed"},
               {"name = \"dunlin\"",
                "name = \"Dunlin\"",
