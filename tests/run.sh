@@ -12,7 +12,7 @@ echo "Building (a few minutes the first time) …"
 echo "Testing …"
 log=$(mktemp)
 trap 'rm -f "$log"' EXIT
-if ! ctest --test-dir build --output-on-failure --no-tests=error -j "$(nproc)" "${selection[@]}" > "$log" 2>&1; then
+if ! ctest --test-dir build --output-on-failure --no-tests=error -j "$(($(nproc) + 1))" "${selection[@]}" > "$log" 2>&1; then
     grep -v -E '^ *[0-9]+/[0-9]+ Test .* Passed|^ +Start +[0-9]+' "$log" | head -n 300 >&2
     exit 1
 fi

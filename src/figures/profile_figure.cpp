@@ -253,6 +253,29 @@ void draw_panel(const FigureContext& context,
     drawing.add(name);
 }
 
+/// All bins, side by side where the page is wide; returns the place below them.
+double draw_panels(const FigureContext& context,
+                   Drawing& drawing,
+                   const std::vector<Profile>& profiles,
+                   double top,
+                   std::size_t series) {
+    constexpr double height = 84.0, below = 16.0, left = 36.0, gap = 12.0;
+    const std::size_t most = profiles.size() == 4 ? 2 : 3;  // no panel alone in its row
+    const std::size_t n_columns =
+        context.width() > 380.0 ? std::min<std::size_t>(profiles.size(), most) : 1;
+    const double width = (context.width() - 10.0 - 14.0 - left * double(n_columns) -
+                          gap * double(n_columns - 1)) /
+                         double(n_columns);
+    double bottom = top;
+    for (std::size_t place = 0; place < profiles.size(); ++place) {
+        const double x = 14.0 + left + double(place % n_columns) * (width + left + gap);
+        const double y = top + 8.0 + double(place / n_columns) * (height + below + 8.0);
+        draw_panel(context, drawing, profiles[place], {x, y, x + width, y + height}, series);
+        bottom = std::max(bottom, y + height + below);
+    }
+    return bottom;
+}
+
 double chi_squared_of(const Profile& profile) {
     double sum = 0.0;
     for (const Ring& ring : profile.rings)
@@ -299,24 +322,7 @@ Sheet profile_sheet(const FigureContext& context,
     auto [sheet, top] = begin_sheet(
         context, "profile-" + name, "Counts of " + name + " against the angle from the apex");
     const bool shared = context.source.space.options().intrinsic_shared;
-    constexpr double height = 84.0, below = 16.0, left = 36.0, gap = 12.0;
-    const std::size_t most = profiles.size() == 4 ? 2 : 3;  // no panel alone in its row
-    const std::size_t n_columns =
-        context.width() > 380.0 ? std::min<std::size_t>(profiles.size(), most) : 1;
-    const double width = (context.width() - 10.0 - 14.0 - left * double(n_columns) -
-                          gap * double(n_columns - 1)) /
-                         double(n_columns);
-    double bottom = top;
-    for (std::size_t place = 0; place < profiles.size(); ++place) {
-        const double x = 14.0 + left + double(place % n_columns) * (width + left + gap);
-        const double y = top + 8.0 + double(place / n_columns) * (height + below + 8.0);
-        draw_panel(context,
-                   sheet.drawing,
-                   profiles[place],
-                   {x, y, x + width, y + height},
-                   shared ? 1 : survey + 1);
-        bottom = std::max(bottom, y + height + below);
-    }
+    double bottom = draw_panels(context, sheet.drawing, profiles, top, shared ? 1 : survey + 1);
     Text upwards = text_at({12.0, 0.5 * (top + bottom)},
                            "sources per square degree",
                            type::axis_title,

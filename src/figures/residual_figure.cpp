@@ -82,6 +82,25 @@ std::vector<VectorSeries> vectors_of(const FigureSource& source, std::size_t sur
     return {all[0], all[survey + 1]};
 }
 
+/// Marks at mean directions, then their labels.
+void draw_marks(const FigureContext& context,
+                Drawing& drawing,
+                const SkyPanel& panel,
+                const std::vector<VectorSeries>& series,
+                LabelPlacer& placer) {
+    for (const VectorSeries& one : series)
+        if (const auto pointing = pointing_of(context, one)) {
+            const Point at = panel.at(*pointing);
+            draw_mark(drawing, at, 4.0, one.index, palette::series(one.index));
+            placer.keep_free(Box{at.x, at.y, at.x, at.y}.grown(3.0));
+        }
+    for (const VectorSeries& one : series)
+        if (const auto pointing = pointing_of(context, one))
+            placer.place(drawing,
+                         panel.at(*pointing),
+                         shortened(context.fonts, one.name, type::note, 0.4 * drawing.width));
+}
+
 Sheet residual_sheet(const FigureContext& context, std::size_t survey) {
     const Counts& counts = context.source.chain.counts;
     const std::string& name = counts.surveys[survey].name;
@@ -109,17 +128,7 @@ Sheet residual_sheet(const FigureContext& context, std::size_t survey) {
     if (!outlines.content.empty()) sheet.drawing.add(std::move(outlines));
     LabelPlacer placer(context.fonts, {2.0, top, width - 2.0, box.bottom});
     for (const Box& label : labels) placer.keep_free(label);
-    for (const VectorSeries& one : series)
-        if (const auto pointing = pointing_of(context, one)) {
-            const Point at = panel.at(*pointing);
-            draw_mark(sheet.drawing, at, 4.0, one.index, palette::series(one.index));
-            placer.keep_free(Box{at.x, at.y, at.x, at.y}.grown(3.0));
-        }
-    for (const VectorSeries& one : series)
-        if (const auto pointing = pointing_of(context, one))
-            placer.place(sheet.drawing,
-                         panel.at(*pointing),
-                         shortened(context.fonts, one.name, type::note, 0.4 * width));
+    draw_marks(context, sheet.drawing, panel, series, placer);
     const bool widened = is_dispersed(context, survey);
     double bottom = draw_colour_bar(sheet.drawing,
                                     box,

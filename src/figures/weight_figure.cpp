@@ -61,6 +61,16 @@ void draw_bar(Drawing& drawing,
         {across.at(ends[0]), y - 0.5 * height, across.at(ends[1]), y + 0.5 * height}, colour);
 }
 
+/// Prior behind, posterior before it.
+void draw_bars(Drawing& drawing, const Scale& across, const WeightRow& row, double y) {
+    const Colour colour = palette::series(row.series);
+    draw_bar(drawing, across, {-2.0, 2.0}, y, 0.72 * row_height, palette::panel());
+    draw_bar(drawing, across, {-1.0, 1.0}, y, 0.72 * row_height, palette::mask());
+    draw_bar(drawing, across, row.band95, y, 1.2, colour);
+    draw_bar(drawing, across, row.band68, y, 4.0, colour);
+    drawing.add(Disc{{across.at(row.median), y}, 1.9, palette::paper(), Stroke{0.9, colour}});
+}
+
 std::string csv_of(const std::vector<WeightRow>& rows) {
     CsvText csv({"survey",
                  "bin",
@@ -118,14 +128,7 @@ std::vector<Sheet> weight_sheets(const FigureContext& context) {
     for (std::size_t place = 0; place < rows.size(); ++place) {
         const WeightRow& row = rows[place];
         y = first + (double(place) + 0.5) * row_height;
-        draw_bar(drawing, across, {-2.0, 2.0}, y, 0.72 * row_height, palette::panel());
-        draw_bar(drawing, across, {-1.0, 1.0}, y, 0.72 * row_height, palette::mask());
-        draw_bar(drawing, across, row.band95, y, 1.2, palette::series(row.series));
-        draw_bar(drawing, across, row.band68, y, 4.0, palette::series(row.series));
-        drawing.add(Disc{{across.at(row.median), y},
-                         1.9,
-                         palette::paper(),
-                         Stroke{0.9, palette::series(row.series)}});
+        draw_bars(drawing, across, row, y);
         const double base = y + 0.36 * type::note;
         drawing.add(text_at({4.0, base}, labels[place], type::note));
         drawing.add(text_at({column, base}, prior_words(*row.bin), type::tick, Anchor::end));

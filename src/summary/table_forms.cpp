@@ -100,7 +100,7 @@ std::string to_latex(const ResultTable& table) {
     for (const std::string& name : table.header) header.push_back(latex_text(name));
     std::string text = fmt::format(
         "% Needs \\usepackage{{booktabs}}.\n\\begin{{table*}}\n\\centering\n"
-        "\\caption{{{}}}\n\\label{{tab:{}}}\n\\begin{{tabular}}{{{}}}\n\\toprule\n{} "
+        "\\caption{{{}}}\n\\label{{tab:{}}}\n\\renewcommand{{\\arraystretch}}{{1.25}}\n\\begin{{tabular}}{{{}}}\n\\toprule\n{} "
         "\\\\\n\\midrule\n",
         latex_text(table.caption),
         table.name,
