@@ -22,19 +22,17 @@ namespace fs = std::filesystem;
 constexpr std::size_t n_integers = 3;  // step, replicate, walker
 
 /// Amplitude, then longitude and latitude in both frames, then the speed where it is one.
-void append_vector(const Chain& chain,
+void append_vector(const std::array<Eigen::Matrix3d, 2>& to_galactic_and_icrs,
                    const VectorParameter& vector,
                    const double* row,
                    std::vector<double>& cells) {
-    static const double undefined = std::numeric_limits<double>::quiet_NaN();
+    constexpr double undefined = std::numeric_limits<double>::quiet_NaN();
     const Eigen::Vector3d value(
         row[vector.first], row[vector.first + 1], row[vector.first + 2]);
     cells.push_back(value.norm());
-    for (const Frame frame : {Frame::galactic, Frame::icrs}) {
-        const bool has_direction = !value.isZero(0.0);
-        const LonLat place = has_direction
-                                 ? lon_lat_of(rotation(chain.counts.frame, frame) * value)
-                                 : LonLat{undefined, undefined};
+    for (const Eigen::Matrix3d& turn : to_galactic_and_icrs) {
+        const LonLat place =
+            value.isZero(0.0) ? LonLat{undefined, undefined} : lon_lat_of(turn * value);
         cells.push_back(place.lon_deg);
         cells.push_back(place.lat_deg);
     }
@@ -50,6 +48,8 @@ struct ExportRow {
 template <class Take>
 std::int64_t for_each_row(const Chain& chain, int thin, const Take& take) {
     const Draws& draws = chain.draws;
+    const std::array turns{rotation(chain.counts.frame, Frame::galactic),
+                           rotation(chain.counts.frame, Frame::icrs)};
     std::int64_t n = 0;
     ExportRow row;
     for (Eigen::Index stored = 0; stored < draws.n_rows; stored += thin)
@@ -65,7 +65,7 @@ std::int64_t for_each_row(const Chain& chain, int thin, const Take& take) {
                 row.real = {draws.log_posterior[place], draws.log_likelihood[place]};
                 row.real.insert(row.real.end(), values, values + draws.n_parameters);
                 for (const VectorParameter& vector : chain.vectors)
-                    append_vector(chain, vector, values, row.real);
+                    append_vector(turns, vector, values, row.real);
                 take(row);
                 ++n;
             }
@@ -129,10 +129,6 @@ std::int64_t export_fits(const Chain& chain, const fs::path& path, int thin) {
     writer.close();
     return written;
 }
-
-}  // namespace
-
-namespace {
 
 /// A unit as FITS writes it (FITS Standard 4.0, section 4.3); the speed of light is none.
 std::string fits_unit(const std::string& unit) {

@@ -47,7 +47,6 @@ class PriorCurve {
 /// One panel's worth.
 struct Panel {
     Scalar scalar;
-    LineDensity density;
     PriorCurve prior;
     std::optional<double> reference;  ///< speed of the CMB prior
 };
@@ -101,11 +100,11 @@ void draw_panel(const FigureContext& context, Drawing& drawing, const Panel& pan
     box.top += 1.5 * type::note;
     const Interval range = range_of(panel);
     const Scale across{range[0], range[1], box.left, box.right};
-    const Scale up{0.0, 1.06 * panel.density.peak(), box.bottom, box.top};
+    const Scale up{0.0, 1.06 * panel.scalar.density.peak(), box.bottom, box.top};
     const Colour colour = palette::series(scalar.series);
     Clip clip{Drawing::edge_of({box.left, box.top - 2.0, box.right, box.bottom}), {}};
     const auto area = [&](const Interval& interval) {
-        return area_under(panel.density, interval, across, up);
+        return area_under(panel.scalar.density, interval, across, up);
     };
     clip.content.push_back(
         Shape{{area(scalar.estimate.interval95)}, palette::fill95(scalar.series)});
@@ -116,9 +115,9 @@ void draw_panel(const FigureContext& context, Drawing& drawing, const Panel& pan
         const double x = range[0] + (range[1] - range[0]) * step / 160.0;
         prior.point.push_back({across.at(x), up.at(std::min(panel.prior.at(x), 2.0 * up.hi))});
     }
-    for (std::size_t node = 0; node < panel.density.place.size(); ++node)
-        curve.point.push_back(
-            {across.at(panel.density.place[node]), up.at(panel.density.density[node])});
+    for (std::size_t node = 0; node < panel.scalar.density.place.size(); ++node)
+        curve.point.push_back({across.at(panel.scalar.density.place[node]),
+                               up.at(panel.scalar.density.density[node])});
     clip.content.push_back(
         Shape{{prior}, std::nullopt, Stroke{0.9, palette::prior(), {1.5, 1.5}}});
     clip.content.push_back(Shape{{curve}, std::nullopt, Stroke{rule::curve, colour}});
@@ -126,7 +125,7 @@ void draw_panel(const FigureContext& context, Drawing& drawing, const Panel& pan
     if (!scalar.is_one_sided) {
         const double x = across.at(scalar.estimate.median);
         drawing.line({x, box.bottom},
-                     {x, up.at(panel.density.at(scalar.estimate.median))},
+                     {x, up.at(panel.scalar.density.at(scalar.estimate.median))},
                      {1.0, palette::paper()});
     }
     if (panel.reference)
@@ -145,7 +144,6 @@ std::vector<Panel> panels_of(const FigureContext& context) {
         if (!series.parameter->amplitude_free) continue;
         Scalar scalar = amplitude_scalar(context, series);
         if (!(scalar.estimate.sd > 0.0)) continue;
-        LineDensity density = scalar.density();
         PriorCurve prior(context.source.space.vector_prior(series.index),
                          series.index,
                          scalar.scale,
@@ -153,7 +151,7 @@ std::vector<Panel> panels_of(const FigureContext& context) {
         std::optional<double> reference;
         if (series.is_velocity())
             reference = context.source.cmb_velocity.norm() * speed_of_light_km_s;
-        panels.push_back({std::move(scalar), std::move(density), std::move(prior), reference});
+        panels.push_back({std::move(scalar), std::move(prior), reference});
     }
     return panels;
 }
@@ -163,12 +161,12 @@ std::string csv_of(const std::vector<Panel>& panels) {
     for (const Panel& panel : panels) {
         const auto add = [&](const char* what, double x) {
             csv.text(panel.scalar.name).text(panel.scalar.unit).text(what).number(x);
-            csv.number(panel.density.at(x)).number(panel.prior.at(x));
+            csv.number(panel.scalar.density.at(x)).number(panel.prior.at(x));
             csv.end_row();
         };
         for (const Mark& mark : marks_of(panel.scalar)) add(mark.name, mark.value);
         if (panel.reference) add("CMB", *panel.reference);
-        for (const double x : panel.density.place) add("curve", x);
+        for (const double x : panel.scalar.density.place) add("curve", x);
     }
     return csv.str();
 }
@@ -206,8 +204,7 @@ std::vector<Sheet> amplitude_sheets(const FigureContext& context) {
     sheet.alternative = fmt::format("Posterior densities: {}.", fmt::join(words, "; "));
     sheet.reading_aid =
         "Posterior density of each amplitude with its 68 % and 95 % intervals; dotted, what "
-        "the "
-        "prior alone says: where the two look alike, the data have said little.";
+        "the prior alone says: where the two look alike, the data have said little.";
     sheet.csv = csv_of(panels);
     return {end_sheet(context, std::move(sheet), bottom)};
 }

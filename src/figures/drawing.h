@@ -37,6 +37,13 @@ struct Polyline {
     bool closed = false;
 };
 
+/// The area between two lines of points, from left to right both.
+inline Polyline area_between(const std::vector<Point>& upper, const std::vector<Point>& lower) {
+    Polyline area{upper, true};
+    area.point.insert(area.point.end(), lower.rbegin(), lower.rend());
+    return area;
+}
+
 struct Stroke {
     double width = 0.8;
     Colour colour = palette::ink();

@@ -253,8 +253,7 @@ std::vector<Sheet> hypothesis_sheets(const FigureContext& context) {
     sheet.reading_aid =
         "The further right, the more the counts speak against a hypothesis; shades grade it "
         "(Kass & Raftery 1995). A stroke in another shade than its circle: the verdict hangs "
-        "on "
-        "that prior's width. Strokes of the best hypothesis move the margins of all others.";
+        "on that prior's width. Strokes of the best hypothesis move the margins of all others.";
     sheet.csv = csv_of(rows);
     return {end_sheet(context, std::move(sheet), bottom)};
 }

@@ -139,7 +139,7 @@ class JointPage {
         const Scalar& scalar = scalars_[row];
         const Box box = box_at(row, 0);
         const Scale up = upwards(row, box);
-        const LineDensity density = scalar.density();
+        const LineDensity& density = scalar.density;
         const Scale out{0.0, 1.08 * density.peak(), box.left, box.right};
         const auto turned = [&](const Interval& ends) {
             Polyline area{{}, true};
@@ -259,7 +259,7 @@ void add_numbers(CsvText& csv, const Scalar& scalar) {
         csv.number(value).number(density);
         csv.end_row();
     };
-    const LineDensity density = scalar.density();
+    const LineDensity& density = scalar.density;
     for (const Mark& mark : marks_of(scalar))
         add(mark.name, mark.value, density.at(mark.value));
     for (std::size_t node = 0; node < density.place.size(); ++node)

@@ -99,12 +99,15 @@ double expected_in(const BinTerm& term,
     return sum * solid_angle;
 }
 
-Profile profile_of(const FigureContext& context, const BinTerm& term, const Direction& apex) {
+/// @param mean  the mean row of the chain
+Profile profile_of(const FigureContext& context,
+                   const BinTerm& term,
+                   const Eigen::VectorXd& mean,
+                   const Direction& apex) {
     const Counts& counts = context.source.chain.counts;
     const BinCounts& bin = counts.surveys[term.survey].bins[term.bin];
     const Footprint& footprint = counts.surveys[term.survey].footprints[bin.footprint];
     const Pixelisation grid(counts.nside);
-    const Eigen::VectorXd mean = mean_row(context.source.chain);
     const auto places = places_by_angle(footprint, grid, apex);
     double total = 0.0, before = 0.0;
     for (const double exposure : footprint.exposure) total += exposure;
@@ -200,20 +203,17 @@ Interval range_of(const Profile& profile) {
 
 void draw_bands(
     Clip& clip, const Profile& profile, const Scale& across, const Scale& up, Colour colour) {
-    const auto band = [&](auto ends) {
-        Polyline area{{}, true};
-        for (const Ring& ring : profile.rings)
-            area.point.push_back(
-                {across.at(ring.angle_deg), up.at(density_of(ring, ends(ring)[1]))});
-        for (auto ring = profile.rings.rbegin(); ring != profile.rings.rend(); ++ring)
-            area.point.push_back(
-                {across.at(ring->angle_deg), up.at(density_of(*ring, ends(*ring)[0]))});
-        return area;
+    const auto band = [&](Interval Ring::*ends) {
+        std::vector<Point> lower, upper;
+        for (const Ring& ring : profile.rings) {
+            const double x = across.at(ring.angle_deg);
+            lower.push_back({x, up.at(density_of(ring, (ring.*ends)[0]))});
+            upper.push_back({x, up.at(density_of(ring, (ring.*ends)[1]))});
+        }
+        return area_between(upper, lower);
     };
-    clip.content.push_back(
-        Shape{{band([](const Ring& r) { return r.band95; })}, colour.with_alpha(0.20)});
-    clip.content.push_back(
-        Shape{{band([](const Ring& r) { return r.band68; })}, colour.with_alpha(0.34)});
+    clip.content.push_back(Shape{{band(&Ring::band95)}, colour.with_alpha(0.20)});
+    clip.content.push_back(Shape{{band(&Ring::band68)}, colour.with_alpha(0.34)});
     Polyline expected;
     for (const Ring& ring : profile.rings)
         expected.point.push_back(
@@ -314,9 +314,10 @@ Sheet profile_sheet(const FigureContext& context,
     const std::string& name = context.source.chain.counts.surveys[survey].name;
     std::vector<Profile> profiles;
     const auto& terms = context.source.space.terms();
+    const Eigen::VectorXd mean = mean_row(context.source.chain.draws);
     for (std::size_t index = 0; index < terms.size(); ++index) {
         if (terms[index].survey != survey) continue;
-        profiles.push_back(profile_of(context, terms[index], apex));
+        profiles.push_back(profile_of(context, terms[index], mean, apex));
         predict(context, profiles.back(), index);
     }
     auto [sheet, top] = begin_sheet(
@@ -352,8 +353,7 @@ Sheet profile_sheet(const FigureContext& context,
         "Mean counts of {} in rings about {}. {}.", name, apex_words, fmt::join(words, "; "));
     sheet.reading_aid =
         "Counts in rings of equal exposed area about the apex; about two circles in three "
-        "should "
-        "lie inside the darker band.";
+        "should lie inside the darker band.";
     sheet.csv = csv_of(profiles);
     return end_sheet(context, std::move(sheet), bottom);
 }

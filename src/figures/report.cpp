@@ -13,6 +13,7 @@
 #include "figures/axis.h"
 #include "figures/backends.h"
 #include "figures/sky_figures.h"
+#include "summary/counted_words.h"
 #include "summary/rounding.h"
 
 namespace deviascope {
@@ -117,17 +118,10 @@ std::string intrinsic_sentence(const Summary& summary) {
 }
 
 std::string question(const Summary& summary) {
-    std::int64_t sources = 0;
-    for (const BinSummary& bin : summary.bins) sources += bin.sources;
     return fmt::format(
         "How fast, and where to, does the observer move, and is there an intrinsic dipole "
-        "beyond "
-        "that motion? Asked of {} sources in {} {} of {} {} ({}).",
-        grouped(sources),
-        summary.bins.size(),
-        summary.bins.size() == 1 ? "bin" : "bins",
-        summary.survey_names.size(),
-        summary.survey_names.size() == 1 ? "survey" : "surveys",
+        "beyond that motion? Asked of {} ({}).",
+        counted_words(summary),
         fmt::join(summary.survey_names, ", "));
 }
 
@@ -138,8 +132,7 @@ std::string warnings_block(const std::vector<std::string>& warnings) {
         items += fmt::format("<li>{}</li>\n", escaped(warning));
     return fmt::format(
         "<section class=\"caution\" aria-labelledby=\"warnings\">\n<h2 id=\"warnings\">{} "
-        "before "
-        "you believe it</h2>\n<ul>\n{}</ul>\n</section>\n",
+        "before you believe it</h2>\n<ul>\n{}</ul>\n</section>\n",
         warnings.size() == 1 ? "One warning" : fmt::format("{} warnings", warnings.size()),
         items);
 }

@@ -24,7 +24,7 @@ double furthest(const FigureContext& context, std::size_t vector) {
 /// A density that stands high at 0: zero is not excluded, and no lower end can be quoted.
 bool is_piled_up_at_zero(const Scalar& scalar) {
     if (!scalar.support.lowest || *scalar.support.lowest != 0.0) return false;
-    const LineDensity density = scalar.density();
+    const LineDensity& density = scalar.density;
     // exp(-2): the height of a Gaussian at its 95.45 % interval's end.
     return !density.place.empty() && density.place.front() == 0.0 &&
            density.density.front() > std::exp(-2.0) * density.peak();
@@ -35,6 +35,7 @@ void finish(Scalar& scalar, const FigureContext& context) {
     scalar.estimate = estimate_of(scalar.values);
     scalar.effective = effective_values(
         scalar.name, context.source.summary.sampling.scalars, context.source.chain.draws);
+    scalar.density = line_density(scalar.values, scalar.effective, scalar.support);
     scalar.is_one_sided = is_piled_up_at_zero(scalar);
     if (!scalar.is_one_sided) return;
     std::vector<double> sorted = scalar.values;

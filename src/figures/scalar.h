@@ -21,6 +21,7 @@ struct Scalar {
     std::vector<double> values;  ///< scaled; in the order of rows_of
     Support support;             ///< scaled
     ScalarEstimate estimate;     ///< scaled; intervals of one-sided ones begin at 0
+    LineDensity density;         ///< scaled
     double effective = 0.0;      ///< independent draws
     std::size_t series = 0;      ///< colour
     bool is_one_sided = false;   ///< piled up against 0: an upper limit is what it says
@@ -29,7 +30,6 @@ struct Scalar {
     Line value_text() const;
     /// The same in plain words with its unit.
     std::string value_words() const;
-    LineDensity density() const { return line_density(values, effective, support); }
 };
 
 /// The amplitude of a vector: the velocity's in km/s, an intrinsic dipole's in 10^-3.

@@ -5,8 +5,6 @@
 
 #include <cmath>
 
-#include "deviascope/summary/draw_values.h"
-
 namespace deviascope {
 namespace {
 
@@ -89,10 +87,6 @@ CsvText& CsvText::number(double cell) {
 void CsvText::end_row() {
     text_ += '\n';
     is_first_ = true;
-}
-
-Eigen::VectorXd mean_row(const Chain& chain) {
-    return rows_of(chain.draws).colwise().mean().transpose();
 }
 
 }  // namespace deviascope

@@ -70,9 +70,6 @@ class CsvText {
     bool is_first_ = true;
 };
 
-/// The mean row of the chain.
-Eigen::VectorXd mean_row(const Chain& chain);
-
 // One function a figure; a figure that has nothing to show makes no sheet.
 std::vector<Sheet> direction_sheets(const FigureContext& context);
 std::vector<Sheet> residual_sheets(const FigureContext& context);

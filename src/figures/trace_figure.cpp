@@ -185,18 +185,16 @@ void draw_spreads(Clip& clip,
                   const Scale& up) {
     if (spreads.size() < 2) return;
     const Colour colour = palette::series(series);
-    const auto band = [&](auto ends) {
-        Polyline area{{}, true};
-        for (const Spread& one : spreads)
-            area.point.push_back({across.at(one.step), up.at(ends(one)[1])});
-        for (auto one = spreads.rbegin(); one != spreads.rend(); ++one)
-            area.point.push_back({across.at(one->step), up.at(ends(*one)[0])});
-        return area;
+    const auto band = [&](Interval Spread::*ends) {
+        std::vector<Point> lower, upper;
+        for (const Spread& one : spreads) {
+            lower.push_back({across.at(one.step), up.at((one.*ends)[0])});
+            upper.push_back({across.at(one.step), up.at((one.*ends)[1])});
+        }
+        return area_between(upper, lower);
     };
-    clip.content.push_back(
-        Shape{{band([](const Spread& s) { return s.band95; })}, colour.with_alpha(0.18)});
-    clip.content.push_back(
-        Shape{{band([](const Spread& s) { return s.band68; })}, colour.with_alpha(0.30)});
+    clip.content.push_back(Shape{{band(&Spread::band95)}, colour.with_alpha(0.18)});
+    clip.content.push_back(Shape{{band(&Spread::band68)}, colour.with_alpha(0.30)});
     Shape walkers{{}, std::nullopt, Stroke{0.4, palette::grey_text().with_alpha(0.7)}};
     for (std::size_t which = 0; which < n_walkers_shown; ++which) {
         Polyline line;
@@ -318,8 +316,8 @@ std::vector<Sheet> trace_sheets(const FigureContext& context) {
         number_or_dash(sampling.autocorrelation_steps_max, 1));
     sheet.reading_aid =
         "Median over all walkers with the bands that hold 68 % and 95 % of them, and four "
-        "single "
-        "walkers; shaded: warm-up, discarded. Level bands and R-hat near 1 are what one wants.";
+        "single walkers; shaded: warm-up, discarded. Level bands and R-hat near 1 are what one "
+        "wants.";
     sheet.csv = csv_of(traces);
     return {end_sheet(context, std::move(sheet), bottom)};
 }

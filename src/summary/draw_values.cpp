@@ -34,6 +34,10 @@ std::vector<double> column_of(const DrawRows& rows, Eigen::Index parameter) {
     return column;
 }
 
+Eigen::VectorXd mean_row(const Draws& draws) {
+    return rows_of(draws).colwise().mean().transpose();
+}
+
 std::vector<double> amplitudes_of(const DrawRows& rows, Eigen::Index first) {
     std::vector<double> amplitude(static_cast<std::size_t>(rows.rows()));
     Eigen::Map<Eigen::VectorXd>(amplitude.data(), rows.rows()) =

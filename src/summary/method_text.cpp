@@ -7,13 +7,10 @@
 
 #include "deviascope/core/grouped_number.h"
 #include "deviascope/summary/result_tables.h"
+#include "summary/counted_words.h"
 
 namespace deviascope {
 namespace {
-
-std::string count_of(std::size_t n, const std::string& one, const std::string& many) {
-    return fmt::format("{} {}", n, n == 1 ? one : many);
-}
 
 /// Digits apart by thin blanks.
 std::string number(std::int64_t value) {
@@ -24,12 +21,10 @@ std::string number(std::int64_t value) {
 }
 
 std::string data_sentence(const Summary& summary, const Chain& chain) {
-    std::int64_t sources = 0;
-    for (const BinSummary& bin : summary.bins) sources += bin.sources;
     return fmt::format(
         "We count ${}$ sources in {} of {} ({}) in HEALPix pixels \\cite{{gorski2005}} of "
         "$N_\\mathrm{{side}} = {}$, in the {} frame.",
-        number(sources),
+        number(total_sources(summary)),
         count_of(summary.bins.size(), "bin", "bins"),
         count_of(summary.survey_names.size(), "survey", "surveys"),
         latex_text(fmt::format("{}", fmt::join(summary.survey_names, ", "))),

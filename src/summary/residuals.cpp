@@ -35,7 +35,7 @@ ResidualMap residual_map(const Chain& chain,
     const auto n_cells = static_cast<std::size_t>(coarse.n_pixels());
     ResidualMap map{nside, std::vector<double>(n_cells), std::vector<double>(n_cells), {}};
     std::vector<double> variance(n_cells);
-    const Eigen::VectorXd mean = rows_of(chain.draws).colwise().mean().transpose();
+    const Eigen::VectorXd mean = mean_row(chain.draws);
     for (const BinTerm& term : space.terms()) {
         if (term.survey != survey) continue;
         const BinCounts& bin = chain.counts.surveys[survey].bins[term.bin];

@@ -7,6 +7,7 @@
 #include "deviascope/core/grouped_number.h"
 #include "deviascope/core/physical_constants.h"
 #include "deviascope/summary/summary.h"
+#include "summary/counted_words.h"
 #include "summary/rounding.h"
 #include "summary/text_table.h"
 
@@ -18,22 +19,15 @@ constexpr double thousandth = 1e-3;  // amplitudes are printed in this unit
 // ---- head and warnings ----
 
 std::string head(const Summary& summary) {
-    std::int64_t sources = 0;
-    for (const BinSummary& bin : summary.bins) sources += bin.sources;
     std::string text = heading(summary.job, '=');
     text += folded(
-        fmt::format(
-            "Observer's velocity and intrinsic dipole from {} sources in {} {} of {} {}; "
-            "{} draws of the posterior, vectors in the {} frame. Intervals are the "
-            "shortest and regions of sky the smallest that hold 68.27 % and 95.45 % of "
-            "the draws.",
-            grouped(sources),
-            summary.bins.size(),
-            summary.bins.size() == 1 ? "bin" : "bins",
-            summary.survey_names.size(),
-            summary.survey_names.size() == 1 ? "survey" : "surveys",
-            grouped(summary.sampling.n_draws),
-            name_of(summary.frame)),
+        fmt::format("Observer's velocity and intrinsic dipole from {}; "
+                    "{} draws of the posterior, vectors in the {} frame. Intervals are the "
+                    "shortest and regions of sky the smallest that hold 68.27 % and 95.45 % of "
+                    "the draws.",
+                    counted_words(summary),
+                    grouped(summary.sampling.n_draws),
+                    name_of(summary.frame)),
         0);
     return text;
 }

@@ -227,6 +227,14 @@ TEST_CASE("a dispersion is measured in one go, and kept with the chain", "[app]"
         const auto& faint = found["fit"][0];
         CHECK(faint["assumed_dispersion"].get<double>() ==
               Approx(faint["dispersion"].get<double>()).epsilon(0.01));
+        // And figures know it for a comparison of the same job, measured dispersion and all.
+        const ProcessResult drawn = test::run_process({DEVIASCOPE_PROGRAM,
+                                                       "figures",
+                                                       (folder / "out" / "chains.h5").string(),
+                                                       "--only",
+                                                       "hypotheses"});
+        CHECK(drawn.exit_code == 0);
+        CHECK(drawn.err == "");
     }
 }
 

@@ -21,6 +21,9 @@ DrawRows rows_of(const Draws& draws);
 
 std::vector<double> column_of(const DrawRows& rows, Eigen::Index parameter);
 
+/// The mean of all draws, parameter by parameter.
+Eigen::VectorXd mean_row(const Draws& draws);
+
 /// Lengths of the vector whose x component stands at `first`.
 std::vector<double> amplitudes_of(const DrawRows& rows, Eigen::Index first);
 
