@@ -146,7 +146,7 @@ Draws read_draws(const Reader& reader, const std::string& prefix, std::size_t n_
     const Shape rows{shape[0], shape[1], shape[2]};
     draws.log_posterior = reader.reals(prefix + "log_posterior", rows);
     draws.log_likelihood = reader.reals(prefix + "log_likelihood", rows);
-    draws.value = reader.reals(prefix + "draws", shape);
+    draws.value = reader.large_reals(prefix + "draws", shape);
     return draws;
 }
 

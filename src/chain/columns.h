@@ -27,8 +27,8 @@ void set_column(std::vector<Item>& items,
 }
 
 /// As a writer takes it; for numbers, where a list of texts is another thing.
-template <class Value>
-std::span<const Value> all_of(const std::vector<Value>& values) {
+template <class Value, class Allocator>
+std::span<const Value> all_of(const std::vector<Value, Allocator>& values) {
     return values;
 }
 

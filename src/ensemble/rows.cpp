@@ -32,6 +32,13 @@ void resize_rows(Draws& draws, Eigen::Index n_rows) {
     draws.log_likelihood.resize(n_points);
 }
 
+void reserve_rows(Draws& draws, Eigen::Index n_rows) {
+    const std::size_t n_points = static_cast<std::size_t>(n_rows) * points_per_row(draws);
+    draws.value.reserve(n_points * static_cast<std::size_t>(draws.n_parameters));
+    draws.log_posterior.reserve(n_points);
+    draws.log_likelihood.reserve(n_points);
+}
+
 std::size_t row_bytes(const Draws& draws) {
     return points_per_row(draws) * static_cast<std::size_t>(draws.n_parameters + 2) *
            sizeof(double);

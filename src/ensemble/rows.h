@@ -13,8 +13,10 @@ namespace deviascope {
 /// Draws without rows, for this target and ensemble.
 Draws empty_draws(const Target& target, const EnsembleShape& shape);
 
-/// Makes room for this many rows, or drops the rows behind them.
+/// Adds rows, unset until they are written, or drops those behind this many.
 void resize_rows(Draws& draws, Eigen::Index n_rows);
+/// Room for so many rows. Address space only: pages that are never written cost nothing.
+void reserve_rows(Draws& draws, Eigen::Index n_rows);
 
 /// Bytes of one row.
 std::size_t row_bytes(const Draws& draws);

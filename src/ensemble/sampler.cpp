@@ -228,6 +228,7 @@ class Run {
     void begin_storing() {
         last_look_ = {};
         began_storing_at_ = state_.step;
+        reserve_rows(pending_, std::min(most_rows_in_block(), rows_up_to(options_.max_steps)));
         is_state_stored_ = true;
         storing_since_ = delivered_at_ = seconds_now();
     }

@@ -10,7 +10,8 @@ namespace deviascope {
 namespace {
 
 /// Moves rows 1, 3, 5 … of a column of equal rows to the front.
-void keep_every_second(std::vector<double>& value, Eigen::Index n_rows) {
+template <class Array>
+void keep_every_second(Array& value, Eigen::Index n_rows) {
     const auto width = static_cast<std::ptrdiff_t>(value.size()) / n_rows;
     for (Eigen::Index row = 1; row < n_rows; row += 2)
         std::copy_n(value.begin() + row * width, width, value.begin() + row / 2 * width);
@@ -19,12 +20,7 @@ void keep_every_second(std::vector<double>& value, Eigen::Index n_rows) {
 }  // namespace
 
 WarmUpBuffer::WarmUpBuffer(Draws empty) : draws_(std::move(empty)) {
-    // Address space only: pages that are never written cost nothing.
-    const std::size_t n_points =
-        static_cast<std::size_t>(most_rows * draws_.n_replicates * draws_.n_walkers);
-    draws_.value.reserve(n_points * static_cast<std::size_t>(draws_.n_parameters));
-    draws_.log_posterior.reserve(n_points);
-    draws_.log_likelihood.reserve(n_points);
+    reserve_rows(draws_, most_rows);
 }
 
 std::vector<std::int64_t> WarmUpBuffer::steps() const {

@@ -34,6 +34,16 @@ class Keeper : public DrawSink {
     Draws draws;
 };
 
+/// Counts the bytes of the draws and lets them go: a run that stores nothing.
+class Counter : public DrawSink {
+  public:
+    void warm_up(const WarmUp&) override {}
+    void block(const Draws& rows, const EnsembleState&) override {
+        megabytes += static_cast<double>(rows.value.size() * sizeof(double)) / 1e6;
+    }
+    double megabytes = 0.0;
+};
+
 double wall_seconds() {
     using namespace std::chrono;
     return duration<double>(steady_clock::now().time_since_epoch()).count();
@@ -101,9 +111,9 @@ void compare_threads(const Posterior& target) {
     for (int pair = 0; pair < 7; ++pair) {
         double seconds[2] = {}, spinning[2] = {};
         for (const int threads : {1, 2}) {
-            Keeper keeper;
+            Counter counter;
             const double begin = wall_seconds();
-            sample(target, options_with({}, 50000, threads), keeper);
+            sample(target, options_with({}, 50000, threads), counter);
             seconds[threads - 1] = wall_seconds() - begin;
             spinning[threads - 1] = spin(threads);
         }
@@ -120,9 +130,9 @@ void compare_threads(const Posterior& target) {
 
 void measure_storing(const Posterior& target, const Counts& counts) {
     const EnsembleOptions options = options_with({}, 50000, 1);
-    Keeper keeper;
+    Counter counter;
     double begin = bench::cpu_seconds();
-    sample(target, options, keeper);
+    sample(target, options, counter);
     const double without = bench::cpu_seconds() - begin;
     const test::TemporaryFolder folder;
     begin = bench::cpu_seconds();
@@ -135,21 +145,25 @@ void measure_storing(const Posterior& target, const Counts& counts) {
     const Outcome outcome = sample(target, options, writer);
     writer.finish(outcome, "");
     const double with = bench::cpu_seconds() - begin;
-    const double megabytes = static_cast<double>(keeper.draws.value.size() * 8) / 1e6;
     fmt::print(
         "storing {:.1f} MB of draws: {:.0f} ms, {:.1f} ms a MB; sampling alone {:.2f} s\n",
-        megabytes,
+        counter.megabytes,
         1e3 * (with - without),
-        1e3 * (with - without) / megabytes,
+        1e3 * (with - without) / counter.megabytes,
         without);
 }
 
 }  // namespace
 
-int main() {
+/// All parts, or those named: kernels, threads, storing.
+int main(int argc, char** argv) {
+    const std::vector<std::string> named(argv + 1, argv + argc);
+    const auto wants = [&](const char* part) {
+        return named.empty() || std::find(named.begin(), named.end(), part) != named.end();
+    };
     const Counts counts = bench::make_counts(64, 1e7);
     const Posterior target(counts, bench::make_model(Engine::automatic));
-    compare_kernels(target);
-    compare_threads(target);
-    measure_storing(target, counts);
+    if (wants("kernels")) compare_kernels(target);
+    if (wants("threads")) compare_threads(target);
+    if (wants("storing")) measure_storing(target, counts);
 }

@@ -8,6 +8,7 @@
 #include <optional>
 #include <vector>
 
+#include "deviascope/core/large_array.h"
 #include "deviascope/core/target.h"
 #include "deviascope/ensemble/options.h"
 
@@ -22,7 +23,7 @@ struct KernelTally {
 /// Stored rows: `value` has rows x replicates x walkers x parameters, the last index fastest.
 struct Draws {
     Eigen::Index n_rows = 0, n_replicates = 0, n_walkers = 0, n_parameters = 0;
-    std::vector<double> value;
+    LargeArray value;
     std::vector<double> log_posterior;   ///< rows x replicates x walkers
     std::vector<double> log_likelihood;  ///< rows x replicates x walkers
 

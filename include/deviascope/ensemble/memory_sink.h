@@ -34,7 +34,8 @@ class MemorySink : public DrawSink {
     std::vector<EnsembleState> states;
 
   private:
-    static void append(std::vector<double>& to, const std::vector<double>& from) {
+    template <class Array>
+    static void append(Array& to, const Array& from) {
         to.insert(to.end(), from.begin(), from.end());
     }
 };

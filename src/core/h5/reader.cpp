@@ -219,13 +219,13 @@ void Reader::check_storage(const std::string& dataset, const Found& found) const
                     "the file is damaged; make it again");
 }
 
-template <class Value>
-std::vector<Value> Reader::entries(const std::string& dataset,
+template <class Array>
+Array Reader::entries(const std::string& dataset,
                                    const Shape& expected,
                                    Kind kind,
                                    bool last_only) const {
     check(dataset, expected, kind);
-    std::vector<Value> values(n_elements(expected) / (last_only ? expected[0] : 1));
+    Array values(n_elements(expected) / (last_only ? expected[0] : 1));
     if (values.empty()) return values;
     translated(
         [&] {
@@ -233,34 +233,38 @@ std::vector<Value> Reader::entries(const std::string& dataset,
             H5::DataSpace in_file = set.getSpace();
             const H5::DataSpace in_memory =
                 last_only ? select_last(in_file, expected) : in_file;
-            set.read(values.data(), memory_type(Value{}), in_memory, in_file);
+            set.read(values.data(), memory_type(typename Array::value_type{}), in_memory, in_file);
         },
         [&](const std::string& reason) { return failure(dataset, reason); });
     return values;
 }
 
 std::vector<double> Reader::reals(const std::string& dataset, const Shape& expected) const {
-    return entries<double>(dataset, expected, Kind::real64, false);
+    return entries<std::vector<double>>(dataset, expected, Kind::real64, false);
+}
+
+LargeArray Reader::large_reals(const std::string& dataset, const Shape& expected) const {
+    return entries<LargeArray>(dataset, expected, Kind::real64, false);
 }
 
 std::vector<std::int64_t> Reader::integers(const std::string& dataset,
                                            const Shape& expected) const {
-    return entries<std::int64_t>(dataset, expected, Kind::integer64, false);
+    return entries<std::vector<std::int64_t>>(dataset, expected, Kind::integer64, false);
 }
 
 std::vector<std::uint32_t> Reader::naturals(const std::string& dataset,
                                             const Shape& expected) const {
-    return entries<std::uint32_t>(dataset, expected, Kind::natural32, false);
+    return entries<std::vector<std::uint32_t>>(dataset, expected, Kind::natural32, false);
 }
 
 std::vector<double> Reader::last_reals(const std::string& dataset,
                                        const Shape& expected) const {
-    return entries<double>(dataset, expected, Kind::real64, true);
+    return entries<std::vector<double>>(dataset, expected, Kind::real64, true);
 }
 
 std::vector<std::int64_t> Reader::last_integers(const std::string& dataset,
                                                 const Shape& expected) const {
-    return entries<std::int64_t>(dataset, expected, Kind::integer64, true);
+    return entries<std::vector<std::int64_t>>(dataset, expected, Kind::integer64, true);
 }
 
 std::vector<std::string> Reader::texts(const std::string& dataset,

@@ -12,6 +12,7 @@
 
 #include "core/h5/dataset.h"
 #include "deviascope/core/error.h"
+#include "deviascope/core/large_array.h"
 
 namespace deviascope::h5 {
 
@@ -45,6 +46,7 @@ class Reader {
 
     /// Whole datasets of exactly that shape, in row order.
     std::vector<double> reals(const std::string& dataset, const Shape& expected) const;
+    LargeArray large_reals(const std::string& dataset, const Shape& expected) const;
     std::vector<std::int64_t> integers(const std::string& dataset, const Shape& expected) const;
     std::vector<std::uint32_t> naturals(const std::string& dataset,
                                         const Shape& expected) const;
@@ -85,8 +87,8 @@ class Reader {
 
   private:
     struct Parts;
-    template <class Value>
-    std::vector<Value> entries(const std::string& dataset,
+    template <class Array>
+    Array entries(const std::string& dataset,
                                const Shape& expected,
                                Kind kind,
                                bool last_only) const;
