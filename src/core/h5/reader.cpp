@@ -221,9 +221,9 @@ void Reader::check_storage(const std::string& dataset, const Found& found) const
 
 template <class Array>
 Array Reader::entries(const std::string& dataset,
-                                   const Shape& expected,
-                                   Kind kind,
-                                   bool last_only) const {
+                      const Shape& expected,
+                      Kind kind,
+                      bool last_only) const {
     check(dataset, expected, kind);
     Array values(n_elements(expected) / (last_only ? expected[0] : 1));
     if (values.empty()) return values;
@@ -233,7 +233,8 @@ Array Reader::entries(const std::string& dataset,
             H5::DataSpace in_file = set.getSpace();
             const H5::DataSpace in_memory =
                 last_only ? select_last(in_file, expected) : in_file;
-            set.read(values.data(), memory_type(typename Array::value_type{}), in_memory, in_file);
+            set.read(
+                values.data(), memory_type(typename Array::value_type{}), in_memory, in_file);
         },
         [&](const std::string& reason) { return failure(dataset, reason); });
     return values;

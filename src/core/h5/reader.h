@@ -89,9 +89,9 @@ class Reader {
     struct Parts;
     template <class Array>
     Array entries(const std::string& dataset,
-                               const Shape& expected,
-                               Kind kind,
-                               bool last_only) const;
+                  const Shape& expected,
+                  Kind kind,
+                  bool last_only) const;
     void check(const std::string& dataset, const Shape& expected, Kind kind) const;
     void check_storage(const std::string& dataset, const Found& found) const;
     bool is_of_kind(const std::string& object, int kind) const;
