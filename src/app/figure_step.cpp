@@ -85,8 +85,10 @@ void write_results(const ChainResults& results,
     write_figures(figures, folder / "figures");
     write_tables(summary, results.chain, folder / "tables");
     make_folder(folder / "sky");
-    write_sky_files({results.chain, results.summarised.space, summary, prepared.directions},
-                    folder / "sky");
+    write_by([&] {
+        write_sky_files({results.chain, results.summarised.space, summary, prepared.directions},
+                        folder / "sky");
+    });
     write_text(folder / "report.html", report_html(prepared.source, figures));
     terminal.say(fmt::format("Written: {} with figures/, tables/ and sky/ beside it.",
                              (folder / "report.html").string()));

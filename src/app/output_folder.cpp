@@ -133,6 +133,15 @@ void remove_results(const fs::path& folder, const std::vector<std::string>& file
     }
 }
 
+void write_by(const std::function<void()>& writer) {
+    try {
+        writer();
+    } catch (const OutputError& failure) {
+        const Message& what = failure.messages().front();
+        throw cannot_write(what.place, what.found);
+    }
+}
+
 void write_text(const fs::path& path, const std::string& text) {
     const fs::path temporary = path.string() + ".tmp";
     std::ofstream file(temporary, std::ios::binary);

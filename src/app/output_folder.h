@@ -3,6 +3,7 @@
 #pragma once
 
 #include <filesystem>
+#include <functional>
 #include <string>
 #include <vector>
 
@@ -47,7 +48,12 @@ std::vector<std::string> first_drawn_results(const std::filesystem::path& folder
 /// Removes those of `files` that are in the folder. Errors: OutputError.
 void remove_results(const std::filesystem::path& folder, const std::vector<std::string>& files);
 
-/// Writes a text file under a temporary name and puts it in place. Errors: OutputError.
+/// Writes a text file under a temporary name and puts it in place. Errors: OutputError, which
+/// says what becomes of the chain.
 void write_text(const std::filesystem::path& path, const std::string& text);
+
+/// Writes results by a function that knows of no chain, and makes its OutputErrors say what
+/// becomes of one.
+void write_by(const std::function<void()>& writer);
 
 }  // namespace deviascope

@@ -7,6 +7,7 @@
 #include <iterator>
 #include <stdexcept>
 #include <string>
+#include <type_traits>
 #include <vector>
 
 namespace deviascope::test {
@@ -19,11 +20,13 @@ inline std::string bytes_of(const std::filesystem::path& path) {
 }
 
 /// Whether two lists hold the same bits: tells -0 from 0, and one not-a-number from another.
-template <class Value>
-bool same_bits(const std::vector<Value>& first, const std::vector<Value>& second) {
+template <class List, class Other>
+bool same_bits(const List& first, const Other& second) {
+    static_assert(std::is_same_v<typename List::value_type, typename Other::value_type>);
     return first.size() == second.size() &&
            (first.empty() ||
-            std::memcmp(first.data(), second.data(), first.size() * sizeof(Value)) == 0);
+            std::memcmp(first.data(), second.data(), first.size() * sizeof(first.front())) ==
+                0);
 }
 
 }  // namespace deviascope::test

@@ -29,7 +29,7 @@ namespace {
 namespace fs = std::filesystem;
 
 Draws joined(Draws first, const Draws& second) {
-    const auto add = [](std::vector<double>& to, const std::vector<double>& from) {
+    const auto add = [](auto& to, const auto& from) {
         to.insert(to.end(), from.begin(), from.end());
     };
     first.n_rows += second.n_rows;

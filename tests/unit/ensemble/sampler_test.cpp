@@ -1,11 +1,10 @@
 // SPDX-License-Identifier: GPL-2.0-or-later
-#include "deviascope/ensemble/memory_sink.h"
 #include "deviascope/ensemble/sampler.h"
+#include "deviascope/ensemble/memory_sink.h"
 
 #include <algorithm>
 #include <array>
 #include <atomic>
-#include <bit>
 #include <catch2/catch.hpp>
 #include <chrono>
 #include <cmath>
@@ -16,6 +15,7 @@
 
 #include "deviascope/core/error.h"
 #include "deviascope/ensemble/diagnostics.h"
+#include "file_bytes.h"
 #include "test_targets.h"
 
 using namespace deviascope;
@@ -44,13 +44,6 @@ Result run(const Target& target, const EnsembleOptions& options) {
 }
 
 /// Bits, so that NaN equals NaN.
-bool same_bits(const std::vector<double>& a, const std::vector<double>& b) {
-    return a.size() == b.size() &&
-           std::equal(a.begin(), a.end(), b.begin(), [](double x, double y) {
-               return std::bit_cast<std::uint64_t>(x) == std::bit_cast<std::uint64_t>(y);
-           });
-}
-
 bool same_draws(const Draws& a, const Draws& b) {
     return a.n_rows == b.n_rows && same_bits(a.value, b.value) &&
            same_bits(a.log_posterior, b.log_posterior) &&
