@@ -35,8 +35,7 @@ StoredRun first_part(const MemorySink& sink, std::size_t n_blocks) {
         stored.draws.n_rows += sink.block_rows[block];
     const auto n_points = static_cast<std::size_t>(
         stored.draws.n_rows * stored.draws.n_replicates * stored.draws.n_walkers);
-    stored.draws.value.assign(n_points * static_cast<std::size_t>(stored.draws.n_parameters),
-                              0.0);
+    stored.draws.value.resize(n_points * static_cast<std::size_t>(stored.draws.n_parameters));
     stored.draws.log_posterior.resize(n_points);
     stored.draws.log_likelihood.resize(n_points);
     return stored;
