@@ -58,6 +58,21 @@ void Descriptor::write(std::string_view bytes, std::uint64_t offset) const {
     }
 }
 
+std::size_t Descriptor::read(std::span<char> to, std::uint64_t offset) const {
+    std::size_t n_read = 0;
+    while (n_read < to.size()) {
+        const ssize_t n_more = ::pread(number_,
+                                       to.data() + n_read,
+                                       to.size() - n_read,
+                                       static_cast<off_t>(offset + n_read));
+        if (n_more < 0 && errno == EINTR) continue;
+        if (n_more < 0) throw system_error(path_, "cannot be read");
+        if (n_more == 0) break;
+        n_read += static_cast<std::size_t>(n_more);
+    }
+    return n_read;
+}
+
 void Descriptor::sync() const {
     if (::fsync(number_) != 0) throw system_error(path_, "cannot be put on the disk");
 }

@@ -4,6 +4,7 @@
 
 #include <cstdint>
 #include <filesystem>
+#include <span>
 #include <string_view>
 
 #include "deviascope/core/error.h"
@@ -31,6 +32,8 @@ class Descriptor {
     std::uint64_t size() const;
     void resize(std::uint64_t n_bytes) const;
     void write(std::string_view bytes, std::uint64_t offset) const;
+    /// Reads bytes, fewer where the file ends. @returns how many
+    std::size_t read(std::span<char> to, std::uint64_t offset) const;
     /// Has the system put it on the disk.
     void sync() const;
     /// Some file systems report failed writes only here.

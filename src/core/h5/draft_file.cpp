@@ -1,30 +1,17 @@
 // SPDX-License-Identifier: GPL-2.0-or-later
 #include "core/h5/draft_file.h"
 
-#include <unistd.h>
-
 #include <algorithm>
-#include <cerrno>
 #include <cstring>
 #include <exception>
 #include <utility>
 
 namespace deviascope::h5 {
 
-Page read_page(const Descriptor& file, std::uint64_t number) {
-    Page page{};
-    std::size_t n_read = 0;
-    while (n_read < page_bytes) {
-        const ssize_t n_more = ::pread(file.number(),
-                                       page.data() + n_read,
-                                       page_bytes - n_read,
-                                       static_cast<off_t>(number * page_bytes + n_read));
-        if (n_more < 0 && errno == EINTR) continue;
-        if (n_more < 0) throw system_error(file.path(), "cannot be read");
-        if (n_more == 0) break;
-        n_read += static_cast<std::size_t>(n_more);
-    }
-    return page;
+void Draft::write_to(const Descriptor& file) const {
+    pages.write_to(file, length);
+    // The end of the file may be a hole or lie before what was there.
+    if (file.size() != length) file.resize(length);
 }
 
 struct DraftFile::Parts {
@@ -33,21 +20,18 @@ struct DraftFile::Parts {
     bool is_open = false;
     std::exception_ptr fault;  ///< the first that the library could not be told of
 
-    explicit Parts(const Descriptor* the_base) : base(the_base) {
+    Parts(const Descriptor* the_base, Pages room) : base(the_base) {
+        draft.pages = std::move(room);
+        draft.pages.clear();
         if (base != nullptr) draft.length = base->size();
-    }
-
-    Page of_base(std::uint64_t number) const {
-        return base == nullptr ? Page{} : read_page(*base, number);
     }
 
     void read(std::uint64_t offset, char* to, std::size_t n_bytes) const {
         on_pages(offset, n_bytes, [&](std::uint64_t number, std::size_t start, std::size_t n) {
-            const auto changed = draft.pages.find(number);
-            if (changed != draft.pages.end()) {
-                std::memcpy(to, changed->second.data() + start, n);
+            if (const char* changed = draft.pages.find(number)) {
+                std::memcpy(to, changed + start, n);
             } else {
-                std::memcpy(to, of_base(number).data() + start, n);
+                read_base(number * page_bytes + start, {to, n});
             }
             to += n;
         });
@@ -55,17 +39,24 @@ struct DraftFile::Parts {
 
     void write(std::uint64_t offset, const char* from, std::size_t n_bytes) {
         on_pages(offset, n_bytes, [&](std::uint64_t number, std::size_t start, std::size_t n) {
-            auto page = draft.pages.find(number);
-            if (page == draft.pages.end())
-                page = draft.pages.emplace(number, n == page_bytes ? Page{} : of_base(number))
-                           .first;
-            std::memcpy(page->second.data() + start, from, n);
+            char* page = draft.pages.find(number);
+            if (page == nullptr) {
+                page = draft.pages.add(number);
+                if (n < page_bytes) read_base(number * page_bytes, {page, page_bytes});
+            }
+            std::memcpy(page + start, from, n);
             from += n;
         });
         draft.length = std::max(draft.length, offset + n_bytes);
     }
 
   private:
+    /// Bytes beyond the end of the base are zero.
+    void read_base(std::uint64_t offset, std::span<char> to) const {
+        const std::size_t n_read = base == nullptr ? 0 : base->read(to, offset);
+        std::fill(to.begin() + static_cast<std::ptrdiff_t>(n_read), to.end(), '\0');
+    }
+
     /// Calls with (page, first byte in it, bytes of it) for each page of a range.
     template <class Call>
     static void on_pages(std::uint64_t offset, std::size_t n_bytes, Call&& call) {
@@ -204,8 +195,8 @@ H5::FileCreatPropList creation_without_times() {
 
 }  // namespace
 
-DraftFile::DraftFile(const Descriptor* base)
-    : parts_(std::make_unique<Parts>(base)),
+DraftFile::DraftFile(const Descriptor* base, Pages room)
+    : parts_(std::make_unique<Parts>(base, std::move(room))),
       file_(unused_name,
             base == nullptr ? H5F_ACC_TRUNC : H5F_ACC_RDWR,
             creation_without_times(),

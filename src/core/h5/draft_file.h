@@ -2,28 +2,25 @@
 // CORE (private): an HDF5 file that is changed in memory only
 #pragma once
 
-#include <array>
 #include <cstdint>
-#include <map>
 #include <memory>
 
 #include "core/descriptor.h"
+#include "core/h5/pages.h"
 #include "core/h5/session.h"
 
 namespace deviascope::h5 {
 
-inline constexpr std::uint64_t page_bytes = 4096;
-using Page = std::array<char, page_bytes>;
-
-/// How a file differs from the one it was made from: pages by number (offset / page_bytes), and
-/// the length. Bytes of a page beyond the length are zero or mean nothing.
+/// How a file differs from the one it was made from: pages, and the length. Bytes of a page
+/// beyond the length are zero or mean nothing.
 struct Draft {
-    std::map<std::uint64_t, Page> pages;
+    Pages pages;
     std::uint64_t length = 0;
-};
 
-/// Reads a page of a file; bytes beyond its end are zero. Errors: OutputError.
-Page read_page(const Descriptor& file, std::uint64_t number);
+    /// Makes these changes to that file, or makes a new one of an empty file. Errors:
+    /// OutputError.
+    void write_to(const Descriptor& file) const;
+};
 
 /// An HDF5 file of which the library sees the content on the disk, while what it writes stays
 /// in memory, page by page: memory and time go with what changes, not with the size of the
@@ -32,8 +29,9 @@ Page read_page(const Descriptor& file, std::uint64_t number);
 class DraftFile {
   public:
     /// @param base  the file to change, only read, and longer alive than this; null: a new file
+    /// @param room  memory to use, of pages that are wanted no more
     /// Errors: H5::Exception.
-    explicit DraftFile(const Descriptor* base);
+    explicit DraftFile(const Descriptor* base, Pages room = {});
     ~DraftFile();
     DraftFile(const DraftFile&) = delete;
     DraftFile& operator=(const DraftFile&) = delete;

@@ -6,11 +6,12 @@
 #include <unistd.h>
 
 #include <cerrno>
+#include <numeric>
 #include <string>
 #include <system_error>
 #include <utility>
 
-#include "core/h5/page_run.h"
+#include "core/h5/draft_file.h"
 
 namespace deviascope::h5 {
 
@@ -48,17 +49,19 @@ ExchangedFile::~ExchangedFile() {
 
 void ExchangedFile::change(const Edit& edit) {
     open_main();
-    Writer writer(path_, &main_);
+    Writer writer(path_, &main_, std::move(room_));
     edit(writer);
-    const Draft draft = writer.close();
+    Draft draft = writer.close();
     try {
         prepare_shadow();
         write_shadow(draft);
-        change_places(draft);
+        change_places();
     } catch (...) {
         drop_shadow();
         throw;
     }
+    stale_ = draft.pages.numbers();
+    room_ = std::move(draft.pages);
 }
 
 void ExchangedFile::open_main() {
@@ -77,28 +80,37 @@ void ExchangedFile::prepare_shadow() {
     shadow_ = Descriptor(shadow_path_, O_RDWR | O_CREAT | O_EXCL);
     shadow_.try_lock();
     const std::uint64_t n_pages = (main_.size() + page_bytes - 1) / page_bytes;
-    for (std::uint64_t page = 0; page < n_pages; ++page) stale_.insert(stale_.end(), page);
+    stale_.resize(n_pages);
+    std::iota(stale_.begin(), stale_.end(), std::uint64_t{0});
 }
 
 void ExchangedFile::write_shadow(const Draft& draft) {
     // What it once held beyond the end of the file must not come back when the file grows.
     if (shadow_.size() > main_.size()) shadow_.resize(main_.size());
-    PageRun run(shadow_, draft.length);
-    auto changed = draft.pages.begin();
-    const auto write_changed_before = [&](std::uint64_t end) {
-        for (; changed != draft.pages.end() && changed->first < end; ++changed)
-            run.add(changed->first, changed->second);
-    };
-    for (const std::uint64_t page : stale_) {
-        write_changed_before(page);
-        if (draft.pages.count(page) == 0) run.add(page, read_page(main_, page));
-    }
-    write_changed_before(UINT64_MAX);
-    run.end();
+    copy_stale_pages(draft);
+    draft.write_to(shadow_);
     shadow_.sync();
 }
 
-void ExchangedFile::change_places(const Draft& draft) {
+/// All in which the shadow lags, but for those about to change; neighbours go together.
+void ExchangedFile::copy_stale_pages(const Draft& draft) {
+    constexpr std::size_t most_together = 256;
+    copied_.resize(most_together * page_bytes);
+    std::erase_if(stale_,
+                  [&](std::uint64_t page) { return draft.pages.find(page) != nullptr; });
+    for (std::size_t done = 0; done < stale_.size();) {
+        std::size_t n = 1;
+        while (n < most_together && done + n < stale_.size() &&
+               stale_[done + n] == stale_[done] + n)
+            ++n;
+        const std::uint64_t offset = stale_[done] * page_bytes;
+        const std::size_t n_read = main_.read({copied_.data(), n * page_bytes}, offset);
+        shadow_.write({copied_.data(), n_read}, offset);
+        done += n;
+    }
+}
+
+void ExchangedFile::change_places() {
     shadow_.unlock();
     bool have_exchanged =
         ::renameat2(AT_FDCWD, shadow_path_.c_str(), AT_FDCWD, path_.c_str(), RENAME_EXCHANGE) ==
@@ -112,8 +124,6 @@ void ExchangedFile::change_places(const Draft& draft) {
         have_exchanged = is_kept && ::rename(old_path_.c_str(), shadow_path_.c_str()) == 0;
         if (!have_exchanged) remove_quietly(old_path_);
     }
-    stale_.clear();
-    for (const auto& [page, content] : draft.pages) stale_.insert(stale_.end(), page);
     main_ = std::exchange(shadow_, have_exchanged ? std::move(main_) : Descriptor());
     sync_folder_of(path_);
 }

@@ -5,7 +5,7 @@
 #include <cstdint>
 #include <filesystem>
 #include <functional>
-#include <set>
+#include <vector>
 
 #include "core/descriptor.h"
 #include "core/h5/draft_file.h"
@@ -46,12 +46,15 @@ class ExchangedFile {
     void open_main();
     void prepare_shadow();
     void write_shadow(const Draft& draft);
-    void change_places(const Draft& draft);
+    void copy_stale_pages(const Draft& draft);
+    void change_places();
     void drop_shadow() noexcept;
 
     std::filesystem::path path_, shadow_path_, old_path_;
     Descriptor main_, shadow_;
-    std::set<std::uint64_t> stale_;  ///< pages in which the shadow differs from the file
+    std::vector<std::uint64_t> stale_;  ///< pages in which the shadow lags, ascending
+    Pages room_;                        ///< of the last change, for the next
+    std::vector<char> copied_;
 };
 
 }  // namespace deviascope::h5

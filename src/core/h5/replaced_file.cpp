@@ -6,7 +6,7 @@
 
 #include <system_error>
 
-#include "core/h5/page_run.h"
+#include "core/h5/draft_file.h"
 
 namespace deviascope::h5 {
 
@@ -16,9 +16,7 @@ namespace {
 
 void write_durably(const fs::path& path, const Draft& draft) {
     Descriptor file(path, O_WRONLY | O_CREAT | O_TRUNC);
-    PageRun run(file, draft.length);
-    for (const auto& [number, page] : draft.pages) run.add(number, page);
-    run.end();
+    draft.write_to(file);
     file.sync();
     file.close();
 }

@@ -3,6 +3,7 @@
 
 #include <algorithm>
 #include <limits>
+#include <utility>
 
 #include "core/h5/draft_file.h"
 
@@ -126,9 +127,9 @@ auto Writer::attempt(const std::string& object, Call&& call) const {
                       [&](const std::string& reason) { return failure(object, reason); });
 }
 
-Writer::Writer(const std::filesystem::path& path, const Descriptor* base)
+Writer::Writer(const std::filesystem::path& path, const Descriptor* base, Pages room)
     : path_(path), parts_(std::make_unique<Parts>()) {
-    attempt("", [&] { parts_->draft = std::make_unique<DraftFile>(base); });
+    attempt("", [&] { parts_->draft = std::make_unique<DraftFile>(base, std::move(room)); });
 }
 
 Writer::~Writer() = default;

@@ -10,11 +10,8 @@
 #include <vector>
 
 #include "core/h5/dataset.h"
+#include "core/h5/pages.h"
 #include "deviascope/core/error.h"
-
-namespace deviascope {
-class Descriptor;
-}
 
 namespace deviascope::h5 {
 
@@ -38,7 +35,10 @@ class Writer {
 
     /// @param path  for messages only
     /// @param base  the file to change, longer alive than this; null: a new file
-    explicit Writer(const std::filesystem::path& path, const Descriptor* base = nullptr);
+    /// @param room  memory to use, of pages that are wanted no more
+    explicit Writer(const std::filesystem::path& path,
+                    const Descriptor* base = nullptr,
+                    Pages room = {});
     ~Writer();
     Writer(const Writer&) = delete;
     Writer& operator=(const Writer&) = delete;

@@ -1,11 +1,14 @@
 // SPDX-License-Identifier: GPL-2.0-or-later
+#include <fcntl.h>
 #include <hdf5.h>
 
+#include <algorithm>
 #include <catch2/catch.hpp>
 #include <limits>
 #include <numeric>
 
 #include "core/h5/identity.h"
+#include "core/h5/pages.h"
 #include "core/h5/reader.h"
 #include "core/h5/replaced_file.h"
 #include "core/h5/writer.h"
@@ -139,6 +142,54 @@ TEST_CASE("a growing HDF5 dataset keeps what it has, over many openings", "[core
     }
     CHECK(Reader(path).integers("/steps", {5}) == std::vector<std::int64_t>{1, 0, 6, 7, 33});
     CHECK(std::distance(fs::directory_iterator(folder.path()), {}) == 1);
+}
+
+TEST_CASE("changes of many pages are all kept, in a file that grows again and again",
+          "[core]") {
+    const TemporaryFolder folder;
+    const fs::path path = written(folder, [](Writer& writer) {
+        writer.growing_reals(
+            "/rows", {"rows", "1", "row x column"}, {1000}, {7, 1000}, Writer::Packing::plain);
+    });
+    std::vector<double> all;
+    h5::ExchangedFile file(path);
+    for (const std::size_t n_rows : {1, 400, 3, 700, 0, 500, 20}) {
+        std::vector<double> rows(n_rows * 1000);
+        std::iota(rows.begin(), rows.end(), static_cast<double>(all.size()));
+        all.insert(all.end(), rows.begin(), rows.end());
+        file.change([&](Writer& writer) { writer.append("/rows", all_of(rows)); });
+        CHECK(same_bits(Reader(path).reals("/rows", {all.size() / 1000, 1000}), all));
+    }
+}
+
+TEST_CASE("pages are found by number, written in order, and their memory is used again",
+          "[core]") {
+    const TemporaryFolder folder;
+    const Descriptor file(folder / "pages", O_RDWR | O_CREAT);
+    h5::Pages pages;
+    for (int round = 0; round < 2; ++round) {
+        // Not in order, neighbours in more than one slab, and one beyond the end.
+        std::vector<std::uint64_t> numbers(600);
+        std::iota(numbers.begin(), numbers.end(), std::uint64_t{2});
+        std::rotate(numbers.begin(), numbers.begin() + 250, numbers.end());
+        numbers.push_back(700);
+        for (const std::uint64_t number : numbers) {
+            CHECK(pages.find(number) == nullptr);
+            std::fill_n(
+                pages.add(number), h5::page_bytes, static_cast<char>(number % 97 + round));
+        }
+        CHECK(pages.numbers().size() == numbers.size());
+        const std::uint64_t length = 601 * h5::page_bytes + 5;
+        pages.write_to(file, length);
+        CHECK(file.size() == length);
+        std::vector<char> expected(length, 0), found(length + 9);
+        for (std::uint64_t at = 2 * h5::page_bytes; at < length; ++at)
+            expected[at] = static_cast<char>(at / h5::page_bytes % 97 + round);
+        found.resize(file.read(found, 0));
+        CHECK(found == expected);
+        pages.clear();
+        CHECK(pages.numbers().empty());
+    }
 }
 
 TEST_CASE("the same content gives the same bytes", "[core]") {

@@ -1,0 +1,41 @@
+// SPDX-License-Identifier: GPL-2.0-or-later
+// CORE (private to this folder): pages of a file, in memory
+#pragma once
+
+#include <cstdint>
+#include <map>
+#include <memory>
+#include <vector>
+
+#include "core/descriptor.h"
+
+namespace deviascope::h5 {
+
+inline constexpr std::uint64_t page_bytes = 4096;
+
+/// Pages of a file by number (offset / page_bytes). Pages added one after another mostly lie
+/// one after another in memory, and are then written in one call. Memory that was touched once
+/// is worth keeping: a fresh page costs the system more than copying into it.
+class Pages {
+  public:
+    /// Null where there is no such page.
+    char* find(std::uint64_t number) const;
+    /// A new page, unset; there must be none of that number.
+    char* add(std::uint64_t number);
+    /// Drops all pages and keeps their memory for others.
+    void clear();
+
+    /// Numbers of all pages, ascending.
+    std::vector<std::uint64_t> numbers() const;
+    /// Writes all pages to a file, but for what lies beyond `length` bytes. Errors:
+    /// OutputError.
+    void write_to(const Descriptor& file, std::uint64_t length) const;
+
+  private:
+    static constexpr std::size_t pages_a_slab = 256;
+
+    std::map<std::uint64_t, char*> by_number_;
+    std::vector<std::unique_ptr<char[]>> slabs_;
+};
+
+}  // namespace deviascope::h5
