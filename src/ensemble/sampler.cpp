@@ -8,6 +8,7 @@
 
 #include "deviascope/core/error.h"
 #include "deviascope/ensemble/monitored.h"
+#include "ensemble/delivery.h"
 #include "ensemble/looks.h"
 #include "ensemble/mover.h"
 #include "ensemble/pace.h"
@@ -124,7 +125,6 @@ class Run {
         std::optional<CoordinateGaussian> approximation,
         DrawSink& sink)
         : options_(options),
-          sink_(sink),
           shape_(shape_of(target, options)),
           target_(target),
           approximation_(std::move(approximation)),
@@ -133,7 +133,8 @@ class Run {
           watch_(options.threads),
           evaluations_at_start_(target.evaluations()),
           watched_(empty_watched()),
-          pending_(empty_draws(target, shape_)) {}
+          pending_(empty_draws(target, shape_)),
+          delivery_(sink, empty_draws(target, shape_)) {}
 
     Outcome from_the_start() {
         state_ = starting_state(target_, options_, shape_);
@@ -220,7 +221,7 @@ class Run {
         warm_up.store_every = outcome_.store_every;
         warm_up.approximation = approximation_;
         warm_up.warnings = target_.warnings();
-        sink_.warm_up(warm_up);
+        delivery_.warm_up(warm_up);
     }
 
     // ---- storing ----
@@ -228,7 +229,6 @@ class Run {
     void begin_storing() {
         last_look_ = {};
         began_storing_at_ = state_.step;
-        reserve_rows(pending_, std::min(most_rows_in_block(), rows_up_to(options_.max_steps)));
         is_state_stored_ = true;
         storing_since_ = delivered_at_ = seconds_now();
     }
@@ -244,6 +244,7 @@ class Run {
             }
             if (stop_is_requested()) return delivered(Outcome::End::interrupted);
             store_leg();
+            delivery_.look();
             if (is_block_due()) deliver();
             tell();
         }
@@ -254,6 +255,7 @@ class Run {
     Outcome::End delivered(Outcome::End end) {
         deliver();
         if (outcome_.n_rows > 0 && !is_state_stored_) store_block();
+        delivery_.settle();
         return end;
     }
 
@@ -279,13 +281,13 @@ class Run {
     std::int64_t most_rows_in_block() const {
         if (options_.rows_per_block > 0) return options_.rows_per_block;
         const auto most = static_cast<std::int64_t>(block_bytes / row_bytes(pending_));
-        const std::int64_t together = sink_.rows_together();
+        const std::int64_t together = delivery_.rows_together();
         return std::max<std::int64_t>(1, most < together ? most : most / together * together);
     }
 
     /// Rows that are missing to a number that is good to end a block on; 0 if it is reached.
     std::int64_t rows_to_good_end() const {
-        const std::int64_t together = sink_.rows_together();
+        const std::int64_t together = delivery_.rows_together();
         const std::int64_t odd = (outcome_.n_rows + pending_.n_rows) % together;
         return odd == 0 && pending_.n_rows > 0 ? 0 : together - odd;
     }
@@ -303,6 +305,7 @@ class Run {
         if (n_steps == 0) return;  // a block has come due this instant
         const std::int64_t delivered = outcome_.n_rows;
         const Eigen::Index first_new = pending_.n_rows;
+        if (first_new == 0) make_room();
         resize_rows(pending_, rows_up_to(state_.step + n_steps) - delivered);
         advance(n_steps, [&](Eigen::Index replicate, std::int64_t at) {
             if ((at - outcome_.discarded) % outcome_.store_every != 0) return;
@@ -313,6 +316,12 @@ class Run {
         watched_.append(pending_, first_new, pending_.n_rows, options_.threads);
     }
 
+    /// For a whole block, or for all that can come.
+    void make_room() {
+        const std::int64_t to_come = rows_up_to(options_.max_steps) - outcome_.n_rows;
+        reserve_rows(pending_, std::min(most_rows_in_block(), to_come));
+    }
+
     bool is_block_due() const {
         if (pending_.n_rows >= most_rows_in_block()) return true;
         return is_time_for_block() && rows_to_good_end() == 0;
@@ -321,7 +330,7 @@ class Run {
     bool is_time_for_block() const {
         return options_.rows_per_block == 0 &&
                seconds_now() - delivered_at_ >=
-                   std::max(seconds_per_block, blocks_apart * seconds_to_store_);
+                   std::max(seconds_per_block, blocks_apart * delivery_.seconds_to_store());
     }
 
     /// Where blocks end has no bearing on draws or decisions.
@@ -331,13 +340,10 @@ class Run {
     }
 
     void store_block() {
-        const double began = seconds_now();
         state_.evaluations = evaluations_so_far();
-        sink_.block(pending_, state_);
-        seconds_to_store_ = seconds_now() - began;
-        is_state_stored_ = true;
         outcome_.n_rows += pending_.n_rows;
-        resize_rows(pending_, 0);
+        delivery_.block(pending_, state_);
+        is_state_stored_ = true;
     }
 
     // ---- common to both ----
@@ -409,7 +415,6 @@ class Run {
     }
 
     const EnsembleOptions& options_;
-    DrawSink& sink_;
     EnsembleShape shape_;
     const Target& target_;
     std::optional<CoordinateGaussian> approximation_;
@@ -421,9 +426,10 @@ class Run {
     Pace pace_;
 
     EnsembleState state_;
-    Outcome outcome_;               ///< what is decided so far; n_rows: delivered
-    WatchedSeries watched_;         ///< of all stored rows
-    Draws pending_;                 ///< rows not yet delivered
+    Outcome outcome_;        ///< what is decided so far; n_rows: delivered
+    WatchedSeries watched_;  ///< of all stored rows
+    Draws pending_;          ///< rows not yet delivered
+    Delivery delivery_;
     bool is_state_stored_ = false;  ///< by the last block
 
     LookResult last_look_;  ///< for progress only, like the rest
@@ -431,7 +437,6 @@ class Run {
     std::int64_t began_storing_at_ = 0;
     double storing_since_ = 0.0;
     double delivered_at_ = 0.0;
-    double seconds_to_store_ = 0.0;  ///< the last block
 };
 
 }  // namespace

@@ -121,8 +121,7 @@ DEVIASCOPE_LANE Found search_one(double nside, double x, double y, double z) {
 
 }  // namespace
 
-// Clones are chosen before main, when GCC's thread sanitizer does not stand yet.
-#if defined(__x86_64__) && defined(__gnu_linux__) && !defined(__SANITIZE_THREAD__)
+#if defined(__x86_64__) && defined(__gnu_linux__) && !defined(DEVIASCOPE_ONE_INSTRUCTION_SET)
 __attribute__((target_clones("avx2", "default")))
 #endif
 void search(SearchBlock& block, int nside) {

@@ -32,7 +32,8 @@ class ChainLock {
 /// it was. When a call returns, its content is on the disk. The time of a call goes with what
 /// it stores, not with the size of the file. While it lives, `chains.h5.next` lies beside it.
 /// Errors: OutputError (path, step, reason; what is safe); the writer must then be given up.
-/// InternalError where sizes do not fit each other. Threads: main thread only.
+/// InternalError where sizes do not fit each other. Threads: any, but only one at a time may
+/// work on any HDF5 file.
 class ChainWriter : public DrawSink {
   public:
     /// Begins a new file. Errors: OutputError where it exists: a chain is never replaced here.

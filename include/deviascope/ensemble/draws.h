@@ -65,7 +65,8 @@ struct WarmUp {
     std::vector<std::string> warnings;  ///< of the target
 };
 
-/// Where draws go. Calls come from the main thread: warm_up once, then blocks in order.
+/// Where draws go. Calls come one at a time: warm_up once, then blocks in order, from whatever
+/// thread, while the sampler goes on.
 class DrawSink {
   public:
     virtual ~DrawSink() = default;

@@ -27,7 +27,7 @@ struct Outcome {
 /// (ter Braak 2006, Stat. Comput. 16, 239). Random numbers keyed (seed, moves; replicate,
 /// walker, step). Errors: UsageError (options), NumericalError (no finite starting point for a
 /// walker after 10,000 attempts; log density NaN: names the coordinates). Threads: main thread;
-/// works on `options.threads`. Same bits for any number.
+/// works on `options.threads`, and the sink on one more. Same bits for any number.
 Outcome sample(const Target& target, const EnsembleOptions& options, DrawSink& sink);
 
 /// What a run that did not come to its end has stored; enough to go on from.

@@ -12,7 +12,7 @@ namespace deviascope::h5 {
 namespace {
 
 std::string& words() {
-    static std::string kept;  // HDF5 is called from the main thread only
+    static std::string kept;  // HDF5 is called from one thread at a time
     return kept;
 }
 
