@@ -3,6 +3,8 @@
 // kernels; threads; and what storing costs. Everything in one run: read the ratios.
 #include <fmt/format.h>
 
+#include <time.h>
+
 #include <algorithm>
 #include <chrono>
 #include <thread>
@@ -128,52 +130,68 @@ void compare_threads(const Posterior& target) {
         bench::median(gains) / bench::median(ceilings));
 }
 
-/// Times another sink.
+double thread_seconds() {
+    timespec now{};
+    clock_gettime(CLOCK_THREAD_CPUTIME_ID, &now);
+    return static_cast<double>(now.tv_sec) + 1e-9 * static_cast<double>(now.tv_nsec);
+}
+
+/// Times another sink: seconds of a core, and of the clock.
 class Timed : public DrawSink {
   public:
     explicit Timed(DrawSink& sink) : sink_(sink) {}
     void warm_up(const WarmUp& warm_up) override { sink_.warm_up(warm_up); }
     void block(const Draws& rows, const EnsembleState& state) override {
-        const double wall_before = wall_seconds(), core_before = bench::cpu_seconds();
+        const double wall_before = wall_seconds(), core_before = thread_seconds();
         sink_.block(rows, state);
-        core_seconds += bench::cpu_seconds() - core_before;
+        core_seconds += thread_seconds() - core_before;
         seconds += wall_seconds() - wall_before;
         megabytes += static_cast<double>(rows.value.size() * sizeof(double)) / 1e6;
-        ++n_blocks;
     }
     std::int64_t rows_together() const override { return sink_.rows_together(); }
 
     double core_seconds = 0.0, seconds = 0.0, megabytes = 0.0;
-    int n_blocks = 0;
 
   private:
     DrawSink& sink_;
 };
 
-void measure_storing(const Posterior& target, const Counts& counts) {
-    const EnsembleOptions options = options_with({}, 400000, 1);
-    const test::TemporaryFolder folder;
-    ChainWriter writer(ChainLock(folder / "chains.h5"),
-                       {},
-                       target.parameters(),
-                       target.vectors(),
-                       counts,
-                       options);
-    Timed timed(writer);
-    const double begin = bench::cpu_seconds();
-    const Outcome outcome = sample(target, options, timed);
-    const double all = bench::cpu_seconds() - begin;
-    writer.finish(outcome, "");
+/// Runs that store and runs that do not, in turns.
+void measure_storing(const Posterior& target, const Counts& counts, int threads) {
+    const EnsembleOptions options = options_with({}, 400000, threads);
+    std::vector<double> costs, per_megabyte, waits;
+    double megabytes = 0.0;
+    for (int pair = 0; pair < 5; ++pair) {
+        Counter counter;
+        double begin = wall_seconds();
+        sample(target, options, counter);
+        const double without = wall_seconds() - begin;
+        const test::TemporaryFolder folder;
+        begin = wall_seconds();
+        ChainWriter writer(ChainLock(folder / "chains.h5"),
+                           {},
+                           target.parameters(),
+                           target.vectors(),
+                           counts,
+                           options);
+        Timed timed(writer);
+        const Outcome outcome = sample(target, options, timed);
+        writer.finish(outcome, "");
+        costs.push_back((wall_seconds() - begin) / without - 1.0);
+        megabytes = timed.megabytes;
+        per_megabyte.push_back(1e3 * timed.core_seconds / megabytes);
+        waits.push_back(1e3 * timed.seconds / megabytes);
+    }
     fmt::print(
-        "storing {:.0f} MB of draws in {} blocks: {:.1f} ms of a core and {:.1f} ms of time a "
-        "MB, "
-        "{:.1f} % of the {:.1f} core-seconds of the run\n",
-        timed.megabytes,
-        timed.n_blocks,
-        1e3 * timed.core_seconds / timed.megabytes,
-        1e3 * timed.seconds / timed.megabytes,
-        100.0 * timed.core_seconds / all,
-        all);
+        "storing {:.0f} MB of draws, {} thread{}: {:.1f} ms of a core and {:.1f} ms of time a "
+        "MB; "
+        "the run is {:.0f} % longer\n",
+        megabytes,
+        threads,
+        threads == 1 ? "" : "s",
+        bench::median(per_megabyte),
+        bench::median(waits),
+        100.0 * bench::median(costs));
 }
 
 }  // namespace
@@ -188,5 +206,6 @@ int main(int argc, char** argv) {
     const Posterior target(counts, bench::make_model(Engine::automatic));
     if (wants("kernels")) compare_kernels(target);
     if (wants("threads")) compare_threads(target);
-    if (wants("storing")) measure_storing(target, counts);
+    for (const int threads : {1, 2})
+        if (wants("storing")) measure_storing(target, counts, threads);
 }

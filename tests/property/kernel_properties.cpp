@@ -207,6 +207,26 @@ TEST_CASE("a velocity held by the bound of its prior is sampled right", "[model]
     check_same_distributions(stretched, mixed);
 }
 
+TEST_CASE("dipoles of many surveys far beyond their bounds are sampled right", "[model]") {
+    // Each is 0.02 long and held to 0.004, hundreds of its errors away: next to the bound the
+    // density is exponential, and of 21 coordinates hardly a draw of a Gaussian lies inside.
+    std::vector<synthetic::Survey> strong;
+    for (int s = 0; s < 7; ++s)
+        strong.push_back({"survey-" + std::to_string(s),
+                          {{"one", 1e7, 3.0}},
+                          {0.02 * std::cos(s), 0.02 * std::sin(s), 0.0}});
+    const Counts counts = synthetic::make_counts(8, {0.0, 0.0, 0.0}, strong, seed);
+    const Posterior target(
+        counts,
+        synthetic::make_model(
+            strong, {"none", FixedPrior{}}, {"short", UniformAmplitudePrior{0.004}}));
+    REQUIRE(target.n_coordinates() == 21);
+    const Sampled stretched = sample_with(target, stretch_alone, 1000);
+    const Sampled mixed = sample_with(target, all_kernels, 10000);
+    CHECK(mixed.outcome.end == Outcome::End::converged);
+    check_same_means(stretched, mixed);
+}
+
 TEST_CASE("a velocity known to 10^-7 of its own keeps its prior", "[model]") {
     // The prior of the CMB velocity (Planck 2018: 369.82 +- 0.11 km/s) beside weights of order
     // 10: coordinates span eight decades.

@@ -134,10 +134,6 @@ Writer::Writer(const std::filesystem::path& path, const Descriptor* base, Pages 
 
 Writer::~Writer() = default;
 
-bool Writer::has(const std::string& object) const {
-    return attempt(object, [&] { return parts_->file().nameExists(object); });
-}
-
 void Writer::group(const std::string& path, const std::string& meaning) {
     attempt(path, [&] {
         const hid_t list = checked(H5Pcreate(H5P_GROUP_CREATE), "H5Pcreate");

@@ -1,5 +1,6 @@
 // SPDX-License-Identifier: GPL-2.0-or-later
-// CORE (private): writing HDF5 files. One thread at a time; no object of the library leaves here.
+// CORE (private): writing HDF5 files. One thread at a time; no object of the library leaves
+// here.
 #pragma once
 
 #include <cstdint>
@@ -43,7 +44,6 @@ class Writer {
     Writer(const Writer&) = delete;
     Writer& operator=(const Writer&) = delete;
 
-    bool has(const std::string& object) const;
     /// A new group; its parent must be there.
     void group(const std::string& path, const std::string& meaning);
 

@@ -96,6 +96,25 @@ TEST_CASE("HDF5 columns of any number type arrive whole, in order and in chunks"
     }
 }
 
+TEST_CASE("an HDF5 column in pieces larger than the library keeps is read whole",
+          "[catalogue]") {
+    const TemporaryFolder folder;
+    constexpr std::size_t n = 700000, piece = 300000;  // of 2.4 MB, beyond the usual 1 MB
+    {
+        H5::H5File file((folder / "dunlin.h5").string(), H5F_ACC_TRUNC);
+        const H5::PredType number = H5::PredType::IEEE_F64LE;
+        add(file, "/S", number, number, counting(n, 0.5), piece);
+    }
+    const auto reader = open(folder, "", {"S"});
+    TableChunk chunk;
+    std::size_t row = 0, n_wrong = 0;
+    while (reader->next(chunk))
+        for (const double value : chunk.column[0])
+            n_wrong += value != static_cast<double>(row++) + 0.5;
+    CHECK(row == n);
+    CHECK(n_wrong == 0);
+}
+
 TEST_CASE("the table of an HDF5 file is the root group, or the only group in it",
           "[catalogue]") {
     const TemporaryFolder folder;

@@ -7,6 +7,7 @@
 #include <limits>
 #include <numeric>
 
+#include "core/h5/draft_file.h"
 #include "core/h5/identity.h"
 #include "core/h5/pages.h"
 #include "core/h5/reader.h"
@@ -190,6 +191,13 @@ TEST_CASE("pages are found by number, written in order, and their memory is used
         pages.clear();
         CHECK(pages.numbers().empty());
     }
+    // A change may end in a hole, or make the file shorter.
+    for (const std::uint64_t length : {std::uint64_t{9000000}, std::uint64_t{12}}) {
+        h5::Draft draft;
+        draft.length = length;
+        draft.write_to(file);
+        CHECK(file.size() == length);
+    }
 }
 
 TEST_CASE("the same content gives the same bytes", "[core]") {
@@ -232,6 +240,8 @@ TEST_CASE("a dataset of another rank, type or extent is refused with its path", 
                       Catch::Contains("/group/reals: extents 4 x 2; 2 x 4"));
     CHECK_THROWS_WITH(reader.reals("/group/integers", {3}),
                       Catch::Contains("holds 64-bit integer; 64-bit real is needed"));
+    CHECK_THROWS_WITH(reader.reals("/group/naturals", {2}),
+                      Catch::Contains("holds unsigned 32-bit integer; 64-bit real is needed"));
     CHECK_THROWS_WITH(reader.texts("/group/none", {3}),
                       Catch::Contains("/group/none: missing"));
     CHECK_THROWS_AS(reader.find("/group"), InputError);
@@ -298,6 +308,21 @@ TEST_CASE("what cannot be written is an output error with path and reason", "[co
         Catch::Contains("none/file.h5") && Catch::Contains("No such file or directory"));
     CHECK_THROWS_WITH(h5::write_file(folder.path(), fill), Catch::Contains("directory"));
     CHECK_THROWS_AS(h5::change_file(folder / "absent.h5", fill), OutputError);
+}
+
+TEST_CASE("a file that somebody removes or replaces is not written on", "[core]") {
+    const TemporaryFolder folder;
+    const fs::path path = written(folder, fill);
+    const h5::Edit edit = [](Writer& writer) {
+        writer.attribute("/", "step", std::int64_t{2});
+    };
+    h5::ExchangedFile file(path);
+    file.change(edit);
+    fs::copy_file(path, folder / "copy");
+    fs::rename(folder / "copy", path);
+    CHECK_THROWS_WITH(file.change(edit), Catch::Contains("was removed or replaced"));
+    fs::remove(path);
+    CHECK_THROWS_WITH(file.change(edit), Catch::Contains("was removed or replaced"));
 }
 
 TEST_CASE("a disk that fills up leaves the old file and no other, for any free space",

@@ -229,6 +229,25 @@ TEST_CASE("an empty bin is refused under a shape of 0 and counted under another"
     CHECK(std::isfinite(densities(sampled, at).posterior[0]));
 }
 
+TEST_CASE("counts of which no likelihood can be made are refused by name", "[model]") {
+    const std::vector<synthetic::Survey> surveys = {{"dunlin", {{"faint", 400, 3.0}}}};
+    const ModelOptions options = synthetic::make_model(
+        surveys, {"free", UniformVectorPrior{0.5}}, {"none", FixedPrior{}});
+    Counts counts = synthetic::make_counts(2, {0, 0, 0}, surveys, 65);
+    SECTION("too many sources for a pixel") {
+        counts.surveys[0].bins[0].count[7] = 2147483648U;
+        CHECK_THROWS_WITH(Posterior(counts, options),
+                          Catch::Contains("dunlin/faint: a pixel holds 2147483648 sources; at "
+                                          "most 2147483647 are allowed"));
+    }
+    SECTION("no pixel") {
+        counts.surveys[0].footprints[0] = {};
+        counts.surveys[0].bins[0].count.clear();
+        CHECK_THROWS_WITH(Posterior(counts, options),
+                          Catch::Contains("dunlin/faint: no pixel is kept"));
+    }
+}
+
 TEST_CASE("monopoles of extreme size are -inf or finite, never NaN", "[model]") {
     Case job;
     job.options.monopole.sampled = true;

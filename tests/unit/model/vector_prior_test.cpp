@@ -191,6 +191,41 @@ TEST_CASE("draws of a Gaussian have chi-squared distances and stay inside the wa
     for (const Eigen::Vector3d& draw : draws_of(wide, 45)) REQUIRE(draw.norm() < 1.0);
 }
 
+TEST_CASE(
+    "a Gaussian that hardly ever lies inside the wall says so instead of drawing for ever",
+    "[model]") {
+    const VectorPrior vast("vast",
+                           GaussianPrior{{0, 0, 0}, 1e12 * Eigen::Matrix3d::Identity()});
+    Stream stream(48, Purpose::test, 0, 0, 0);
+    CHECK_THROWS_WITH(vast.draw(stream),
+                      Catch::Contains("prior vast: none of 1000000 draws is shorter than 1"));
+}
+
+TEST_CASE("the change of a vector with its coordinates is that of differences", "[model]") {
+    const std::vector<VectorPrior> priors = {
+        VectorPrior("a", UniformVectorPrior{0.3}),
+        VectorPrior("b", UniformAmplitudePrior{0.3}),
+        VectorPrior("c", AxisPrior{Direction(0.6, 0.0, 0.8), 0.3}),
+        VectorPrior("d", slanted_gaussian()),
+        VectorPrior("e", FixedPrior{{0.1, 0.0, 0.0}})};
+    for (const VectorPrior& prior : priors) {
+        INFO(prior.kind_name());
+        const Eigen::VectorXd at =
+            Eigen::Vector3d(0.11, -0.07, 0.13).head(prior.n_coordinates());
+        const Eigen::MatrixXd jacobian = prior.jacobian_at(at);
+        REQUIRE(jacobian.rows() == 3);
+        REQUIRE(jacobian.cols() == prior.n_coordinates());
+        // Central differences of step h: an error of order h^2, and rounding / h.
+        constexpr double h = 1e-5;
+        for (Eigen::Index k = 0; k < at.size(); ++k) {
+            const Eigen::VectorXd step = h * Eigen::VectorXd::Unit(at.size(), k);
+            const Eigen::Vector3d difference =
+                (prior.vector_at(at + step) - prior.vector_at(at - step)) / (2.0 * h);
+            CHECK((jacobian.col(k) - difference).cwiseAbs().maxCoeff() < 1e-8);
+        }
+    }
+}
+
 TEST_CASE("median amplitudes are exact where they are closed", "[model]") {
     CHECK(VectorPrior("a", UniformVectorPrior{0.05}).median_amplitude(1) ==
           Approx(0.05 * std::pow(0.5, 1.0 / 3.0)).epsilon(1e-14));
