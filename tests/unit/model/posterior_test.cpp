@@ -340,6 +340,36 @@ TEST_CASE("starting points lie inside and are wider than the posterior", "[model
         CHECK(found(c, c) == Approx(expected(c, c)).epsilon(0.11));
 }
 
+TEST_CASE("where many dipoles lie far beyond their bounds, starting points lie next to them",
+          "[model]") {
+    // Each is 0.02 long and held to 0.004. Of a Gaussian of 21 coordinates hardly a draw lies
+    // inside all bounds.
+    std::vector<synthetic::Survey> surveys;
+    for (int s = 0; s < 7; ++s)
+        surveys.push_back({"survey-" + std::to_string(s),
+                           {{"one", 1e7, 3.0}},
+                           {0.02 * std::cos(s), 0.02 * std::sin(s), 0.0}});
+    const Counts counts = synthetic::make_counts(4, {0, 0, 0}, surveys, 73);
+    const Posterior target(
+        counts,
+        synthetic::make_model(
+            surveys, {"none", FixedPrior{}}, {"short", UniformAmplitudePrior{0.004}}));
+    REQUIRE(target.n_coordinates() == 21);
+    REQUIRE(target.approximation());
+    CHECK(target.approximation()->mean.allFinite());
+    CHECK(target.approximation()->factor.allFinite());
+    Eigen::MatrixXd starts(target.n_coordinates(), 100);
+    Eigen::MatrixXd rows(static_cast<Eigen::Index>(target.parameters().size()), starts.cols());
+    for (Eigen::Index w = 0; w < starts.cols(); ++w) {
+        Stream stream(74, Purpose::test, 0, static_cast<std::uint64_t>(w), 0);
+        target.draw_start(stream, starts.col(w));
+    }
+    CHECK(densities(target, starts).posterior.allFinite());
+    target.to_parameters(starts, rows);
+    for (Eigen::Index s = 0; s < 7; ++s)
+        CHECK(rows.middleRows(3 + 3 * s, 3).colwise().norm().minCoeff() > 0.5 * 0.004);
+}
+
 TEST_CASE("where the counts say little, starting points still lie inside the priors",
           "[model]") {
     std::vector<synthetic::Survey> surveys = {
