@@ -1,5 +1,5 @@
 // SPDX-License-Identifier: GPL-2.0-or-later
-// CORE (private): reading HDF5 files. One thread at a time; no object of the library leaves here.
+// CORE (private): reading HDF5 files. One thread at a time; no object of the library leaves it.
 #pragma once
 
 #include <cstdint>
