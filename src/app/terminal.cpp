@@ -25,6 +25,7 @@ Terminal::~Terminal() {
 
 void Terminal::say(const std::string& text) {
     if (quiet_) return;
+    const std::lock_guard lock(one_at_a_time_);
     wipe();
     std::fprintf(stdout, "%s\n", text.c_str());
     output_failure();
@@ -39,11 +40,13 @@ int Terminal::output_failure() {
 }
 
 void Terminal::warn(const std::string& text) {
+    const std::lock_guard lock(one_at_a_time_);
     wipe();
     std::fprintf(stderr, "Warning: %s\n", text.c_str());
 }
 
 void Terminal::note(const std::string& text) {
+    const std::lock_guard lock(one_at_a_time_);
     wipe();
     std::fprintf(stderr, "deviascope: %s\n", text.c_str());
 }
@@ -54,6 +57,7 @@ Progress Terminal::progress() {
 }
 
 void Terminal::show(const std::string& line) {
+    const std::lock_guard lock(one_at_a_time_);
     const auto now = std::chrono::steady_clock::now();
     if (now - last_ < (is_terminal_ ? between_lines_on_terminal : between_lines_elsewhere))
         return;

@@ -3,6 +3,7 @@
 #pragma once
 
 #include <chrono>
+#include <mutex>
 #include <string>
 
 #include "deviascope/core/progress.h"
@@ -11,7 +12,7 @@ namespace deviascope {
 
 /// What the program says: plain lines on standard output, progress and warnings on standard
 /// error. Progress overwrites itself on a terminal (a few times a second), is one line a minute
-/// elsewhere, and silent with --quiet.
+/// elsewhere, and silent with --quiet. Threads: any.
 class Terminal {
   public:
     explicit Terminal(bool quiet);
@@ -33,8 +34,9 @@ class Terminal {
 
   private:
     void show(const std::string& line);
-    void wipe();
+    void wipe();  ///< by who holds the mutex
 
+    std::mutex one_at_a_time_;  ///< for all that is printed
     bool quiet_;
     bool is_terminal_;
     bool line_open_ = false;
