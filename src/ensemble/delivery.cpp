@@ -32,7 +32,7 @@ void Delivery::settle() {
     rows_together_ = sink_.rows_together();
 }
 
-void Delivery::look() {
+void Delivery::settle_if_done() {
     using std::chrono::seconds;
     if (under_way_.valid() && under_way_.wait_for(seconds(0)) == std::future_status::ready)
         settle();

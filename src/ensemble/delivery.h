@@ -26,7 +26,7 @@ class Delivery {
     /// Waits until all is delivered. Errors: the sink's.
     void settle();
     /// Settles if that needs no waiting.
-    void look();
+    void settle_if_done();
 
     std::int64_t rows_together() const { return rows_together_; }
     /// What the last block took that is settled.

@@ -244,7 +244,7 @@ class Run {
             }
             if (stop_is_requested()) return delivered(Outcome::End::interrupted);
             store_leg();
-            delivery_.look();
+            delivery_.settle_if_done();
             if (is_block_due()) deliver();
             tell();
         }

@@ -2,7 +2,6 @@
 // Effective draws per core-second of the whole sampler on the benchmarks' reference problem, by
 // kernels; threads; and what storing costs. Everything in one run: read the ratios.
 #include <fmt/format.h>
-
 #include <time.h>
 
 #include <algorithm>
@@ -183,9 +182,8 @@ void measure_storing(const Posterior& target, const Counts& counts, int threads)
         waits.push_back(1e3 * timed.seconds / megabytes);
     }
     fmt::print(
-        "storing {:.0f} MB of draws, {} thread{}: {:.1f} ms of a core and {:.1f} ms of time a "
-        "MB; "
-        "the run is {:.0f} % longer\n",
+        "storing {:.0f} MB of draws, {} thread{}: a MB takes {:.1f} ms of a core and {:.1f} ms "
+        "of time; the run is {:.0f} % longer\n",
         megabytes,
         threads,
         threads == 1 ? "" : "s",
@@ -206,6 +204,6 @@ int main(int argc, char** argv) {
     const Posterior target(counts, bench::make_model(Engine::automatic));
     if (wants("kernels")) compare_kernels(target);
     if (wants("threads")) compare_threads(target);
-    for (const int threads : {1, 2})
-        if (wants("storing")) measure_storing(target, counts, threads);
+    if (wants("storing"))
+        for (const int threads : {1, 2}) measure_storing(target, counts, threads);
 }

@@ -94,13 +94,12 @@ void ExchangedFile::write_shadow(const Draft& draft) {
 
 /// All in which the shadow lags, but for those about to change; neighbours go together.
 void ExchangedFile::copy_stale_pages(const Draft& draft) {
-    constexpr std::size_t most_together = 256;
-    copied_.resize(most_together * page_bytes);
+    copied_.resize(pages_together * page_bytes);
     std::erase_if(stale_,
                   [&](std::uint64_t page) { return draft.pages.find(page) != nullptr; });
     for (std::size_t done = 0; done < stale_.size();) {
         std::size_t n = 1;
-        while (n < most_together && done + n < stale_.size() &&
+        while (n < pages_together && done + n < stale_.size() &&
                stale_[done + n] == stale_[done] + n)
             ++n;
         const std::uint64_t offset = stale_[done] * page_bytes;

@@ -12,10 +12,10 @@ char* Pages::find(std::uint64_t number) const {
 }
 
 char* Pages::add(std::uint64_t number) {
-    const std::size_t slab = by_number_.size() / pages_a_slab;
-    const std::size_t place = by_number_.size() % pages_a_slab;
+    const std::size_t slab = by_number_.size() / pages_together;
+    const std::size_t place = by_number_.size() % pages_together;
     if (slab == slabs_.size())
-        slabs_.push_back(std::make_unique_for_overwrite<char[]>(pages_a_slab * page_bytes));
+        slabs_.push_back(std::make_unique_for_overwrite<char[]>(pages_together * page_bytes));
     char* const page = slabs_[slab].get() + place * page_bytes;
     by_number_.emplace_hint(by_number_.end(), number, page);
     return page;

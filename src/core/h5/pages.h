@@ -12,6 +12,8 @@
 namespace deviascope::h5 {
 
 inline constexpr std::uint64_t page_bytes = 4096;
+/// Pages that go in one call at most.
+inline constexpr std::size_t pages_together = 256;
 
 /// Pages of a file by number (offset / page_bytes). Pages added one after another mostly lie
 /// one after another in memory, and are then written in one call. Memory that was touched once
@@ -32,10 +34,8 @@ class Pages {
     void write_to(const Descriptor& file, std::uint64_t length) const;
 
   private:
-    static constexpr std::size_t pages_a_slab = 256;
-
     std::map<std::uint64_t, char*> by_number_;
-    std::vector<std::unique_ptr<char[]>> slabs_;
+    std::vector<std::unique_ptr<char[]>> slabs_;  ///< of `pages_together` pages
 };
 
 }  // namespace deviascope::h5

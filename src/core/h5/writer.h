@@ -1,6 +1,5 @@
 // SPDX-License-Identifier: GPL-2.0-or-later
 // CORE (private): writing HDF5 files. One thread at a time; no object of the library leaves it.
-// here.
 #pragma once
 
 #include <cstdint>

@@ -63,7 +63,7 @@ TEST_CASE("blocks are delivered whole and in order while others are made", "[ens
     delivery.block(rows, state_at(2));
     CHECK(rows.n_rows == 0);
     rows = rows_of({6.0});  // while the second is held up
-    delivery.look();
+    delivery.settle_if_done();
     harbour.go_on.set_value();
     delivery.block(rows, state_at(3));
     delivery.settle();
@@ -92,7 +92,7 @@ TEST_CASE("a refused block is told of by the next call that can", "[ensemble]") 
         if (next == 2)
             CHECK_THROWS_AS(
                 [&] {
-                    for (;;) delivery.look();
+                    for (;;) delivery.settle_if_done();
                 }(),
                 OutputError);
         CHECK(harbour.steps == std::vector<std::int64_t>{1});
