@@ -1,7 +1,8 @@
 #!/usr/bin/env bash
 # SPDX-License-Identifier: GPL-2.0-or-later
-# Checks the order of the stages: a stage includes only earlier ones, and each outside library is
-# included only in its home. Prints every violation; exit 1 if there is any.
+# Checks the order of the stages: a stage includes only earlier ones, each outside library is
+# included only in its home, and no two types share a name. Prints every violation; exit 1 if
+# there is any.
 set -euo pipefail
 cd "$(dirname "$0")/.."
 
@@ -51,6 +52,13 @@ FNR == 1 {
     for (library in home)
         if ($2 ~ "^<(" library ")" && FILENAME !~ home[library])
             report(FILENAME ":" FNR ": includes " $2 ", whose home is " substr(home[library], 2))
+}
+# The linker takes two types of one name for the same, and mixes their functions.
+/^(struct|class|enum class) [A-Za-z0-9_]+( final)?( *:[^:].*)? *[{]/ && FILENAME ~ /[.]h$/ {
+    name = $1 == "enum" ? $3 : $2
+    if (name in type_home)
+        report(FILENAME ":" FNR ": " name " is also a type of " type_home[name] "; each type has a name of its own")
+    type_home[name] = FILENAME
 }
 END {
     if (violations) { print violations " violation(s) of the order of the stages" > "/dev/stderr"; exit 1 }

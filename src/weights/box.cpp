@@ -52,7 +52,7 @@ Boxes::Boxes(const SurveyInput& survey, const std::vector<std::size_t>& bins) {
     for (const std::size_t bin : bins) {
         const BinInput& input = survey.bins[bin];
         const std::string place = fmt::format("survey {}, bin {}", survey.name, input.name);
-        Box made{bin, {}};
+        BinBox made{bin, {}};
         for (const auto* ranges : {&survey.select, &input.select})
             for (const PropertyRange& range : *ranges)
                 narrow(made.sides, dimension_of(dimension, range.property), range);

@@ -25,7 +25,7 @@ struct BoxSide {
 };
 
 /// A bin: sources whose values lie inside all sides.
-struct Box {
+struct BinBox {
     std::size_t bin = 0;  ///< index into SurveyInput::bins
     std::vector<BoxSide> sides;
 };
@@ -58,7 +58,7 @@ struct Boxes {
     std::size_t first_like(std::size_t e) const;
 
     std::vector<Dimension> dimension;
-    std::vector<Box> box;
+    std::vector<BinBox> box;
     std::vector<Edge> edge;                               ///< of all boxes, in their order
     std::vector<std::vector<std::size_t>> edges_of_side;  ///< [side, counted over all boxes]
     std::vector<std::size_t> first_side;                  ///< of each box in that count
