@@ -36,8 +36,9 @@ class Ridge {
           const std::vector<Eigen::Index>& tested,
           const std::vector<Eigen::Index>& others)
         : mean_(moments.mean(tested)), covariance_(moments.covariance(tested, tested)) {
-        const Eigen::LLT<Eigen::MatrixXd> whole(covariance_);
-        regression_ = whole.solve(Eigen::MatrixXd(moments.covariance(tested, others)));
+        regression_ = moments.covariance(tested, others);
+        // Eigen takes the address of a right side's first element, even where there is none.
+        if (!others.empty()) regression_ = covariance_.llt().solve(regression_).eval();
         factor_.compute(narrowed * covariance_);
         const Eigen::MatrixXd lower = factor_.matrixL();
         log_normalisation_ =
