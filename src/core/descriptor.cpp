@@ -47,15 +47,33 @@ void Descriptor::resize(std::uint64_t n_bytes) const {
         throw system_error(path_, "cannot be resized");
 }
 
-void Descriptor::write(std::string_view bytes, std::uint64_t offset) const {
+void Descriptor::write_while_taken(std::string_view& bytes, std::uint64_t& offset) const {
     while (!bytes.empty()) {
         const ssize_t n_written =
             ::pwrite(number_, bytes.data(), bytes.size(), static_cast<off_t>(offset));
         if (n_written < 0 && errno == EINTR) continue;
-        if (n_written < 0) throw system_error(path_, "cannot be written");
+        if (n_written < 0) return;
         bytes.remove_prefix(static_cast<std::size_t>(n_written));
         offset += static_cast<std::uint64_t>(n_written);
     }
+}
+
+void Descriptor::write(std::string_view bytes, std::uint64_t offset) const {
+    write_while_taken(bytes, offset);
+    if (!bytes.empty()) throw system_error(path_, "cannot be written");
+}
+
+void Descriptor::write_past_cache(std::string_view bytes, std::uint64_t offset) const {
+    const int flags = ::fcntl(number_, F_GETFL);
+    if (flags >= 0 && ::fcntl(number_, F_SETFL, flags | O_DIRECT) == 0) {
+        write_while_taken(bytes, offset);
+        const int reason = errno;
+        ::fcntl(number_, F_SETFL, flags);
+        errno = reason;
+        // EINVAL: the device wants larger pieces, or has left an odd rest.
+        if (!bytes.empty() && reason != EINVAL) throw system_error(path_, "cannot be written");
+    }
+    write(bytes, offset);
 }
 
 std::size_t Descriptor::read(std::span<char> to, std::uint64_t offset) const {

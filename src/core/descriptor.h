@@ -32,6 +32,9 @@ class Descriptor {
     std::uint64_t size() const;
     void resize(std::uint64_t n_bytes) const;
     void write(std::string_view bytes, std::uint64_t offset) const;
+    /// The same, but straight to the disk where the system can do that: it saves the system
+    /// what copying costs, several times over. Address, offset and size are multiples of 4096.
+    void write_past_cache(std::string_view bytes, std::uint64_t offset) const;
     /// Reads bytes, fewer where the file ends. @returns how many
     std::size_t read(std::span<char> to, std::uint64_t offset) const;
     /// Has the system put it on the disk.
@@ -47,6 +50,9 @@ class Descriptor {
     void unlock() const;
 
   private:
+    /// Writes until the system takes no more: what `bytes` still holds then, errno says why.
+    void write_while_taken(std::string_view& bytes, std::uint64_t& offset) const;
+
     std::filesystem::path path_;
     int number_ = -1;
 };

@@ -43,7 +43,7 @@ prior = { kind = "gaussian", sd = 0.05 }
 prior = "no-intrinsic"
 [ensemble]
 replicates = 2
-walkers = 8
+walkers = 96
 store_every = 2
 max_steps = 512
 effective_draws = 1e9

@@ -11,12 +11,12 @@
 
 namespace deviascope::test {
 
-/// A folder of its own under the system's temporary folder, removed with all it holds.
+/// A folder of its own, removed with all it holds.
 class TemporaryFolder {
   public:
-    TemporaryFolder() {
-        std::string name =
-            (std::filesystem::temp_directory_path() / "deviascope-test-XXXXXX").string();
+    explicit TemporaryFolder(
+        const std::filesystem::path& parent = std::filesystem::temp_directory_path()) {
+        std::string name = (parent / "deviascope-test-XXXXXX").string();
         if (mkdtemp(name.data()) == nullptr)
             throw std::runtime_error("cannot make a temporary folder like " + name);
         path_ = name;

@@ -6,10 +6,10 @@
 #include <unistd.h>
 
 #include <cerrno>
-#include <numeric>
 #include <string>
 #include <system_error>
 #include <utility>
+#include <vector>
 
 #include "core/h5/draft_file.h"
 
@@ -49,19 +49,18 @@ ExchangedFile::~ExchangedFile() {
 
 void ExchangedFile::change(const Edit& edit) {
     open_main();
-    Writer writer(path_, &main_, std::move(room_));
-    edit(writer);
-    Draft draft = writer.close();
     try {
         prepare_shadow();
-        write_shadow(draft);
+        Writer writer(path_, &main_, std::move(last_.pages));
+        edit(writer);
+        last_ = writer.close();
+        last_.write_to(shadow_);
+        shadow_.sync();
         change_places();
     } catch (...) {
         drop_shadow();
         throw;
     }
-    stale_ = draft.pages.numbers();
-    room_ = std::move(draft.pages);
 }
 
 void ExchangedFile::open_main() {
@@ -73,40 +72,23 @@ void ExchangedFile::open_main() {
                            ""});
 }
 
+/// Brings it to the content of the file.
 void ExchangedFile::prepare_shadow() {
-    if (shadow_.is_open() && shadow_.try_lock()) return;
+    if (shadow_.is_open() && shadow_.try_lock()) {
+        last_.write_to(shadow_);
+        return;
+    }
     drop_shadow();
+    make_shadow();
+}
+
+void ExchangedFile::make_shadow() {
     remove_quietly(shadow_path_);  // of a process that was cut off
     shadow_ = Descriptor(shadow_path_, O_RDWR | O_CREAT | O_EXCL);
     shadow_.try_lock();
-    const std::uint64_t n_pages = (main_.size() + page_bytes - 1) / page_bytes;
-    stale_.resize(n_pages);
-    std::iota(stale_.begin(), stale_.end(), std::uint64_t{0});
-}
-
-void ExchangedFile::write_shadow(const Draft& draft) {
-    // What it once held beyond the end of the file must not come back when the file grows.
-    if (shadow_.size() > main_.size()) shadow_.resize(main_.size());
-    copy_stale_pages(draft);
-    draft.write_to(shadow_);
-    shadow_.sync();
-}
-
-/// All in which the shadow lags, but for those about to change; neighbours go together.
-void ExchangedFile::copy_stale_pages(const Draft& draft) {
-    copied_.resize(pages_together * page_bytes);
-    std::erase_if(stale_,
-                  [&](std::uint64_t page) { return draft.pages.find(page) != nullptr; });
-    for (std::size_t done = 0; done < stale_.size();) {
-        std::size_t n = 1;
-        while (n < pages_together && done + n < stale_.size() &&
-               stale_[done + n] == stale_[done] + n)
-            ++n;
-        const std::uint64_t offset = stale_[done] * page_bytes;
-        const std::size_t n_read = main_.read({copied_.data(), n * page_bytes}, offset);
-        shadow_.write({copied_.data(), n_read}, offset);
-        done += n;
-    }
+    std::vector<char> piece(pages_together * page_bytes);
+    for (std::uint64_t offset = 0, n = 0; (n = main_.read(piece, offset)) > 0; offset += n)
+        shadow_.write({piece.data(), n}, offset);
 }
 
 void ExchangedFile::change_places() {
@@ -131,7 +113,6 @@ void ExchangedFile::drop_shadow() noexcept {
     if (shadow_.is_open()) remove_quietly(shadow_path_);
     remove_quietly(old_path_);
     shadow_ = Descriptor();
-    stale_.clear();
 }
 
 }  // namespace deviascope::h5

@@ -2,10 +2,8 @@
 // CORE (private): a file that grows, and is complete at every instant
 #pragma once
 
-#include <cstdint>
 #include <filesystem>
 #include <functional>
-#include <vector>
 
 #include "core/descriptor.h"
 #include "core/h5/draft_file.h"
@@ -37,7 +35,7 @@ class ExchangedFile {
     ExchangedFile(const ExchangedFile&) = delete;
     ExchangedFile& operator=(const ExchangedFile&) = delete;
 
-    /// When this returns, the change is on the disk.
+    /// When this returns, the change is on the disk. Memory of its size is kept.
     /// Errors: OutputError, or what `edit` throws; then the file is as it was before, or (where
     /// only the folder could not be put on the disk) as it is after.
     void change(const Edit& edit);
@@ -45,16 +43,13 @@ class ExchangedFile {
   private:
     void open_main();
     void prepare_shadow();
-    void write_shadow(const Draft& draft);
-    void copy_stale_pages(const Draft& draft);
+    void make_shadow();
     void change_places();
     void drop_shadow() noexcept;
 
     std::filesystem::path path_, shadow_path_, old_path_;
     Descriptor main_, shadow_;
-    std::vector<std::uint64_t> stale_;  ///< pages in which the shadow lags, ascending
-    Pages room_;                        ///< of the last change, for the next
-    std::vector<char> copied_;
+    Draft last_;  ///< change that the file has and the shadow lacks
 };
 
 }  // namespace deviascope::h5

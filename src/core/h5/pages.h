@@ -13,7 +13,7 @@ namespace deviascope::h5 {
 
 inline constexpr std::uint64_t page_bytes = 4096;
 /// Pages that go in one call at most.
-inline constexpr std::size_t pages_together = 256;
+inline constexpr std::size_t pages_together = 1024;
 
 /// Pages of a file by number (offset / page_bytes). Pages added one after another mostly lie
 /// one after another in memory, and are then written in one call. Memory that was touched once
@@ -27,15 +27,17 @@ class Pages {
     /// Drops all pages and keeps their memory for others.
     void clear();
 
-    /// Numbers of all pages, ascending.
-    std::vector<std::uint64_t> numbers() const;
-    /// Writes all pages to a file, but for what lies beyond `length` bytes. Errors:
-    /// OutputError.
+    /// Writes the pages that begin before `length` bytes to a file; of the last one it may
+    /// write more. Errors: OutputError.
     void write_to(const Descriptor& file, std::uint64_t length) const;
 
   private:
+    struct Slab {
+        alignas(2097152) char bytes[pages_together * page_bytes];
+    };
+
     std::map<std::uint64_t, char*> by_number_;
-    std::vector<std::unique_ptr<char[]>> slabs_;  ///< of `pages_together` pages
+    std::vector<std::unique_ptr<Slab>> slabs_;
 };
 
 }  // namespace deviascope::h5

@@ -6,6 +6,7 @@
 #include <utility>
 
 #include "core/h5/draft_file.h"
+#include "core/h5/whole_chunks.h"
 
 namespace deviascope::h5 {
 
@@ -287,6 +288,10 @@ void Writer::append_elements(const std::string& path, const Elements& elements) 
         start[0] = shape[0];
         shape[0] += count[0];
         set.extend(extents(shape).data());
+        const Entries entries{start[0],
+                              Shape(count.begin(), count.end()),
+                              static_cast<const char*>(elements.data)};
+        if (write_whole_chunks(set, entries)) return;
         H5::DataSpace in_file = set.getSpace();
         in_file.selectHyperslab(H5S_SELECT_SET, count.data(), start.data());
         const H5::DataSpace in_memory(static_cast<int>(count.size()), count.data());
