@@ -32,6 +32,7 @@ class Pages {
     void write_to(const Descriptor& file, std::uint64_t length) const;
 
   private:
+    /// Aligned as the system's larger pages are (2 MB).
     struct Slab {
         alignas(2097152) char bytes[pages_together * page_bytes];
     };
