@@ -53,7 +53,7 @@ Eigen::MatrixXd free_directions(const ParameterSpace& space) {
         Eigen::MatrixXd::Zero(space.n_parameters(), space.n_coordinates());
     for (std::size_t v = 0; v < space.vectors().size(); ++v) {
         const VectorPrior& prior = space.vector_prior(v);
-        if (prior.n_coordinates() == 0) continue;
+        if (prior.n_coordinates() == 0) continue;  // fixed: no column
         const ParameterSpace::VectorPlace& place = space.vector_places()[v];
         auto block =
             directions.block(place.parameter, place.coordinate, 3, prior.n_coordinates());

@@ -156,15 +156,16 @@ class Timed : public DrawSink {
 };
 
 /// Runs that store and runs that do not, in turns.
-void measure_storing(const Posterior& target, const Counts& counts, int threads) {
-    const EnsembleOptions options = options_with({}, 400000, threads);
-    std::vector<double> costs, per_megabyte, waits;
+void measure_storing(
+    const Posterior& target, const Counts& counts, double wanted, int threads, int n_pairs) {
+    const EnsembleOptions options = options_with({}, wanted, threads);
+    std::vector<double> without, with, costs, per_megabyte, waits;
     double megabytes = 0.0;
-    for (int pair = 0; pair < 5; ++pair) {
+    for (int pair = 0; pair < n_pairs; ++pair) {
         Counter counter;
         double begin = wall_seconds();
         sample(target, options, counter);
-        const double without = wall_seconds() - begin;
+        without.push_back(wall_seconds() - begin);
         const test::TemporaryFolder folder;
         begin = wall_seconds();
         ChainWriter writer(ChainLock(folder / "chains.h5"),
@@ -176,25 +177,32 @@ void measure_storing(const Posterior& target, const Counts& counts, int threads)
         Timed timed(writer);
         const Outcome outcome = sample(target, options, timed);
         writer.finish(outcome, "");
-        costs.push_back((wall_seconds() - begin) / without - 1.0);
+        with.push_back(wall_seconds() - begin);
+        costs.push_back(with.back() / without.back() - 1.0);
         megabytes = timed.megabytes;
         per_megabyte.push_back(1e3 * timed.core_seconds / megabytes);
         waits.push_back(1e3 * timed.seconds / megabytes);
     }
     fmt::print(
         "storing {:.0f} MB of draws, {} thread{}: a MB takes {:.1f} ms of a core and {:.1f} ms "
-        "of time; the run is {:.0f} % longer\n",
+        "of time; the run takes {:.1f} s without and {:.1f} s with, {:.1f} % longer (medians "
+        "of "
+        "{} pairs)\n",
         megabytes,
         threads,
         threads == 1 ? "" : "s",
         bench::median(per_megabyte),
         bench::median(waits),
-        100.0 * bench::median(costs));
+        bench::median(without),
+        bench::median(with),
+        100.0 * bench::median(costs),
+        n_pairs);
 }
 
 }  // namespace
 
-/// All parts, or those named: kernels, threads, storing.
+/// The parts named, of kernels, threads, storing and storing-long; without names, the first
+/// three.
 int main(int argc, char** argv) {
     const std::vector<std::string> named(argv + 1, argv + argc);
     const auto wants = [&](const char* part) {
@@ -205,5 +213,7 @@ int main(int argc, char** argv) {
     if (wants("kernels")) compare_kernels(target);
     if (wants("threads")) compare_threads(target);
     if (wants("storing"))
-        for (const int threads : {1, 2}) measure_storing(target, counts, threads);
+        for (const int threads : {1, 2}) measure_storing(target, counts, 4e5, threads, 5);
+    if (!named.empty() && wants("storing-long"))  // runs of a minute and more
+        for (const int threads : {1, 2}) measure_storing(target, counts, 5e6, threads, 3);
 }

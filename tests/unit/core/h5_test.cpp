@@ -15,6 +15,7 @@
 #include "core/h5/writer.h"
 #include "file_bytes.h"
 #include "full_disk.h"
+#include "ramp.h"
 #include "temporary_folder.h"
 
 using namespace deviascope;
@@ -23,6 +24,7 @@ using h5::Shape;
 using h5::Writer;
 using test::bytes_of;
 using test::FullDisk;
+using test::ramp;
 using test::same_bits;
 using test::TemporaryFolder;
 
@@ -60,12 +62,6 @@ void fill(Writer& writer) {
 fs::path written(const TemporaryFolder& folder, const h5::Edit& edit) {
     h5::write_file(folder / "file.h5", edit);
     return folder / "file.h5";
-}
-
-std::vector<double> ramp(std::size_t n_values) {
-    std::vector<double> values(n_values);
-    std::iota(values.begin(), values.end(), 0.5);
-    return values;
 }
 
 }  // namespace

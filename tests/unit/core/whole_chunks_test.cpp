@@ -4,7 +4,6 @@
 #include <H5Cpp.h>
 
 #include <catch2/catch.hpp>
-#include <numeric>
 #include <random>
 #include <string>
 #include <vector>
@@ -15,11 +14,13 @@
 #include "core/h5/writer.h"
 #include "deviascope/core/error.h"
 #include "file_bytes.h"
+#include "ramp.h"
 #include "temporary_folder.h"
 
 using namespace deviascope;
 using h5::Shape;
 using h5::Writer;
+using test::ramp;
 using test::same_bits;
 using test::TemporaryFolder;
 
@@ -44,12 +45,6 @@ std::string random_bytes(std::size_t n_bytes, std::mt19937_64& random) {
     std::string bytes(n_bytes, '\0');
     for (char& byte : bytes) byte = static_cast<char>(random());
     return bytes;
-}
-
-std::vector<double> ramp(std::size_t n_values) {
-    std::vector<double> values(n_values);
-    std::iota(values.begin(), values.end(), 0.125);
-    return values;
 }
 
 /// A chunk as it lies in the file, and which filters it was spared.
