@@ -25,7 +25,9 @@ class TellingSink : public DrawSink {
         sink_.block(rows, state);
         terminal_.say(fmt::format("Stored {} rows up to step {}.", rows.n_rows, state.step));
     }
-    std::int64_t rows_together() const override { return sink_.rows_together(); }
+    std::int64_t rows_together(Eigen::Index n_rows) const override {
+        return sink_.rows_together(n_rows);
+    }
 
   private:
     DrawSink& sink_;

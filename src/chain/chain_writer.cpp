@@ -112,8 +112,7 @@ void ChainWriter::warm_up(const WarmUp& warm_up) {
 void ChainWriter::block(const Draws& rows, const EnsembleState& state) {
     ensure_block(rows, state);
     const std::int64_t n_rows_after = parts_->n_rows + rows.n_rows;
-    const std::int64_t rows_a_chunk =
-        parts_->has_blocks() ? parts_->rows_a_chunk : good_rows_a_chunk(rows.n_rows);
+    const std::int64_t rows_a_chunk = rows_together(rows.n_rows);
     parts_->change(fmt::format("the block up to step {}", state.step), [&](Writer& writer) {
         if (!parts_->has_blocks()) create_growing(writer, rows, state, rows_a_chunk);
         if (parts_->was_ended) write_end(writer, Outcome::End::not_run);
@@ -126,8 +125,8 @@ void ChainWriter::block(const Draws& rows, const EnsembleState& state) {
     parts_->was_ended = false;
 }
 
-std::int64_t ChainWriter::rows_together() const {
-    return parts_->rows_a_chunk;
+std::int64_t ChainWriter::rows_together(Eigen::Index n_rows) const {
+    return parts_->has_blocks() ? parts_->rows_a_chunk : good_rows_a_chunk(n_rows);
 }
 
 void ChainWriter::finish(const Outcome& outcome, const std::string& ended) {

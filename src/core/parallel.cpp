@@ -6,6 +6,9 @@
 #include <algorithm>
 #include <exception>
 #include <limits>
+#include <mutex>
+#include <optional>
+#include <vector>
 
 namespace deviascope {
 
@@ -31,6 +34,43 @@ class FirstFailure {
     std::exception_ptr failure_;
 };
 
+/// Sequences of parts, handed out to threads.
+class Sequences {
+  public:
+    Sequences(std::size_t n_sequences, std::size_t n_parts)
+        : n_parts_(n_parts), n_done_(n_sequences, 0), is_taken_(n_sequences, false) {}
+
+    struct Part {
+        std::size_t sequence, number;
+    };
+    /// The next of those no thread is at; none where there is nothing left to begin.
+    std::optional<Part> take() {
+        const std::lock_guard lock(mutex_);
+        std::optional<Part> next;
+        for (std::size_t sequence = 0; sequence < n_done_.size(); ++sequence) {
+            const std::size_t n_done = n_done_[sequence];
+            if (is_taken_[sequence] || n_done == n_parts_) continue;
+            if (!next || n_done < next->number) next = {sequence, n_done};
+        }
+        if (next) is_taken_[next->sequence] = true;
+        return next;
+    }
+    void give_back(const Part& done) { leave_at(done.sequence, done.number + 1); }
+    void end(const Part& failed) { leave_at(failed.sequence, n_parts_); }
+
+  private:
+    void leave_at(std::size_t sequence, std::size_t n_done) {
+        const std::lock_guard lock(mutex_);
+        n_done_[sequence] = n_done;
+        is_taken_[sequence] = false;
+    }
+
+    std::size_t n_parts_;
+    std::mutex mutex_;
+    std::vector<std::size_t> n_done_;
+    std::vector<bool> is_taken_;
+};
+
 }  // namespace
 
 void parallel_for(std::size_t n, int threads, const std::function<void(std::size_t)>& body) {
@@ -49,6 +89,27 @@ void parallel_for(std::size_t n, int threads, const std::function<void(std::size
             failure.keep(index, std::current_exception());
         }
     }
+    failure.rethrow();
+}
+
+void parallel_sequences(std::size_t n_sequences,
+                        std::size_t n_parts,
+                        int threads,
+                        const std::function<void(std::size_t, std::size_t)>& body) {
+    Sequences sequences(n_sequences, n_parts);
+    FirstFailure failure;
+    const auto team = std::min(n_sequences, static_cast<std::size_t>(std::max(threads, 1)));
+    parallel_for(team, threads, [&](std::size_t) {
+        while (const auto part = sequences.take()) {
+            try {
+                body(part->sequence, part->number);
+                sequences.give_back(*part);
+            } catch (...) {
+                failure.keep(part->sequence, std::current_exception());
+                sequences.end(*part);
+            }
+        }
+    });
     failure.rethrow();
 }
 

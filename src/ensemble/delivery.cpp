@@ -10,10 +10,11 @@
 namespace deviascope {
 
 Delivery::Delivery(DrawSink& sink, Draws no_rows)
-    : sink_(sink), rows_(std::move(no_rows)), rows_together_(sink.rows_together()) {}
+    : sink_(sink), rows_(std::move(no_rows)), rows_together_(sink.rows_together(0)) {}
 
 void Delivery::block(Draws& rows, const EnsembleState& state) {
     settle();
+    if (std::exchange(is_first_, false)) rows_together_ = sink_.rows_together(rows.n_rows);
     std::swap(rows, rows_);
     resize_rows(rows, 0);
     state_ = state;
@@ -23,13 +24,11 @@ void Delivery::block(Draws& rows, const EnsembleState& state) {
         sink_.block(rows_, state_);
         return seconds_now() - began;
     });
-    if (std::exchange(is_first_, false)) settle();
 }
 
 void Delivery::settle() {
     if (!under_way_.valid()) return;
     seconds_to_store_ = under_way_.get();
-    rows_together_ = sink_.rows_together();
 }
 
 void Delivery::settle_if_done() {

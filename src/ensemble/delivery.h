@@ -19,8 +19,8 @@ class Delivery {
 
     /// Waits. Errors: the sink's.
     void warm_up(const WarmUp& warm_up) { sink_.warm_up(warm_up); }
-    /// Waits for the block before, and with the first block for itself: it may settle how many
-    /// rows go well together. Takes the rows, and leaves none in memory that can be used again.
+    /// Waits for the block before. Takes the rows, and leaves none in memory that can be used
+    /// again. With the first it is settled how many rows go well together.
     /// Errors: the sink's, about this block or the one before.
     void block(Draws& rows, const EnsembleState& state);
     /// Waits until all is delivered. Errors: the sink's.

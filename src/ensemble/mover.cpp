@@ -14,6 +14,9 @@ namespace {
 
 /// Targets work on lanes of four walkers.
 constexpr Eigen::Index block_multiple = 4;
+/// Parts of a replicate's steps, between which threads may change places: at the end none waits
+/// for longer than one of them takes.
+constexpr std::int64_t most_parts = 16;
 
 Eigen::Index blocks_per_half(int threads, const EnsembleShape& shape) {
     if (threads <= shape.n_replicates) return 1;
@@ -77,14 +80,23 @@ void Mover::advance_replicates(EnsembleState& state,
                                std::int64_t n_steps,
                                const AfterStep& after) {
     const auto n_replicates = static_cast<std::size_t>(shape_.n_replicates);
-    parallel_for(n_replicates, threads_, [&](std::size_t index) {
-        const auto replicate = static_cast<Eigen::Index>(index);
-        Block& block = block_of(replicate, 0);
-        for (std::int64_t step = state.step + 1; step <= state.step + n_steps; ++step) {
-            for (const Eigen::Index half : {0, 1}) move(state, {replicate, half, step}, block);
-            after(replicate, step);
-        }
-    });
+    const std::int64_t n_parts = std::min(n_steps, most_parts);
+    parallel_sequences(
+        n_replicates,
+        static_cast<std::size_t>(n_parts),
+        threads_,
+        [&](std::size_t index, std::size_t part_index) {
+            const auto replicate = static_cast<Eigen::Index>(index);
+            const auto part = static_cast<std::int64_t>(part_index);
+            Block& block = block_of(replicate, 0);
+            const std::int64_t last = state.step + n_steps * (part + 1) / n_parts;
+            for (std::int64_t step = state.step + n_steps * part / n_parts + 1; step <= last;
+                 ++step) {
+                for (const Eigen::Index half : {0, 1})
+                    move(state, {replicate, half, step}, block);
+                after(replicate, step);
+            }
+        });
 }
 
 void Mover::advance_blocks(EnsembleState& state, std::int64_t n_steps, const AfterStep& after) {

@@ -147,7 +147,9 @@ class Timed : public DrawSink {
         seconds += wall_seconds() - wall_before;
         megabytes += static_cast<double>(rows.value.size() * sizeof(double)) / 1e6;
     }
-    std::int64_t rows_together() const override { return sink_.rows_together(); }
+    std::int64_t rows_together(Eigen::Index n_rows) const override {
+        return sink_.rows_together(n_rows);
+    }
 
     double core_seconds = 0.0, seconds = 0.0, megabytes = 0.0;
 

@@ -56,7 +56,7 @@ class ChainWriter : public DrawSink {
     void block(const Draws& rows, const EnsembleState& state) override;
     /// Rows of a chunk of the file: as many as the first block had, or an even part of them. A
     /// chunk that is not full is written again, elsewhere in the file, when it is added to.
-    std::int64_t rows_together() const override;
+    std::int64_t rows_together(Eigen::Index n_rows) const override;
     /// Marks the end: outcome and end time.
     void finish(const Outcome& outcome, const std::string& ended);
 

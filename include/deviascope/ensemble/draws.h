@@ -76,8 +76,9 @@ class DrawSink {
     /// on the clock; rows do not.
     virtual void block(const Draws& rows, const EnsembleState& state) = 0;
     /// Rows that are best stored together: where the clock may choose, blocks after the first
-    /// end on a multiple of this number of all rows.
-    virtual std::int64_t rows_together() const { return 1; }
+    /// end on a multiple of this number of all rows. Asked before the first block only.
+    /// @param n_rows  of the first block of the chain; 0: not known yet
+    virtual std::int64_t rows_together([[maybe_unused]] Eigen::Index n_rows) const { return 1; }
 };
 
 }  // namespace deviascope

@@ -14,6 +14,14 @@ void Draft::write_to(const Descriptor& file) const {
     if (file.size() != length) file.resize(length);
 }
 
+namespace {
+
+std::size_t pages_for(std::size_t n_bytes) {
+    return (n_bytes + page_bytes - 1) / page_bytes;
+}
+
+}  // namespace
+
 struct DraftFile::Parts {
     const Descriptor* base = nullptr;
     Draft draft;
@@ -38,6 +46,22 @@ struct DraftFile::Parts {
     }
 
     void write(std::uint64_t offset, const char* from, std::size_t n_bytes) {
+        if (!take_over(offset, from, n_bytes)) copy(offset, from, n_bytes);
+        draft.length = std::max(draft.length, offset + n_bytes);
+    }
+
+  private:
+    /// Makes bytes that lie in reserved memory pages as they are, if they can be.
+    bool take_over(std::uint64_t offset, const char* from, std::size_t n_bytes) {
+        const std::size_t n_pages = pages_for(n_bytes);
+        if (offset % page_bytes != 0 || !draft.pages.adopt(from, offset / page_bytes, n_pages))
+            return false;
+        char* const memory = draft.pages.find(offset / page_bytes);
+        read_base(offset + n_bytes, {memory + n_bytes, n_pages * page_bytes - n_bytes});
+        return true;
+    }
+
+    void copy(std::uint64_t offset, const char* from, std::size_t n_bytes) {
         on_pages(offset, n_bytes, [&](std::uint64_t number, std::size_t start, std::size_t n) {
             char* page = draft.pages.find(number);
             if (page == nullptr) {
@@ -47,10 +71,8 @@ struct DraftFile::Parts {
             std::memcpy(page + start, from, n);
             from += n;
         });
-        draft.length = std::max(draft.length, offset + n_bytes);
     }
 
-  private:
     /// Bytes beyond the end of the base are zero.
     void read_base(std::uint64_t offset, std::span<char> to) const {
         const std::size_t n_read = base == nullptr ? 0 : base->read(to, offset);
@@ -74,6 +96,9 @@ namespace {
 
 /// The library asks the system for the name, and must not find a file.
 constexpr const char* unused_name = "/dev/null/deviascope-draft";
+
+/// What is smaller would leave holes of some size.
+constexpr hsize_t fewest_aligned_bytes = hsize_t{16} * page_bytes;
 
 // ---- the driver: what the library calls (HDF5 Virtual File Layer) ----
 
@@ -184,6 +209,9 @@ H5::FileAccPropList access_to(DraftFile::Parts* parts) {
     access.setFcloseDegree(H5F_CLOSE_STRONG);
     const DriverInfo info{parts};
     checked(H5Pset_driver(access.getId(), draft_driver_id(), &info), "H5Pset_driver");
+    // Chunks that are large begin at a page, so that they can be taken over.
+    checked(H5Pset_alignment(access.getId(), fewest_aligned_bytes, page_bytes),
+            "H5Pset_alignment");
     return access;
 }
 
@@ -208,6 +236,10 @@ DraftFile::~DraftFile() {
     } catch (const H5::Exception&) {
         // Whoever wanted the content has taken it.
     }
+}
+
+char* DraftFile::room_for(std::size_t n_bytes) {
+    return parts_->draft.pages.reserve(pages_for(n_bytes));
 }
 
 Draft DraftFile::close() {

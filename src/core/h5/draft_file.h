@@ -37,6 +37,12 @@ class DraftFile {
     DraftFile& operator=(const DraftFile&) = delete;
 
     H5::H5File& file() { return file_; }
+    /// Memory for the next bytes that are written in one piece: the file takes it over instead
+    /// of copying, if they come to lie at the beginning of a page. Unset; it holds until they
+    /// are written, or until more is asked for.
+    /// @param n_bytes  most_at_once at most
+    char* room_for(std::size_t n_bytes);
+    static constexpr std::size_t most_at_once = pages_together * page_bytes;
     /// Closes the file and gives what has changed. Errors: H5::Exception; OutputError where the
     /// base could not be read; std::bad_alloc.
     Draft close();

@@ -3,8 +3,12 @@
 
 #include <sys/mman.h>
 
+#include <algorithm>
+#include <iterator>
 #include <string_view>
 #include <utility>
+
+#include "deviascope/core/error.h"
 
 namespace deviascope::h5 {
 namespace {
@@ -29,39 +33,73 @@ std::unique_ptr<Memory> on_large_pages(std::unique_ptr<Memory> memory) {
 }  // namespace
 
 char* Pages::find(std::uint64_t number) const {
-    const auto found = by_number_.find(number);
-    return found == by_number_.end() ? nullptr : found->second;
+    auto run = runs_.upper_bound(number);
+    if (run == runs_.begin()) return nullptr;
+    --run;
+    const std::uint64_t place = number - run->first;
+    return place < run->second.n_pages ? run->second.memory + place * page_bytes : nullptr;
 }
 
 char* Pages::add(std::uint64_t number) {
-    const std::size_t slab = by_number_.size() / pages_together;
-    const std::size_t place = by_number_.size() % pages_together;
-    if (slab == slabs_.size())
-        slabs_.push_back(on_large_pages(std::make_unique_for_overwrite<Slab>()));
-    char* const page = slabs_[slab]->bytes + place * page_bytes;
-    by_number_.emplace_hint(by_number_.end(), number, page);
+    char* const page = take(1);
+    place(number, {page, 1});
     return page;
 }
 
+char* Pages::reserve(std::size_t n_pages) {
+    ensure(n_pages <= pages_together, "pages that are reserved together fit into a slab");
+    if (reserved_.n_pages < n_pages) reserved_ = {take(n_pages), n_pages};
+    return reserved_.memory;
+}
+
+bool Pages::adopt(const char* memory, std::uint64_t first, std::size_t n_pages) {
+    if (memory != reserved_.memory || n_pages > reserved_.n_pages) return false;
+    const auto next = runs_.lower_bound(first);
+    if (find(first) != nullptr || (next != runs_.end() && next->first < first + n_pages))
+        return false;
+    place(first, {reserved_.memory, n_pages});
+    reserved_ = {};
+    return true;
+}
+
+/// Memory in one piece; what of a slab is too short for it is left.
+char* Pages::take(std::size_t n_pages) {
+    const std::size_t rest = pages_together - n_taken_ % pages_together;
+    if (rest < n_pages) n_taken_ += rest;
+    const std::size_t slab = n_taken_ / pages_together;
+    if (slab == slabs_.size())
+        slabs_.push_back(on_large_pages(std::make_unique_for_overwrite<Slab>()));
+    char* const memory = slabs_[slab]->bytes + n_taken_ % pages_together * page_bytes;
+    n_taken_ += n_pages;
+    return memory;
+}
+
+void Pages::place(std::uint64_t number, const Run& run) {
+    const auto after = runs_.upper_bound(number);
+    if (after != runs_.begin()) {
+        auto& [first, before] = *std::prev(after);
+        if (first + before.n_pages == number && before.end() == run.memory) {
+            before.n_pages += run.n_pages;
+            return;
+        }
+    }
+    runs_.emplace_hint(after, number, run);
+}
+
 void Pages::clear() {
-    by_number_.clear();
+    runs_.clear();
+    reserved_ = {};
+    n_taken_ = 0;
 }
 
 void Pages::write_to(const Descriptor& file, std::uint64_t length) const {
-    std::uint64_t start = 0;
-    std::string_view run;
-    for (const auto& [number, page] : by_number_) {
-        const std::uint64_t offset = number * page_bytes;
+    for (const auto& [first, run] : runs_) {
+        const std::uint64_t offset = first * page_bytes;
         if (offset >= length) break;
-        const bool goes_on = page == run.data() + run.size() && offset == start + run.size();
-        if (!goes_on) {
-            write_run(run, start, file);
-            start = offset;
-            run = {page, 0};
-        }
-        run = {run.data(), run.size() + page_bytes};
+        const std::uint64_t wanted = (length - offset + page_bytes - 1) / page_bytes;
+        const std::size_t n_pages = std::min<std::uint64_t>(run.n_pages, wanted);
+        write_run({run.memory, n_pages * page_bytes}, offset, file);
     }
-    write_run(run, start, file);
 }
 
 }  // namespace deviascope::h5

@@ -24,6 +24,15 @@ class Pages {
     char* find(std::uint64_t number) const;
     /// A new page, unset; there must be none of that number.
     char* add(std::uint64_t number);
+
+    /// Memory of pages that have no number yet, in one piece, for whoever knows early what will
+    /// be in them: `adopt` spares the copying. Unset, and the same until it is adopted.
+    /// @param n_pages  pages_together at most
+    char* reserve(std::size_t n_pages);
+    /// Makes memory from `reserve` pages of the file.
+    /// @returns false, and does nothing, if `memory` is not that or one of the pages is there
+    bool adopt(const char* memory, std::uint64_t first, std::size_t n_pages);
+
     /// Drops all pages and keeps their memory for others.
     void clear();
 
@@ -36,9 +45,20 @@ class Pages {
     struct Slab {
         alignas(2097152) char bytes[pages_together * page_bytes];
     };
+    /// Pages that are neighbours in the file and in memory.
+    struct Run {
+        char* memory = nullptr;
+        std::size_t n_pages = 0;
+        const char* end() const { return memory + n_pages * page_bytes; }
+    };
 
-    std::map<std::uint64_t, char*> by_number_;
+    char* take(std::size_t n_pages);
+    void place(std::uint64_t number, const Run& run);
+
+    std::map<std::uint64_t, Run> runs_;  ///< by the number of their first page
+    Run reserved_;
     std::vector<std::unique_ptr<Slab>> slabs_;
+    std::size_t n_taken_ = 0;  ///< pages of the slabs, in order
 };
 
 }  // namespace deviascope::h5

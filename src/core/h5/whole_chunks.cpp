@@ -58,6 +58,18 @@ bool fill(const Entries& entries, const Shape& chunk) {
     return !chunk.empty() && entries.first % chunk[0] == 0 && entries.shape[0] % chunk[0] == 0;
 }
 
+/// Makes `extent` 1 along the axes along which its elements are neighbours both in the chunk
+/// and in the entries. @returns how many there are together
+std::size_t take_neighbours(Shape& extent, const Shape& chunk, const Shape& entries) {
+    std::size_t n_together = 1;
+    for (std::size_t axis = extent.size(); axis-- > 0;) {
+        const std::size_t n = std::exchange(extent[axis], 1);
+        n_together *= n;
+        if (n != chunk[axis] || n != entries[axis]) break;
+    }
+    return n_together;
+}
+
 /// Copies the values of the chunk that begins at `first` of the entries; what of it lies beyond
 /// the dataset is zero.
 void gather(const Entries& entries, const Shape& first, const Shape& chunk, char* to) {
@@ -65,8 +77,7 @@ void gather(const Entries& entries, const Shape& first, const Shape& chunk, char
     for (std::size_t axis = 0; axis < chunk.size(); ++axis)
         extent[axis] = std::min(chunk[axis], entries.shape[axis] - first[axis]);
     if (extent != chunk) std::fill_n(to, n_elements(chunk) * element_bytes, '\0');
-    // Element by element along all axes but the last, along which they are neighbours.
-    const std::size_t run_bytes = std::exchange(extent.back(), 1) * element_bytes;
+    const std::size_t run_bytes = take_neighbours(extent, chunk, entries.shape) * element_bytes;
     Shape within(chunk.size(), 0), place = first;
     do {
         std::transform(first.begin(), first.end(), within.begin(), place.begin(), std::plus());
@@ -76,30 +87,32 @@ void gather(const Entries& entries, const Shape& first, const Shape& chunk, char
     } while (step(within, extent));
 }
 
-void append_checksum(std::vector<char>& bytes) {
-    const std::uint32_t sum = fletcher32({bytes.data(), bytes.size() - checksum_bytes});
+void append_checksum(char* bytes, std::size_t n_bytes) {
+    const std::uint32_t sum = fletcher32({bytes, n_bytes});
     for (std::size_t k = 0; k < checksum_bytes; ++k)
-        bytes[bytes.size() - checksum_bytes + k] = static_cast<char>(sum >> (8U * k));
+        bytes[n_bytes + k] = static_cast<char>(sum >> (8U * k));
 }
 
 }  // namespace
 
-bool write_whole_chunks(const H5::DataSet& set, const Entries& entries) {
+bool write_whole_chunks(const H5::DataSet& set, const Entries& entries, DraftFile& draft) {
     const Shape chunk = plain_chunk_of(set);
     if (!fill(entries, chunk) || !are_stored_as_they_are(set)) return false;
+    const std::size_t value_bytes = n_elements(chunk) * element_bytes;
+    const std::size_t n_bytes = value_bytes + checksum_bytes;
+    if (n_bytes > DraftFile::most_at_once) return false;
     Shape n_chunks(chunk.size()), number(chunk.size(), 0), first = number;
     for (std::size_t axis = 0; axis < chunk.size(); ++axis)
         n_chunks[axis] = (entries.shape[axis] + chunk[axis] - 1) / chunk[axis];
-    std::vector<char> bytes(n_elements(chunk) * element_bytes + checksum_bytes);
     do {
         std::transform(
             number.begin(), number.end(), chunk.begin(), first.begin(), std::multiplies());
-        gather(entries, first, chunk, bytes.data());
-        append_checksum(bytes);
+        char* const bytes = draft.room_for(n_bytes);
+        gather(entries, first, chunk, bytes);
+        append_checksum(bytes, value_bytes);
         std::vector<hsize_t> offset = extents(first);
         offset[0] += entries.first;
-        checked(H5Dwrite_chunk(
-                    set.getId(), H5P_DEFAULT, 0, offset.data(), bytes.size(), bytes.data()),
+        checked(H5Dwrite_chunk(set.getId(), H5P_DEFAULT, 0, offset.data(), n_bytes, bytes),
                 "H5Dwrite_chunk");
     } while (step(number, n_chunks));
     return true;

@@ -291,7 +291,7 @@ void Writer::append_elements(const std::string& path, const Elements& elements) 
         const Entries entries{start[0],
                               Shape(count.begin(), count.end()),
                               static_cast<const char*>(elements.data)};
-        if (write_whole_chunks(set, entries)) return;
+        if (write_whole_chunks(set, entries, *parts_->draft)) return;
         H5::DataSpace in_file = set.getSpace();
         in_file.selectHyperslab(H5S_SELECT_SET, count.data(), start.data());
         const H5::DataSpace in_memory(static_cast<int>(count.size()), count.data());

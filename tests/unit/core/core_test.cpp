@@ -1,6 +1,7 @@
 // SPDX-License-Identifier: GPL-2.0-or-later
 #include <algorithm>
 #include <catch2/catch.hpp>
+#include <numeric>
 #include <stdexcept>
 #include <string>
 #include <vector>
@@ -85,6 +86,47 @@ TEST_CASE("parallel_for visits every index once and rethrows the lowest failure"
                                                throw std::runtime_error(std::to_string(i));
                                        }),
                           "7");
+    }
+}
+
+TEST_CASE("parallel_sequences goes through each sequence in order, those behind first",
+          "[core]") {
+    constexpr std::size_t n_sequences = 5, n_parts = 40;
+    for (const int threads : {1, 2, 3, 8}) {
+        CAPTURE(threads);
+        std::vector<std::vector<std::size_t>> parts(n_sequences);
+        parallel_sequences(
+            n_sequences, n_parts, threads, [&](std::size_t sequence, std::size_t part) {
+                parts[sequence].push_back(part);
+            });
+        std::vector<std::size_t> in_order(n_parts);
+        std::iota(in_order.begin(), in_order.end(), std::size_t{0});
+        for (const std::vector<std::size_t>& of_one : parts) CHECK(of_one == in_order);
+    }
+    // One thread: abreast.
+    std::vector<std::size_t> visited;
+    parallel_sequences(3, 2, 1, [&](std::size_t sequence, std::size_t part) {
+        visited.push_back(10 * sequence + part);
+    });
+    CHECK(visited == std::vector<std::size_t>{0, 10, 20, 1, 11, 21});
+    parallel_sequences(0, 4, 2, [](std::size_t, std::size_t) { FAIL("there is none"); });
+    parallel_sequences(4, 0, 2, [](std::size_t, std::size_t) { FAIL("there is none"); });
+}
+
+TEST_CASE("a sequence that fails ends, the others go on, and the lowest failure is told",
+          "[core]") {
+    for (const int threads : {1, 2, 8}) {
+        CAPTURE(threads);
+        std::vector<std::size_t> n_parts(6, 0);
+        const auto run = [&] {
+            parallel_sequences(6, 10, threads, [&](std::size_t sequence, std::size_t part) {
+                if ((sequence == 2 && part == 7) || (sequence == 4 && part == 1))
+                    throw std::runtime_error(std::to_string(sequence));
+                ++n_parts[sequence];
+            });
+        };
+        CHECK_THROWS_WITH(run(), "2");
+        CHECK(n_parts == std::vector<std::size_t>{10, 10, 7, 10, 1, 10});
     }
 }
 
