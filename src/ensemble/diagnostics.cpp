@@ -28,7 +28,7 @@ Middle middle_of(std::span<const Placed> sorted_draws) {
 
 /// z of the draws and z of |draw - median|, in the order of the draws.
 struct Scores {
-    std::vector<double> location, folded;
+    LargeArray location, folded;
 };
 
 Scores scores_of(std::span<const Placed> sorted_draws,
@@ -50,7 +50,7 @@ double smaller_or_nan(double a, double b) {
 }
 
 double effective_size_below(const Chains& chains, double threshold) {
-    std::vector<double> is_below(chains.value.size());
+    LargeArray is_below(chains.value.size());
     std::transform(
         chains.value.begin(), chains.value.end(), is_below.begin(), [&](double value) {
             return value <= threshold ? 1.0 : 0.0;
@@ -77,7 +77,7 @@ struct Split {
                                effective_size_below(chains, middle.q95))};
     }
 
-    std::vector<double> kept;
+    LargeArray kept;
     Eigen::Index n_chains;
     Scores scores;
 };
@@ -99,11 +99,10 @@ std::vector<double> draw_by_draw(const Eigen::Ref<const Eigen::MatrixXd>& chains
 }
 
 /// rows x replicates x walkers -> (rows x walkers) x replicates: one chain a replicate.
-std::vector<double> chain_per_replicate(std::span<const double> series,
-                                        const SeriesShape& shape) {
+LargeArray chain_per_replicate(std::span<const double> series, const SeriesShape& shape) {
     const auto n_replicates = static_cast<std::size_t>(shape.n_replicates);
     const auto n_looked = static_cast<std::size_t>(shape.n_looked);
-    std::vector<double> out(series.size());
+    LargeArray out(series.size());
     for (std::size_t at = 0; at < series.size(); ++at) {
         const std::size_t walker = at % n_looked;
         const std::size_t replicate = at / n_looked % n_replicates;
@@ -125,7 +124,7 @@ double replicate_rhat(std::span<const double> series,
                       double median,
                       const SeriesShape& shape,
                       const ScoreTables& tables) {
-    const std::vector<double> value = chain_per_replicate(series, shape);
+    const LargeArray value = chain_per_replicate(series, shape);
     return Split({value, shape.n_replicates}, median, tables).rhat();
 }
 
@@ -157,7 +156,7 @@ ScalarDiagnostics diagnose_series(const std::string& name,
     out.name = name;
     const Chains chains{series, shape.n_chains()};
     if (!is_usable(chains)) return out;
-    const std::vector<Placed> sorted_draws = sorted(series);
+    const PlacedDraws sorted_draws = sorted(series);
     const Middle middle = middle_of(sorted_draws);
     Scores scores = scores_of(sorted_draws, middle.median, tables);
     const bool replicates_are_even = chains.n_draws() * shape.n_looked % 2 == 0;
@@ -191,8 +190,7 @@ std::vector<ScalarDiagnostics> diagnose(const std::vector<MonitoredScalar>& scal
     const ScoreTables tables(draws.n_rows, shape);
     std::vector<ScalarDiagnostics> out(scalars.size());
     parallel_for(scalars.size(), threads, [&](std::size_t index) {
-        std::vector<double> series;
-        series.reserve(static_cast<std::size_t>(draws.n_rows * shape.n_chains()));
+        LargeArray series;
         append_series(scalars[index], draws, 0, draws.n_rows, series);
         out[index] = diagnose_series(scalars[index].name, series, shape, steps_per_row, tables);
     });

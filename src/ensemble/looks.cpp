@@ -4,6 +4,7 @@
 #include <algorithm>
 #include <cmath>
 #include <numeric>
+#include <span>
 
 #include "deviascope/core/parallel.h"
 #include "ensemble/score_tables.h"
@@ -13,7 +14,7 @@ namespace deviascope {
 namespace {
 
 /// Nothing can be said without rows.
-bool is_constant(const std::vector<double>& series) {
+bool is_constant(std::span<const double> series) {
     return !series.empty() && std::all_of(series.begin(), series.end(), [&](double value) {
         return value == series.front();
     });

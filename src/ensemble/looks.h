@@ -6,6 +6,7 @@
 #include <limits>
 #include <vector>
 
+#include "deviascope/core/large_array.h"
 #include "deviascope/ensemble/draws.h"
 #include "deviascope/ensemble/monitored.h"
 #include "ensemble/series.h"
@@ -49,13 +50,13 @@ class WatchedSeries {
     std::size_t n_scalars() const { return scalars_.size(); }
     const std::vector<MonitoredScalar>& scalars() const { return scalars_; }
     const SeriesShape& shape() const { return shape_; }
-    const std::vector<double>& series(std::size_t scalar) const { return series_[scalar]; }
+    const LargeArray& series(std::size_t scalar) const { return series_[scalar]; }
 
   private:
     std::vector<MonitoredScalar> scalars_;
     SeriesShape shape_;
     Eigen::Index n_rows_ = 0;
-    std::vector<std::vector<double>> series_;
+    std::vector<LargeArray> series_;
 };
 
 /// Looks at series; tests first the scalar that failed last and ends at the first failure.

@@ -33,10 +33,10 @@ double ScoreTable::of(std::size_t first, std::size_t last) const {
     return normal_score(average_rank, score_.size());
 }
 
-std::vector<Placed> sorted(std::span<const double> draws) {
+PlacedDraws sorted(std::span<const double> draws) {
     ensure(draws.size() <= std::numeric_limits<std::uint32_t>::max(),
            "the draws of one scalar can be counted in 32 bits");
-    std::vector<Placed> out(draws.size());
+    PlacedDraws out(draws.size());
     for (std::size_t place = 0; place < draws.size(); ++place)
         out[place] = {draws[place], static_cast<std::uint32_t>(place)};
     std::sort(out.begin(), out.end(), [](const Placed& a, const Placed& b) {
@@ -54,7 +54,7 @@ double quantile(std::span<const Placed> sorted_draws, double probability) {
     return (1.0 - share) * sorted_draws[below].value + share * sorted_draws[above].value;
 }
 
-std::vector<Placed> folded(std::span<const Placed> sorted_draws, double centre) {
+PlacedDraws folded(std::span<const Placed> sorted_draws, double centre) {
     const auto distance = [&](const Placed& draw) { return std::abs(draw.value - centre); };
     const auto middle =
         std::partition_point(sorted_draws.begin(), sorted_draws.end(), [&](const Placed& draw) {
@@ -63,21 +63,19 @@ std::vector<Placed> folded(std::span<const Placed> sorted_draws, double centre) 
     // Distances rise away from the centre on either side: merge the two sides.
     auto right = middle;
     auto left = middle;
-    std::vector<Placed> out;
-    out.reserve(sorted_draws.size());
-    while (out.size() < sorted_draws.size()) {
+    PlacedDraws out(sorted_draws.size());
+    for (Placed& next : out) {
         const bool take_right =
             left == sorted_draws.begin() ||
             (right != sorted_draws.end() && distance(*right) <= distance(*(left - 1)));
         const Placed& draw = take_right ? *right++ : *--left;
-        out.push_back({distance(draw), draw.place});
+        next = {distance(draw), draw.place};
     }
     return out;
 }
 
-std::vector<double> scores_by_place(std::span<const Placed> sorted_draws,
-                                    const ScoreTable& table) {
-    std::vector<double> scores(sorted_draws.size());
+LargeArray scores_by_place(std::span<const Placed> sorted_draws, const ScoreTable& table) {
+    LargeArray scores(sorted_draws.size());
     std::size_t first = 0;
     while (first < sorted_draws.size()) {
         std::size_t last = first + 1;

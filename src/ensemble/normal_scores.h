@@ -6,6 +6,8 @@
 #include <span>
 #include <vector>
 
+#include "deviascope/core/large_array.h"
+
 namespace deviascope {
 
 /// Normal score of average rank r among S draws (Blom 1958, as used by Vehtari et al. 2021,
@@ -29,18 +31,18 @@ struct Placed {
     double value;
     std::uint32_t place;
 };
-std::vector<Placed> sorted(std::span<const double> draws);
+using PlacedDraws = std::vector<Placed, LeavesUnset<Placed>>;
+PlacedDraws sorted(std::span<const double> draws);
 
 /// Quantile of sorted draws by linear interpolation between order statistics (type 7 of Hyndman
 /// & Fan 1996, American Statistician 50, 361). @param probability  0 … 1
 double quantile(std::span<const Placed> sorted_draws, double probability);
 
 /// Sorted draws turned into sorted distances from a centre, |x - centre|, places kept.
-std::vector<Placed> folded(std::span<const Placed> sorted_draws, double centre);
+PlacedDraws folded(std::span<const Placed> sorted_draws, double centre);
 
 /// Scores in the order of the places: result[place] = score of that draw, ties sharing the
 /// score of their average rank.
-std::vector<double> scores_by_place(std::span<const Placed> sorted_draws,
-                                    const ScoreTable& table);
+LargeArray scores_by_place(std::span<const Placed> sorted_draws, const ScoreTable& table);
 
 }  // namespace deviascope

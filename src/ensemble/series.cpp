@@ -13,12 +13,14 @@ void append_series(const MonitoredScalar& scalar,
                    const Draws& draws,
                    Eigen::Index first_row,
                    Eigen::Index last_row,
-                   std::vector<double>& series) {
+                   LargeArray& series) {
     const SeriesShape shape = series_shape(draws.n_replicates, draws.n_walkers);
+    std::size_t place = series.size();
+    series.resize(place + static_cast<std::size_t>((last_row - first_row) * shape.n_chains()));
     for (Eigen::Index row = first_row; row < last_row; ++row)
         for (Eigen::Index replicate = 0; replicate < shape.n_replicates; ++replicate)
             for (Eigen::Index walker = 0; walker < shape.n_looked; ++walker)
-                series.push_back(scalar.value(draws.row_of(row, replicate, walker)));
+                series[place++] = scalar.value(draws.row_of(row, replicate, walker));
 }
 
 }  // namespace deviascope

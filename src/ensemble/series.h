@@ -7,6 +7,7 @@
 #include <span>
 #include <vector>
 
+#include "deviascope/core/large_array.h"
 #include "deviascope/ensemble/diagnostics.h"
 #include "deviascope/ensemble/draws.h"
 #include "deviascope/ensemble/monitored.h"
@@ -29,7 +30,7 @@ void append_series(const MonitoredScalar& scalar,
                    const Draws& draws,
                    Eigen::Index first_row,
                    Eigen::Index last_row,
-                   std::vector<double>& series);
+                   LargeArray& series);
 
 class ScoreTables;
 

@@ -6,6 +6,7 @@
 #include <array>
 #include <cmath>
 #include <limits>
+#include <vector>
 
 namespace deviascope {
 
@@ -77,7 +78,7 @@ class CentredHalves {
 
     std::size_t n_;
     std::size_t n_chains_;
-    std::vector<double> value_;
+    LargeArray value_;
     std::vector<double> mean_;
 };
 
@@ -123,8 +124,8 @@ double sum_of_pairs(const CentredHalves& halves, const Variances& variance) {
 
 }  // namespace
 
-std::vector<double> without_middle(const Chains& chains) {
-    std::vector<double> kept(chains.value.begin(), chains.value.end());
+LargeArray without_middle(const Chains& chains) {
+    LargeArray kept(chains.value.begin(), chains.value.end());
     if (chains.n_draws() % 2 == 0) return kept;
     const auto middle = kept.begin() + chains.n_draws() / 2 * chains.n_chains;
     kept.erase(middle, middle + chains.n_chains);

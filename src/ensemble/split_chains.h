@@ -4,7 +4,8 @@
 
 #include <Eigen/Core>
 #include <span>
-#include <vector>
+
+#include "deviascope/core/large_array.h"
 
 namespace deviascope {
 
@@ -18,7 +19,7 @@ struct Chains {
 };
 
 /// A copy without the middle draw of each chain where the number of draws is odd.
-std::vector<double> without_middle(const Chains& chains);
+LargeArray without_middle(const Chains& chains);
 
 /// sqrt(var+ / W) of the halves of all chains; NaN where all is constant.
 double split_rhat(const Chains& chains);

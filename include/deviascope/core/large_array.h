@@ -2,6 +2,7 @@
 // CORE: arrays of many numbers
 #pragma once
 
+#include <cstddef>
 #include <memory>
 #include <new>
 #include <utility>
@@ -9,8 +10,14 @@
 
 namespace deviascope {
 
-/// Leaves new elements unset where std::allocator makes them zero. Whoever grows the array writes
-/// every element before it is read.
+/// Memory that the system is asked to make of its larger pages where it is long enough: they
+/// are fewer to be made at the first touch, and to be looked up. Errors: std::bad_alloc.
+void* large_memory(std::size_t n_bytes);
+/// Gives back memory of that length from `large_memory`.
+void free_large_memory(void* memory, std::size_t n_bytes) noexcept;
+
+/// Leaves new elements unset where std::allocator makes them zero. Whoever grows the array
+/// writes every element before it is read. Takes large memory.
 template <class Value>
 struct LeavesUnset : std::allocator<Value> {
     template <class Other>
@@ -22,6 +29,13 @@ struct LeavesUnset : std::allocator<Value> {
     template <class Other>
     LeavesUnset(const LeavesUnset<Other>&) noexcept {}
 
+    Value* allocate(std::size_t n) {
+        return static_cast<Value*>(large_memory(n * sizeof(Value)));
+    }
+    void deallocate(Value* place, std::size_t n) noexcept {
+        free_large_memory(place, n * sizeof(Value));
+    }
+
     template <class Element>
     void construct(Element* place) {
         ::new (static_cast<void*>(place)) Element;
@@ -32,7 +46,8 @@ struct LeavesUnset : std::allocator<Value> {
     }
 };
 
-/// For draws: filled row by row on many threads, each of which so touches its own pages first.
+/// For draws and what is made of them: filled on many threads, each of which so touches its own
+/// pages first.
 using LargeArray = std::vector<double, LeavesUnset<double>>;
 
 }  // namespace deviascope
