@@ -10,8 +10,14 @@
 
 namespace deviascope {
 
-/// Memory that the system is asked to make of its larger pages where it is long enough: they
-/// are fewer to be made at the first touch, and to be looked up. Errors: std::bad_alloc.
+/// The system's larger pages (on x86-64), and from what length memory lies on them: in less,
+/// much of the last one could be of no use.
+inline constexpr std::size_t large_page_bytes = std::size_t{2} << 20U;
+inline constexpr std::size_t large_from_bytes = 2 * large_page_bytes;
+
+/// Memory, unset. From that length on it begins where a large page can, and the system is asked
+/// for such: fewer have to be made at the first touch, looked up, and named to the disk.
+/// Errors: std::bad_alloc.
 void* large_memory(std::size_t n_bytes);
 /// Gives back memory of that length from `large_memory`.
 void free_large_memory(void* memory, std::size_t n_bytes) noexcept;

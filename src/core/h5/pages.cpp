@@ -1,8 +1,6 @@
 // SPDX-License-Identifier: GPL-2.0-or-later
 #include "core/h5/pages.h"
 
-#include <sys/mman.h>
-
 #include <algorithm>
 #include <iterator>
 #include <string_view>
@@ -23,12 +21,8 @@ void write_run(std::string_view run, std::uint64_t offset, const Descriptor& fil
         file.write(run, offset);
 }
 
-/// Asks the system for pages of its larger kind: fewer to be made, and to be named to the disk.
-template <class Memory>
-std::unique_ptr<Memory> on_large_pages(std::unique_ptr<Memory> memory) {
-    ::madvise(memory.get(), sizeof(Memory), MADV_HUGEPAGE);  // if it refuses: smaller ones
-    return memory;
-}
+// What is written past the cache begins where a page of the disk could.
+static_assert(pages_together * page_bytes >= large_from_bytes);
 
 }  // namespace
 
@@ -67,9 +61,8 @@ char* Pages::take(std::size_t n_pages) {
     const std::size_t rest = pages_together - n_taken_ % pages_together;
     if (rest < n_pages) n_taken_ += rest;
     const std::size_t slab = n_taken_ / pages_together;
-    if (slab == slabs_.size())
-        slabs_.push_back(on_large_pages(std::make_unique_for_overwrite<Slab>()));
-    char* const memory = slabs_[slab]->bytes + n_taken_ % pages_together * page_bytes;
+    if (slab == slabs_.size()) slabs_.emplace_back(pages_together * page_bytes);
+    char* const memory = slabs_[slab].data() + n_taken_ % pages_together * page_bytes;
     n_taken_ += n_pages;
     return memory;
 }

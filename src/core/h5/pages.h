@@ -4,10 +4,10 @@
 
 #include <cstdint>
 #include <map>
-#include <memory>
 #include <vector>
 
 #include "core/descriptor.h"
+#include "deviascope/core/large_array.h"
 
 namespace deviascope::h5 {
 
@@ -41,10 +41,7 @@ class Pages {
     void write_to(const Descriptor& file, std::uint64_t length) const;
 
   private:
-    /// Aligned as the system's larger pages are (2 MB).
-    struct Slab {
-        alignas(2097152) char bytes[pages_together * page_bytes];
-    };
+    using Slab = std::vector<char, LeavesUnset<char>>;
     /// Pages that are neighbours in the file and in memory.
     struct Run {
         char* memory = nullptr;
@@ -57,7 +54,7 @@ class Pages {
 
     std::map<std::uint64_t, Run> runs_;  ///< by the number of their first page
     Run reserved_;
-    std::vector<std::unique_ptr<Slab>> slabs_;
+    std::vector<Slab> slabs_;  ///< each of pages_together pages
     std::size_t n_taken_ = 0;  ///< pages of the slabs, in order
 };
 

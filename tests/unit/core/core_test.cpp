@@ -1,6 +1,7 @@
 // SPDX-License-Identifier: GPL-2.0-or-later
 #include <algorithm>
 #include <catch2/catch.hpp>
+#include <cstdint>
 #include <numeric>
 #include <stdexcept>
 #include <string>
@@ -8,6 +9,7 @@
 
 #include "deviascope/core/digest.h"
 #include "deviascope/core/error.h"
+#include "deviascope/core/large_array.h"
 #include "deviascope/core/nearest_name.h"
 #include "deviascope/core/parallel.h"
 #include "deviascope/core/random.h"
@@ -128,6 +130,31 @@ TEST_CASE("a sequence that fails ends, the others go on, and the lowest failure 
         CHECK_THROWS_WITH(run(), "2");
         CHECK(n_parts == std::vector<std::size_t>{10, 10, 7, 10, 1, 10});
     }
+}
+
+TEST_CASE("large arrays keep their values while they grow past the length of large pages",
+          "[core]") {
+    const std::size_t limit = large_from_bytes / sizeof(double);
+    LargeArray array;
+    for (const std::size_t n : {std::size_t{1}, limit - 1, limit, limit + 1, 3 * limit}) {
+        const std::size_t n_before = array.size();
+        array.resize(n);
+        for (std::size_t place = n_before; place < n; ++place)
+            array[place] = static_cast<double>(place);
+        const bool begins_at_large_page =
+            reinterpret_cast<std::uintptr_t>(array.data()) % large_page_bytes == 0;
+        CHECK((n < limit || begins_at_large_page));
+        std::size_t n_wrong = 0;
+        for (std::size_t place = 0; place < n; ++place)
+            n_wrong += array[place] != static_cast<double>(place);
+        CHECK(n_wrong == 0);
+    }
+    const LargeArray copy = array;
+    array.resize(2);
+    array.shrink_to_fit();
+    CHECK(array == LargeArray{0.0, 1.0});
+    CHECK(copy.size() == 3 * limit);
+    CHECK(copy.back() == static_cast<double>(3 * limit - 1));
 }
 
 TEST_CASE("nearest_name finds typing errors and stays silent otherwise", "[core]") {
