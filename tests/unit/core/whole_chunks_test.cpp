@@ -115,12 +115,14 @@ TEST_CASE("chunks stored whole are the chunks that the HDF5 library stores, bit 
     };
     // Chunks that fit, and chunks that reach beyond both other axes; small ones, which are
     // copied into pages, and large ones, which become pages.
-    for (const auto& [entry, chunk] : {Case{{3, 10}, {4, 1, 5}},
-                                       Case{{3, 10}, {4, 2, 3}},
-                                       Case{{3, 10}, {1, 3, 10}},
-                                       Case{{3, 700}, {12, 1, 700}},
-                                       Case{{3, 1024}, {8, 1, 1024}},
-                                       Case{{3, 900}, {12, 2, 601}}}) {
+    const std::vector<Case> cases{{{3, 10}, {4, 1, 5}},
+                                  {{3, 10}, {4, 2, 3}},
+                                  {{3, 10}, {1, 3, 10}},
+                                  {{3, 700}, {12, 1, 700}},
+                                  {{3, 1024}, {8, 1, 1024}},
+                                  {{3, 900}, {12, 2, 601}}};
+    for (const Case& one : cases) {
+        const Shape &entry = one.entry, &chunk = one.chunk;
         const std::size_t per_row = entry[0] * entry[1], n_rows = 48;
         const std::vector<double> values = ramp(n_rows * per_row);
         const std::span<const double> all(values);
@@ -129,7 +131,7 @@ TEST_CASE("chunks stored whole are the chunks that the HDF5 library stores, bit 
                 writer.growing_reals(name, about, entry, chunk, Writer::Packing::plain);
         });
         h5::ExchangedFile file(path);
-        for (const std::size_t first : {0, 24})
+        for (const std::size_t first : {0U, 24U})
             file.change([&](Writer& writer) {
                 writer.append("/whole", all.subspan(first * per_row, 24 * per_row));
             });
