@@ -14,14 +14,6 @@ void Draft::write_to(const Descriptor& file) const {
     if (file.size() != length) file.resize(length);
 }
 
-namespace {
-
-std::size_t pages_for(std::size_t n_bytes) {
-    return (n_bytes + page_bytes - 1) / page_bytes;
-}
-
-}  // namespace
-
 struct DraftFile::Parts {
     const Descriptor* base = nullptr;
     Draft draft;

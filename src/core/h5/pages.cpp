@@ -89,8 +89,8 @@ void Pages::write_to(const Descriptor& file, std::uint64_t length) const {
     for (const auto& [first, run] : runs_) {
         const std::uint64_t offset = first * page_bytes;
         if (offset >= length) break;
-        const std::uint64_t wanted = (length - offset + page_bytes - 1) / page_bytes;
-        const std::size_t n_pages = std::min<std::uint64_t>(run.n_pages, wanted);
+        const std::size_t n_pages =
+            std::min<std::uint64_t>(run.n_pages, pages_for(length - offset));
         write_run({run.memory, n_pages * page_bytes}, offset, file);
     }
 }

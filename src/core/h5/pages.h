@@ -15,6 +15,11 @@ inline constexpr std::uint64_t page_bytes = 4096;
 /// Pages that go in one call at most.
 inline constexpr std::size_t pages_together = 1024;
 
+/// Pages that hold so many bytes, the last of them perhaps in part.
+constexpr std::uint64_t pages_for(std::uint64_t n_bytes) {
+    return (n_bytes + page_bytes - 1) / page_bytes;
+}
+
 /// Pages of a file by number (offset / page_bytes). Pages added one after another mostly lie
 /// one after another in memory, and are then written in one call. Memory that was touched once
 /// is worth keeping: a fresh page costs the system more than copying into it.
