@@ -126,6 +126,7 @@ void check_calibration(std::size_t n_skies, int n_bins) {
     const ModelOptions model = calibration_model();
     const Counts counts = test::simulate_sky(test::draw_truth(model, stream), 8, stream);
     const std::vector<MonitoredScalar> scalars = ranked_scalars(Posterior(counts, model));
+    REQUIRE_FALSE(scalars.empty());
     for (std::size_t scalar = 0; scalar < scalars.size(); ++scalar) {
         std::vector<int> of_scalar;
         for (const std::vector<int>& sky : ranks) of_scalar.push_back(sky[scalar]);
