@@ -15,6 +15,7 @@
 #include "figures/sky_figures.h"
 #include "summary/counted_words.h"
 #include "summary/rounding.h"
+#include "summary/vector_words.h"
 
 namespace deviascope {
 namespace {
@@ -65,18 +66,20 @@ std::string in_frame(const std::string& table) {
 
 // ---- words ----
 
-std::string vector_name(const VectorSummary& vector) {
-    if (vector.name == "velocity") return "the observer's velocity";
-    if (vector.name == "all") return "the intrinsic dipole";
-    return "the intrinsic dipole of " + vector.name;
-}
-
 std::string measured(const ScalarEstimate& estimate, double unit) {
     const double error = half_width(estimate.interval68) * unit;
     return fmt::format("{} (68 %: {} to {})",
                        measured_number(estimate.median * unit, error),
                        measured_number(estimate.interval68[0] * unit, error),
                        measured_number(estimate.interval68[1] * unit, error));
+}
+
+/// The amplitude with its interval, or its upper limit.
+std::string amplitude_words(const VectorSummary& vector, double unit) {
+    if (!vector.amplitude_limits) return measured(vector.amplitude, unit);
+    const auto& [limit68, limit95] = *vector.amplitude_limits;
+    return fmt::format("less than {} (95 %)",
+                       measured_number(limit95 * unit, 0.5 * limit68 * unit));
 }
 
 std::string towards(const VectorSummary& vector) {
@@ -94,7 +97,7 @@ std::string velocity_sentence(const Summary& summary) {
         return fmt::format("The observer's velocity was fixed at {} km/s.",
                            short_number(velocity.amplitude.median * speed_of_light_km_s));
     return fmt::format("The observer moves at {} km/s {}.",
-                       measured(velocity.amplitude, speed_of_light_km_s),
+                       amplitude_words(velocity, speed_of_light_km_s),
                        towards(velocity));
 }
 
@@ -102,18 +105,18 @@ std::string intrinsic_sentence(const Summary& summary) {
     std::vector<std::string> parts;
     for (const VectorSummary& vector : summary.intrinsic) {
         if (!vector.amplitude_free) {
-            parts.push_back(fmt::format("{} was fixed at {}",
-                                        vector_name(vector),
+            parts.push_back(fmt::format("the {} was fixed at {}",
+                                        name_of(vector),
                                         short_number(vector.amplitude.median)));
             continue;
         }
-        parts.push_back(fmt::format("{} has an amplitude of {} in thousandths, {}",
-                                    vector_name(vector),
-                                    measured(vector.amplitude, 1000.0),
+        parts.push_back(fmt::format("the {} has an amplitude of {} in thousandths, {}",
+                                    name_of(vector),
+                                    amplitude_words(vector, 1000.0),
                                     towards(vector)));
     }
     std::string text = fmt::format("{}.", fmt::join(parts, "; "));
-    if (!text.empty() && text[0] == 't') text[0] = 'T';
+    if (text[0] == 't') text[0] = 'T';
     return text;
 }
 

@@ -4,12 +4,12 @@
 #include <fmt/format.h>
 #include <fmt/ranges.h>
 
-#include <algorithm>
 #include <cmath>
 
 #include "deviascope/core/nearest_name.h"
 #include "deviascope/core/physical_constants.h"
 #include "deviascope/summary/draw_values.h"
+#include "deviascope/summary/upper_limit.h"
 #include "summary/rounding.h"
 
 namespace deviascope {
@@ -21,27 +21,17 @@ double furthest(const FigureContext& context, std::size_t vector) {
     return context.source.space.vector_prior(vector).furthest();
 }
 
-/// A density that stands high at 0: zero is not excluded, and no lower end can be quoted.
-bool is_piled_up_at_zero(const Scalar& scalar) {
-    if (!scalar.support.lowest || *scalar.support.lowest != 0.0) return false;
-    const LineDensity& density = scalar.density;
-    // exp(-2): the height of a Gaussian at its 95.45 % interval's end.
-    return !density.place.empty() && density.place.front() == 0.0 &&
-           density.density.front() > std::exp(-2.0) * density.peak();
-}
-
 void finish(Scalar& scalar, const FigureContext& context) {
     for (double& value : scalar.values) value *= scalar.scale;
     scalar.estimate = estimate_of(scalar.values);
     scalar.effective = effective_values(
         scalar.name, context.source.summary.sampling.scalars, context.source.chain.draws);
     scalar.density = line_density(scalar.values, scalar.effective, scalar.support);
-    scalar.is_one_sided = is_piled_up_at_zero(scalar);
-    if (!scalar.is_one_sided) return;
-    std::vector<double> sorted = scalar.values;
-    std::ranges::sort(sorted);
-    scalar.estimate.interval68 = {0.0, quantile_of(sorted, level68)};
-    scalar.estimate.interval95 = {0.0, quantile_of(sorted, level95)};
+    const auto limits = upper_limits_of(scalar.values, scalar.density, scalar.support);
+    scalar.is_one_sided = limits.has_value();
+    if (!limits) return;
+    scalar.estimate.interval68 = {0.0, limits->limit68};
+    scalar.estimate.interval95 = {0.0, limits->limit95};
 }
 
 /// Parts of a name: `weight.dunlin.faint` has three.

@@ -24,7 +24,7 @@ struct Scalar {
     LineDensity density;         ///< scaled
     double effective = 0.0;      ///< independent draws
     std::size_t series = 0;      ///< colour
-    bool is_one_sided = false;   ///< piled up against 0: an upper limit is what it says
+    bool is_one_sided = false;   ///< has upper limits: not told from 0
 
     /// `1 656 +103 −90`, or `< 4.6 (95 %)`, without unit.
     Line value_text() const;

@@ -5,24 +5,16 @@
 
 #include <cmath>
 
+#include "summary/vector_words.h"
+
 namespace deviascope {
-namespace {
-
-std::string name_of_vector(const std::string& name) {
-    if (name == "velocity") return name;
-    if (name == "all") return "intrinsic dipole";
-    return "intrinsic dipole of " + name;
-}
-
-}  // namespace
 
 std::vector<VectorSeries> vector_series(const FigureSource& source) {
     std::vector<VectorSeries> series;
     for (std::size_t index = 0; index < source.chain.vectors.size(); ++index) {
         const VectorSummary& summary =
             index == 0 ? source.summary.velocity : source.summary.intrinsic[index - 1];
-        series.push_back(
-            {index, &source.chain.vectors[index], &summary, name_of_vector(summary.name)});
+        series.push_back({index, &source.chain.vectors[index], &summary, name_of(summary)});
     }
     return series;
 }

@@ -10,6 +10,7 @@
 
 #include "ensemble/looks.h"
 #include "summary/rounding.h"
+#include "summary/vector_words.h"
 
 namespace deviascope {
 namespace {
@@ -22,12 +23,6 @@ constexpr double prior_wide = 0.8;
 constexpr double edge_share = 0.95;
 /// 95.45 % quantile of chi-squared with 3 degrees of freedom (scipy.stats.chi2).
 constexpr double chi_squared_95 = 8.024881760;
-
-std::string words_for(const VectorSummary& vector) {
-    if (vector.name == "velocity") return "the velocity";
-    if (vector.name == "all") return "the shared intrinsic dipole";
-    return "the intrinsic dipole of " + vector.name;
-}
 
 // ---- sampling ----
 
@@ -185,7 +180,7 @@ bool is_measurement(const VectorPrior& prior) {
 void add_vector(const VectorSummary& vector,
                 const VectorPrior& prior,
                 std::vector<std::string>& cautions) {
-    const std::string name = words_for(vector);
+    const std::string name = "the " + name_of(vector);
     if (vector.draws_without_direction > 0)
         cautions.push_back(fmt::format(
             "{} draws of {} have length zero and no direction; they are left out of directions "
@@ -208,7 +203,13 @@ void add_vector(const VectorSummary& vector,
                         name,
                         vector.prior,
                         edge_of(prior)));
-    if (!has_volume_factor(prior)) return;
+    if (vector.amplitude_limits)
+        cautions.push_back(
+            fmt::format("No detection of {}: the density of its amplitude stands high at zero. "
+                        "Quote its upper limit, below which 95.45 % of the draws lie: {}.",
+                        name,
+                        limit_in_words(vector)));
+    if (vector.amplitude_limits || !has_volume_factor(prior)) return;
     const double chi_squared = vector.mean.dot(vector.covariance.inverse() * vector.mean);
     if (chi_squared < chi_squared_95)
         cautions.push_back(fmt::format(

@@ -9,7 +9,7 @@
 
 namespace deviascope {
 
-/// Mean and covariance (with n - 1) of the columns.
+/// Mean and covariance (with n - 1; NaN for one draw) of the columns.
 struct DrawMoments {
     Eigen::VectorXd mean;
     Eigen::MatrixXd covariance;

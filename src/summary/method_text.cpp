@@ -8,6 +8,7 @@
 #include "deviascope/core/grouped_number.h"
 #include "deviascope/summary/result_tables.h"
 #include "summary/counted_words.h"
+#include "summary/vector_words.h"
 
 namespace deviascope {
 namespace {
@@ -50,12 +51,8 @@ std::string model_sentences(const Summary& summary) {
 }
 
 std::string prior_sentence(const VectorSummary& vector) {
-    const std::string owner = vector.name == "velocity" ? "the velocity"
-                              : vector.name == "all"
-                                  ? "the intrinsic dipole, shared by all surveys,"
-                                  : "the intrinsic dipole of " + latex_text(vector.name);
-    return fmt::format("The prior of {} is {} ({}).",
-                       owner,
+    return fmt::format("The prior of the {} is {} ({}).",
+                       latex_text(name_of(vector)),
                        latex_text(vector.prior),
                        latex_text(vector.prior_description));
 }

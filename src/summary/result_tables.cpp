@@ -9,6 +9,7 @@
 #include "deviascope/core/grouped_number.h"
 #include "deviascope/core/physical_constants.h"
 #include "summary/rounding.h"
+#include "summary/vector_words.h"
 
 namespace deviascope {
 namespace {
@@ -26,9 +27,16 @@ Cell interval_cell(const Interval& interval, double unit, double error) {
     return rounded(Interval{interval[0] * unit, interval[1] * unit}, error * unit);
 }
 
-std::string owner_of(const VectorSummary& vector) {
-    if (vector.name == "velocity") return "velocity";
-    return vector.name == "all" ? "intrinsic dipole" : "intrinsic dipole, " + vector.name;
+/// The interval that holds 68 % about the median, or the limit where zero is not excluded, and
+/// what holds 95 %.
+std::vector<Cell> amplitude_cells(const VectorSummary& vector, double unit) {
+    if (vector.amplitude_limits) {
+        const std::string limit = rounded(*vector.amplitude_limits, 1.0 / unit);
+        return {"< " + limit + " (95 %)", "0 to " + limit};
+    }
+    return {measured(vector.amplitude, unit),
+            interval_cell(
+                vector.amplitude.interval95, unit, half_width(vector.amplitude.interval68))};
 }
 
 /// Longitude and latitude in degrees, rounded by the region's standard deviation.
@@ -55,15 +63,13 @@ void add_place(std::vector<Cell>& row, const VectorSummary& vector) {
 std::vector<Cell> vector_row(const VectorSummary& vector,
                              const std::string& quantity,
                              double unit) {
-    std::vector<Cell> row{owner_of(vector), quantity};
+    std::vector<Cell> row{name_of(vector), quantity};
     if (!vector.amplitude_free) {
         row.emplace_back(short_number(vector.amplitude.median * unit) + " (fixed)");
         row.emplace_back("–");
         row.emplace_back("–");
     } else {
-        row.push_back(measured(vector.amplitude, unit));
-        row.push_back(interval_cell(
-            vector.amplitude.interval95, unit, half_width(vector.amplitude.interval68)));
+        for (Cell& cell : amplitude_cells(vector, unit)) row.push_back(std::move(cell));
         row.emplace_back(short_number(vector.prior_median_amplitude * unit));
     }
     add_place(row, vector);
@@ -107,6 +113,13 @@ std::string csv_row(const VectorSummary& vector) {
     return row + "\n";
 }
 
+bool has_limits(const Summary& summary) {
+    return summary.velocity.amplitude_limits ||
+           std::ranges::any_of(summary.intrinsic, [](const VectorSummary& vector) {
+               return vector.amplitude_limits.has_value();
+           });
+}
+
 }  // namespace
 
 ResultTable results_table(const Summary& summary) {
@@ -116,6 +129,10 @@ ResultTable results_table(const Summary& summary) {
         "Velocity of the observer and intrinsic dipoles: medians with 68 % intervals of the "
         "posterior, 95 % intervals, the median under the prior alone, mean directions (deg), "
         "and radius (deg) and area (square degrees) of the 68 % region of direction.";
+    if (has_limits(summary))
+        table.caption +=
+            " Amplitudes that are not told from zero have the upper limit below which 95.45 % "
+            "of the draws lie.";
     if (!summary.sampling.converged)
         table.caption += " The sampling has NOT converged: not for publication.";
     table.sides = "llrrrrrrrrr";

@@ -74,4 +74,8 @@ ScalarEstimate in_unit(ScalarEstimate estimate, double unit) {
     return estimate;
 }
 
+std::string rounded(const UpperLimits& limits, double unit) {
+    return rounded(limits.limit95 / unit, 0.5 * limits.limit68 / unit);
+}
+
 }  // namespace deviascope

@@ -6,6 +6,7 @@
 #include <string>
 
 #include "deviascope/summary/interval.h"
+#include "deviascope/summary/upper_limit.h"
 
 namespace deviascope {
 
@@ -32,5 +33,8 @@ double half_width(const Interval& interval);
 
 /// An estimate in another unit: location and spread divided by it.
 ScalarEstimate in_unit(ScalarEstimate estimate, double unit);
+
+/// The 95.45 % limit in another unit, to two digits of half the 68.27 % limit.
+std::string rounded(const UpperLimits& limits, double unit);
 
 }  // namespace deviascope

@@ -12,6 +12,7 @@
 #include "deviascope/summary/draw_values.h"
 #include "deviascope/summary/summary.h"
 #include "summary/cautions.h"
+#include "summary/draw_moments.h"
 #include "summary/weight_modes.h"
 
 namespace deviascope {
@@ -148,22 +149,24 @@ void find_direction(const Directions& directions,
     summary.region95 = region_of(density, directions, mean, level95);
 }
 
-void find_moments(const DrawRows& rows, Eigen::Index first, VectorSummary& summary) {
-    const auto vectors = rows.middleCols<3>(first);
-    const Eigen::RowVector3d origin = vectors.row(0);
-    const Eigen::RowVector3d shift = (vectors.rowwise() - origin).colwise().mean();
-    summary.mean = (origin + shift).transpose();
-    const Eigen::MatrixX3d centred = vectors.rowwise() - (origin + shift);
-    const auto n = static_cast<double>(rows.rows());
-    summary.covariance = rows.rows() > 1
-                             ? Eigen::Matrix3d(centred.transpose() * centred / (n - 1.0))
-                             : Eigen::Matrix3d::Constant(undefined);
+/// Its location and spread, and its limits where the draws do not tell it from zero.
+void find_amplitude(std::vector<double> amplitude,
+                    const VectorPrior& prior,
+                    double effective_draws,
+                    VectorSummary& summary) {
+    const Support support{0.0, prior.furthest()};
+    const LineDensity density = line_density(amplitude, effective_draws, support);
+    summary.amplitude = estimate_of(amplitude);
+    if (summary.amplitude_free)
+        summary.amplitude_limits = upper_limits_of(std::move(amplitude), density, support);
 }
 
-VectorSummary vector_of(const DrawRows& rows,
+VectorSummary vector_of(const Chain& chain,
                         const ParameterSpace& space,
                         std::size_t index,
+                        const std::vector<ScalarDiagnostics>& scalars,
                         std::uint64_t seed) {
+    const DrawRows rows = rows_of(chain.draws);
     const VectorParameter& vector = space.vectors()[index];
     const VectorPrior& prior = space.vector_prior(index);
     const std::size_t dot = vector.name.find('.');
@@ -174,8 +177,13 @@ VectorSummary vector_of(const DrawRows& rows,
     summary.prior_median_amplitude = prior.median_amplitude(seed);
     summary.amplitude_free = vector.amplitude_free;
     summary.direction_free = vector.direction_free;
-    summary.amplitude = estimate_of(amplitudes_of(rows, vector.first));
-    find_moments(rows, vector.first, summary);
+    find_amplitude(amplitudes_of(rows, vector.first),
+                   prior,
+                   effective_values(vector.name + ".amplitude", scalars, chain.draws),
+                   summary);
+    const DrawMoments moments = moments_of(rows.middleCols<3>(vector.first).transpose());
+    summary.mean = moments.mean;
+    summary.covariance = moments.covariance;
     return summary;
 }
 
@@ -275,7 +283,7 @@ Summary summarise(const Chain& chain,
     std::vector<VectorSummary> vectors(space.vectors().size());
     parallel_for(vectors.size(), options.threads, [&](std::size_t index) {
         const VectorParameter& vector = space.vectors()[index];
-        vectors[index] = vector_of(rows, space, index, options.seed);
+        vectors[index] = vector_of(chain, space, index, summary.sampling.scalars, options.seed);
         if (vector.direction_free)
             find_direction(directions_of(rows, vector.first),
                            summary.frame,

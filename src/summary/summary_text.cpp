@@ -10,6 +10,7 @@
 #include "summary/counted_words.h"
 #include "summary/rounding.h"
 #include "summary/text_table.h"
+#include "summary/vector_words.h"
 
 namespace deviascope {
 namespace {
@@ -132,7 +133,12 @@ std::string vector_block(const VectorSummary& vector) {
     std::string text = vector_heading(vector);
     text += folded(fmt::format("Prior {}: {}.", vector.prior, vector.prior_description), 2);
     if (!vector.amplitude_free) return text;
-    return text + "\n" + amplitude_table(vector) + "\n" + direction_block(vector);
+    text += "\n" + amplitude_table(vector);
+    if (vector.amplitude_limits)
+        text += folded(fmt::format("Not told from zero: quote it as below {} (95 %).",
+                                   limit_in_words(vector)),
+                       2);
+    return text + "\n" + direction_block(vector);
 }
 
 // ---- bins and separation ----

@@ -6,6 +6,8 @@
 #include <regex>
 #include <set>
 
+#include "deviascope/figures/report.h"
+#include "deviascope/summary/result_tables.h"
 #include "figures/sheet.h"
 #include "hard_posteriors.h"
 #include "posed_comparison.h"
@@ -136,6 +138,19 @@ TEST_CASE("figures have words for every number, and the same bytes every time", 
                                          "profile-lantern",
                                          "weights",
                                          "traces"});
+}
+
+TEST_CASE("figure, table and summary quote the same upper limit", "[figures]") {
+    const PosedPosterior posed({test::tiny(), {test::one_sided()}, {"dunlin"}});
+    REQUIRE(posed.summary().intrinsic[0].amplitude_limits);
+    const std::string table = to_html(results_table(posed.summary()));
+    std::smatch quoted;
+    REQUIRE(std::regex_search(table, quoted, std::regex("&lt; [0-9.]+ \\(95 %\\)")));
+    FigureOptions options;
+    options.only = {"amplitudes"};
+    CHECK_THAT(make_figures(posed.source(), options)[0].svg, Catch::Contains(quoted.str()));
+    CHECK_THAT(report_html(posed.source(), make_figures(posed.source(), {})),
+               Catch::Contains("an amplitude of less than " + quoted.str().substr(5)));
 }
 
 TEST_CASE("figures are chosen by the beginnings of their names, parameters by name",

@@ -13,6 +13,7 @@
 #include "deviascope/summary/direction_density.h"
 #include "deviascope/summary/interval.h"
 #include "deviascope/summary/separation.h"
+#include "deviascope/summary/upper_limit.h"
 
 namespace deviascope {
 
@@ -32,6 +33,7 @@ struct VectorSummary {
     bool amplitude_free = true;                      ///< false: the prior fixes the amplitude
     bool direction_free = true;                      ///< false: the prior fixes the direction
     ScalarEstimate amplitude;                        ///< in c (velocity) or dimensionless
+    std::optional<UpperLimits> amplitude_limits;     ///< where it is not told from zero
     Eigen::Vector3d mean = Eigen::Vector3d::Zero();  ///< job's frame
     Eigen::Matrix3d covariance = Eigen::Matrix3d::Zero();  ///< of the draws, with n - 1
     std::optional<LonLat> galactic, icrs;         ///< of the mean direction, or the fixed one

@@ -24,6 +24,21 @@ TEST_CASE("tables round by the uncertainty, in every form", "[summary]") {
     for (const auto& row : table.rows) CHECK(row.size() == table.header.size());
 }
 
+TEST_CASE("a table gives the upper limit of what is not told from zero", "[summary]") {
+    Summary summary = example::summary();
+    CHECK_THAT(results_table(summary).caption, !Catch::Contains("upper limit"));
+    summary.velocity.amplitude_limits = UpperLimits{4e-4, 1.2345e-3};
+    summary.intrinsic[1].amplitude_limits = UpperLimits{1.6e-3, 3.456e-3};
+    const ResultTable table = results_table(summary);
+    CHECK_THAT(table.caption, Catch::Contains("upper limit below which 95.45 %"));
+    // Two digits of half the 68 % limit: 60 km/s and 0.8.
+    CHECK_THAT(to_markdown(table),
+               Catch::Contains("| velocity | km/s | < 370 (95 %) | 0 to 370 |") &&
+                   Catch::Contains("dipole of lantern | 10⁻³ | < 3.46 (95 %) | 0 to 3.46 |"));
+    CHECK_THAT(to_latex(table), Catch::Contains("\\textless{} 370 (95 \\%) & $0$ to $370$"));
+    CHECK_THAT(to_html(table), Catch::Contains("&lt; 370 (95 %)"));
+}
+
 TEST_CASE("the table of bins has every bin, and says what is fixed", "[summary]") {
     const ResultTable table = bins_table(example::summary());
     REQUIRE(table.rows.size() == 3);

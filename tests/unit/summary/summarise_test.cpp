@@ -308,6 +308,31 @@ TEST_CASE("amplitudes that come from the prior are called so", "[summary]") {
     CHECK(warns(edge.summary(), "leans on the edge of its prior free-intrinsic (at 0.05)"));
 }
 
+TEST_CASE("an amplitude that stands high at zero has an upper limit", "[summary]") {
+    const auto faint = [](double length) {
+        return [length](Stream& stream, Eigen::Ref<Eigen::VectorXd> row) {
+            ordinary(stream, row);
+            Eigen::Vector3d turn = Eigen::Vector3d::Zero();
+            add_normal(stream, 1.0, turn);
+            row.segment<3>(3) = std::abs(length + 2e-3 * normal(stream)) * turn.normalized();
+        };
+    };
+    const VectorPrior even("uniform-amplitude", UniformAmplitudePrior{0.05});
+    const Summary summary = Run(faint(0.0), free_velocity, even).summary();
+    REQUIRE(summary.intrinsic[0].amplitude_limits);
+    // Two standard deviations; four standard errors of the order statistic: 0.1 of them.
+    CHECK(summary.intrinsic[0].amplitude_limits->limit95 == Approx(4e-3).epsilon(0.05));
+    CHECK(warns(summary,
+                "No detection of the intrinsic dipole of dunlin: the density of its amplitude "
+                "stands high at zero"));
+    CHECK_FALSE(warns(summary, "volume factor"));
+    CHECK_FALSE(summary.velocity.amplitude_limits);
+
+    const Summary seen = Run(faint(1e-2), free_velocity, even).summary();
+    CHECK_FALSE(seen.intrinsic[0].amplitude_limits);
+    CHECK_FALSE(warns(seen, "No detection"));
+}
+
 TEST_CASE("a summary has the same bits for any number of threads", "[summary]") {
     Run run(ordinary);
     const std::string one = to_json(run.summary());

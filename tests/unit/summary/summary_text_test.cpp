@@ -64,6 +64,16 @@ TEST_CASE("warnings stand before every estimate", "[summary]") {
     CHECK(to_text(quiet).find("No warnings.") != std::string::npos);
 }
 
+TEST_CASE("an amplitude that is not told from zero has its limit beside it", "[summary]") {
+    Summary summary = example::summary();
+    summary.velocity.amplitude_limits = UpperLimits{4e-4, 1.2345e-3};
+    summary.intrinsic[1].amplitude_limits = UpperLimits{1.6e-3, 3.456e-3};
+    const std::string text = to_text(summary);
+    CHECK(has_line_with(text, "Not told from zero", "below 370 km/s (95 %)"));
+    CHECK(has_line_with(text, "Not told from zero", "below 3.46 x 10^-3 (95 %)"));
+    CHECK(to_text(example::summary()).find("Not told from zero") == std::string::npos);
+}
+
 TEST_CASE("long names and titles keep to the page", "[summary]") {
     Summary summary = example::summary();
     summary.job.assign(150, 'T');
