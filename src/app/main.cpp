@@ -121,6 +121,7 @@ void add_export_options(CLI::App& command, CommandOptions& options) {
         ->option_text("N");
 }
 
+// NOLINTNEXTLINE(readability-function-size): a table
 std::vector<Command> commands() {
     return {
         {.name = "run",

@@ -252,9 +252,14 @@ void TomlTable::fault_here(std::string found, std::string allowed, std::string r
     document_->add(place_, path_, std::move(found), std::move(allowed), std::move(remedy));
 }
 
-void TomlTable::wrong(const std::string& key, std::string allowed, std::string remedy) const {
+void TomlTable::wrong(const std::string& key,
+                      const std::string& allowed,
+                      std::string remedy) const {
     const toml::node* node = find(key);
-    fault(key, node ? "found " + shown(*node) : "missing", allowed + " is allowed", remedy);
+    fault(key,
+          node ? "found " + shown(*node) : "missing",
+          allowed + " is allowed",
+          std::move(remedy));
 }
 
 void TomlTable::missing(const std::string& key,

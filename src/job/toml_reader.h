@@ -137,7 +137,9 @@ class TomlTable {
     /// Notes a fault of the table itself.
     void fault_here(std::string found, std::string allowed, std::string remedy = {}) const;
     /// Notes that the value of a key, shown as it was written, is not allowed.
-    void wrong(const std::string& key, std::string allowed, std::string remedy = {}) const;
+    void wrong(const std::string& key,
+               const std::string& allowed,
+               std::string remedy = {}) const;
     /// Notes the faults of another file that a key refers to, at the place of that key.
     void adopt(const std::string& key, const std::vector<Message>& faults) const;
     /// Makes a key known that must not be there, for the reason given.

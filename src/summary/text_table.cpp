@@ -53,7 +53,7 @@ std::vector<std::string> lines_of(const std::string& text, std::size_t width) {
 /// The lines of a text, without blanks at their ends.
 void append_lines(const std::string& text, std::vector<std::string>& lines) {
     std::size_t begin = 0;
-    for (std::size_t end; (end = text.find('\n', begin)) != std::string::npos;
+    for (std::size_t end = 0; (end = text.find('\n', begin)) != std::string::npos;
          begin = end + 1) {
         std::string line = text.substr(begin, end - begin);
         line.erase(line.find_last_not_of(' ') + 1);

@@ -163,29 +163,38 @@ SkyExperimentTally::Region SkyExperimentTally::region_of(std::size_t box,
     return misses_approaching ? receding : approaching;
 }
 
+double SkyExperimentTally::share_moved_across(std::size_t edge,
+                                              const WeightEstimator& estimator,
+                                              double n,
+                                              double log_delta) const {
+    const auto& density = estimator.density(edge);
+    if (!density) return 0.0;
+    const double speed = speed_of(boxes_.edge[edge].kind) * estimator.index_at_edge(edge);
+    const auto f = [&](double y) { return density->at(y); };
+    return (boxes_.edge[edge].upper ? -1.0 : 1.0) * integral(f, -speed * log_delta, 0.0) / n;
+}
+
+double SkyExperimentTally::expected_count(std::size_t box,
+                                          const WeightEstimator& estimator,
+                                          double n,
+                                          double cosine) const {
+    const double delta = 1.0 / (gamma_ * (1.0 - beta_ * cosine));
+    double product = delta * delta;
+    for (std::size_t s = 0; s < boxes_.box[box].sides.size(); ++s) {
+        double side = 1.0;
+        for (const std::size_t edge : boxes_.edges_of_side[boxes_.first_side[box] + s])
+            side += share_moved_across(edge, estimator, n, std::log(delta));
+        product *= side;
+    }
+    return product;
+}
+
 double SkyExperimentTally::expected_mean(std::size_t box,
                                          const WeightEstimator& estimator,
                                          const CrossingTally& sums,
                                          Region region) const {
     const double n = sums.in_box(box, 0);
-    const auto count = [&](double cosine) {
-        const double delta = 1.0 / (gamma_ * (1.0 - beta_ * cosine));
-        const double u = std::log(delta);
-        double product = delta * delta;
-        for (std::size_t s = 0; s < boxes_.box[box].sides.size(); ++s) {
-            double side = 1.0;
-            for (const std::size_t e : boxes_.edges_of_side[boxes_.first_side[box] + s]) {
-                const auto& density = estimator.density(e);
-                if (!density) continue;
-                const Edge& edge = boxes_.edge[e];
-                const double speed = speed_of(edge.kind) * estimator.index_at_edge(e);
-                const auto f = [&](double y) { return density->at(y); };
-                side += (edge.upper ? -1.0 : 1.0) * integral(f, -speed * u, 0.0) / n;
-            }
-            product *= side;
-        }
-        return product;
-    };
+    const auto count = [&](double cosine) { return expected_count(box, estimator, n, cosine); };
     const auto [a, b] = limits_of(region);
     return integral([&](double mu) { return mu * count(mu); }, a, b) / integral(count, a, b);
 }

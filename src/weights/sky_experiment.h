@@ -54,6 +54,17 @@ class SkyExperimentTally {
                      const WeightEstimator& estimator,
                      const CrossingTally& sums,
                      bool& possible) const;
+    /// Sources that a shift carries into a box across one edge (less those it carries out), in
+    /// units of the n in the box.
+    double share_moved_across(std::size_t edge,
+                              const WeightEstimator& estimator,
+                              double n,
+                              double log_delta) const;
+    /// Density of sources of a box at a cosine from the motion, up to a constant.
+    double expected_count(std::size_t box,
+                          const WeightEstimator& estimator,
+                          double n,
+                          double cosine) const;
     double expected_mean(std::size_t box,
                          const WeightEstimator& estimator,
                          const CrossingTally& sums,

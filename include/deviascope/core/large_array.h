@@ -27,6 +27,7 @@ void free_large_memory(void* memory, std::size_t n_bytes) noexcept;
 template <class Value>
 struct LeavesUnset : std::allocator<Value> {
     template <class Other>
+    // NOLINTNEXTLINE(readability-identifier-naming): std::allocator_traits looks for this name
     struct rebind {
         using other = LeavesUnset<Other>;
     };
