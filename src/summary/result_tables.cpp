@@ -27,8 +27,8 @@ Cell interval_cell(const Interval& interval, double unit, double error) {
     return rounded(Interval{interval[0] * unit, interval[1] * unit}, error * unit);
 }
 
-/// The interval that holds 68 % about the median, or the limit where zero is not excluded, and
-/// what holds 95 %.
+/// The median with its 68 % interval, or the limit where it is not told from zero; then what
+/// holds 95 %.
 std::vector<Cell> amplitude_cells(const VectorSummary& vector, double unit) {
     if (vector.amplitude_limits) {
         const std::string limit = rounded(*vector.amplitude_limits, 1.0 / unit);

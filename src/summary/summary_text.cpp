@@ -135,7 +135,7 @@ std::string vector_block(const VectorSummary& vector) {
     if (!vector.amplitude_free) return text;
     text += "\n" + amplitude_table(vector);
     if (vector.amplitude_limits)
-        text += folded(fmt::format("Not told from zero: quote it as below {} (95 %).",
+        text += folded(fmt::format("Not told from zero: 95.45 % of the draws lie below {}.",
                                    limit_in_words(vector)),
                        2);
     return text + "\n" + direction_block(vector);
