@@ -154,11 +154,11 @@ void find_amplitude(std::vector<double> amplitude,
                     const VectorPrior& prior,
                     double effective_draws,
                     VectorSummary& summary) {
+    summary.amplitude = estimate_of(amplitude);
+    if (!summary.amplitude_free) return;
     const Support support{0.0, prior.furthest()};
     const LineDensity density = line_density(amplitude, effective_draws, support);
-    summary.amplitude = estimate_of(amplitude);
-    if (summary.amplitude_free)
-        summary.amplitude_limits = upper_limits_of(std::move(amplitude), density, support);
+    summary.amplitude_limits = upper_limits_of(std::move(amplitude), density, support);
 }
 
 VectorSummary vector_of(const Chain& chain,

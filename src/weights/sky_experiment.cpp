@@ -179,11 +179,12 @@ double SkyExperimentTally::expected_count(std::size_t box,
                                           double n,
                                           double cosine) const {
     const double delta = 1.0 / (gamma_ * (1.0 - beta_ * cosine));
+    const double log_delta = std::log(delta);
     double product = delta * delta;
     for (std::size_t s = 0; s < boxes_.box[box].sides.size(); ++s) {
         double side = 1.0;
         for (const std::size_t edge : boxes_.edges_of_side[boxes_.first_side[box] + s])
-            side += share_moved_across(edge, estimator, n, std::log(delta));
+            side += share_moved_across(edge, estimator, n, log_delta);
         product *= side;
     }
     return product;

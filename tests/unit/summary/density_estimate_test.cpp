@@ -5,9 +5,9 @@
 #include <numbers>
 
 #include "deviascope/core/physical_constants.h"
-#include "deviascope/core/random.h"
 #include "deviascope/summary/line_density.h"
 #include "deviascope/summary/plane_density.h"
+#include "drawn_values.h"
 
 using namespace deviascope;
 
@@ -17,12 +17,7 @@ constexpr std::size_t n_draws = 20000;
 
 template <class Draw>
 std::vector<double> drawn(std::uint64_t number, const Draw& draw) {
-    std::vector<double> values(n_draws);
-    for (std::size_t at = 0; at < n_draws; ++at) {
-        Stream stream(20260817, Purpose::test, number, at, 5);
-        values[at] = draw(stream);
-    }
-    return values;
+    return test::drawn_values(20260817, number, n_draws, draw);
 }
 
 double largest_error(const LineDensity& density, double (*truth)(double)) {

@@ -4,8 +4,8 @@
 #include <cmath>
 
 #include "deviascope/core/physical_constants.h"
-#include "deviascope/core/random.h"
 #include "deviascope/summary/upper_limit.h"
+#include "drawn_values.h"
 
 using namespace deviascope;
 
@@ -15,12 +15,7 @@ constexpr std::size_t n_draws = 20000;
 
 template <class Draw>
 std::vector<double> drawn(std::uint64_t number, const Draw& draw) {
-    std::vector<double> values(n_draws);
-    for (std::size_t at = 0; at < n_draws; ++at) {
-        Stream stream(20261203, Purpose::test, number, at, 5);
-        values[at] = draw(stream);
-    }
-    return values;
+    return test::drawn_values(20261203, number, n_draws, draw);
 }
 
 std::optional<UpperLimits> limits(const std::vector<double>& values,
